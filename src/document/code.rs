@@ -1,0 +1,144 @@
+//! Every problem the service can report: its code, status, title, meaning and mend.
+
+use std::fmt;
+
+/// One row per problem code; the table is served at `/problems/{code}`.
+macro_rules! codes {
+    ($($variant:ident $name:literal $status:literal $title:literal, $about:literal, $mend:literal;)*) => {
+        /// What went wrong. The text form (`wrong_type`, ..) never changes between releases.
+        #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+        #[allow(missing_docs, reason = "each variant is described by the table below and by `about`")]
+        pub enum Code { $($variant),* }
+
+        impl Code {
+            /// All codes, in the order of the table.
+            pub const ALL: &'static [Code] = &[$(Code::$variant),*];
+
+            /// The stable name used in `type` (`/problems/<name>`) and in `errors[].code`.
+            pub fn name(self) -> &'static str { match self { $(Code::$variant => $name),* } }
+            /// The HTTP status this problem has when it stands alone.
+            pub fn status(self) -> u16 { match self { $(Code::$variant => $status),* } }
+            /// A short summary that does not change from case to case.
+            pub fn title(self) -> &'static str { match self { $(Code::$variant => $title),* } }
+            /// What the problem means.
+            pub fn about(self) -> &'static str { match self { $(Code::$variant => $about),* } }
+            /// How to mend the request.
+            pub fn mend(self) -> &'static str { match self { $(Code::$variant => $mend),* } }
+        }
+    };
+}
+
+codes! {
+    Syntax "syntax" 400 "The text could not be read",
+        "The body is not well-formed JSON in UTF-8, or a query parameter is not well-formed.",
+        "Look at the place the detail names: a missing quote, a trailing comma, a % escape that is not two hex digits.";
+    NumberOutOfRange "number_out_of_range" 400 "A number no double can hold",
+        "A number in the question is larger than the largest double (about 1.8e308), or not a number at all.",
+        "Choose a unit in which the value is smaller. NaN and Infinity are not accepted; leave a missing value null.";
+    UnknownField "unknown_field" 400 "A name that is not part of the question",
+        "A field or parameter is not one of those the question can have at that place. Unknown names are refused so that a slip of the pen never silently changes an answer.",
+        "Compare with the names listed in the detail.";
+    RepeatedField "repeated_field" 400 "A name given twice",
+        "The same field or parameter stands twice at one place, so it is not clear which is meant.",
+        "Leave only one of them.";
+    WrongType "wrong_type" 400 "A value of the wrong type",
+        "A number stands where a text is expected, a text where a list is expected, and so on.",
+        "Write the value in the form the detail names.";
+    WrongLength "wrong_length" 400 "A list of the wrong length",
+        "A vector has three components, a matrix three rows of three.",
+        "Give as many values as the detail names.";
+    MissingField "missing_field" 400 "Something needed is missing",
+        "The question cannot be understood without this field or parameter.",
+        "Add the field that the detail names.";
+    ConflictingFields "conflicting_fields" 400 "Fields that exclude each other",
+        "Two fields say the same thing in different ways, and exactly one of them is expected.",
+        "Keep the one that you mean.";
+    UnknownUnit "unknown_unit" 400 "A unit that is not in the table",
+        "Units are UCUM codes, case-sensitive. Each quantity has its own list.",
+        "Choose a code from GET /v1/units.";
+    UnknownChoice "unknown_choice" 400 "A word that is not one of the choices",
+        "The field takes one of a few words.",
+        "Choose one of the words listed in the detail.";
+    FasterThanLight "faster_than_light" 422 "Not slower than light",
+        "The speed of a frame is at or past c = 299792458 m/s, for which no transformation exists.",
+        "Check the value and its unit. Very close to c use a direction with gamma, rapidity or kinetic_energy.";
+    NoDirection "no_direction" 422 "A direction of length zero",
+        "A direction, an axis or a quaternion whose components all vanish points nowhere.",
+        "Give a vector of any other length; it need not be normalised.";
+    BelowRest "below_rest" 422 "Less than nothing",
+        "A gamma below 1, a negative kinetic energy or a rest energy that is not positive.",
+        "gamma is at least 1, kinetic_energy at least 0, rest_energy above 0.";
+    NotARotation "not_a_rotation" 422 "Not a rotation",
+        "A quaternion is not of length 1, or a matrix is not orthogonal with determinant +1, by more than the rounding of six decimals.",
+        "Give more digits; check that rows and columns are not mixed up and that no axis is mirrored.";
+    NotACovariance "not_a_covariance" 422 "Not a covariance matrix",
+        "A covariance matrix is symmetric and positive semi-definite.",
+        "Check signs and the order of components: ex ey ez bx by bz.";
+    NegativeUncertainty "negative_uncertainty" 422 "A negative uncertainty",
+        "A standard uncertainty is zero or positive.",
+        "Give the standard deviation itself.";
+    UnknownFrame "unknown_frame" 422 "A frame that is not in the catalogue",
+        "The name is not among the frames this service was started with.",
+        "GET /v1/frames lists them.";
+    UnknownCode "unknown_code" 404 "No such problem",
+        "There is no problem with this code.",
+        "GET /problems lists all of them.";
+    TooManySteps "too_many_steps" 422 "A way of too many steps",
+        "The way holds more steps than this service resolves for one question.",
+        "Join neighbouring rotations, or ask in two parts.";
+    Overflow "overflow" 422 "An answer no double can hold",
+        "A component of the answer is larger than the largest double.",
+        "Choose an answer unit in which it is smaller (answer_units).";
+    PrecisionExhausted "precision_exhausted" 422 "Beyond the precision kept",
+        "The way passes through speeds so extreme that its net effect would take more digits than the service keeps.",
+        "Shorten the way: leave out steps that undo each other.";
+    Unauthorized "unauthorized" 401 "A token is needed",
+        "This service answers only requests that carry one of its bearer tokens.",
+        "Send the header Authorization: Bearer <token>.";
+    NotFound "not_found" 404 "Nothing here",
+        "There is nothing at this path.",
+        "GET /openapi.json lists every path.";
+    MethodNotAllowed "method_not_allowed" 405 "Not with this method",
+        "The path exists but does not answer this method.",
+        "Use one of the methods in the Allow header.";
+    NotAcceptable "not_acceptable" 406 "No such representation",
+        "None of the types in the Accept header can be produced here.",
+        "Ask for one of the types the detail names, or leave Accept out.";
+    RequestTimeout "request_timeout" 408 "The request took too long to arrive",
+        "The service stopped waiting for the rest of the request.",
+        "Send it again, without pauses.";
+    BodyTooLarge "body_too_large" 413 "The body is too large",
+        "The body is longer than the limit the detail names.",
+        "Ask in smaller parts, or use the series for many readings.";
+    UriTooLong "uri_too_long" 414 "The address is too long",
+        "The path and query are longer than the limit the detail names.",
+        "Ask the same question as JSON by POST.";
+    UnsupportedMediaType "unsupported_media_type" 415 "A body of the wrong type",
+        "The Content-Type is not one this path reads.",
+        "Send Content-Type: application/json.";
+    TooManyRequests "too_many_requests" 429 "Too many requests",
+        "This client asks more than the service allows it.",
+        "Wait as long as Retry-After says.";
+    HeadersTooLarge "headers_too_large" 431 "The headers are too large",
+        "The header section is larger than the service reads.",
+        "Send fewer or shorter headers.";
+    Internal "internal" 500 "A fault of the service",
+        "The service failed in a way its authors did not foresee. The question was not the cause.",
+        "Report the instance id to whoever runs the service.";
+    Overloaded "overloaded" 503 "Too busy",
+        "The service has as much work as it takes on at once.",
+        "Wait as long as Retry-After says and send the request again.";
+}
+
+impl Code {
+    /// Finds a code by its name.
+    pub fn by_name(name: &str) -> Option<Code> {
+        Code::ALL.iter().copied().find(|code| code.name() == name)
+    }
+}
+
+impl fmt::Display for Code {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        f.write_str(self.name())
+    }
+}

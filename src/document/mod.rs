@@ -1,0 +1,8 @@
+//! A question as a tree of values that knows its places and its repeated names, whatever
+//! notation it came in (JSON body, URL query, catalogue file), and the faults found in it.
+
+mod code;
+mod fault;
+
+pub use code::Code;
+pub use fault::{Fault, Path, Segment};
