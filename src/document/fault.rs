@@ -73,11 +73,19 @@ pub struct Fault {
 impl Fault {
     /// A fault at a place in the question.
     pub fn at(path: &Path, code: Code, detail: impl Into<String>) -> Fault {
-        Fault { code, detail: detail.into(), path: Some(path.clone()) }
+        Fault {
+            code,
+            detail: detail.into(),
+            path: Some(path.clone()),
+        }
     }
 
     /// A fault of the request as a whole.
     pub fn whole(code: Code, detail: impl Into<String>) -> Fault {
-        Fault { code, detail: detail.into(), path: None }
+        Fault {
+            code,
+            detail: detail.into(),
+            path: None,
+        }
     }
 }
