@@ -3,6 +3,12 @@
 
 mod code;
 mod fault;
+mod node;
+mod read;
+mod url;
 
 pub use code::Code;
 pub use fault::{Fault, Path, Segment};
+pub use node::{Node, Place};
+pub use read::{Faults, Members};
+pub use url::from_query;

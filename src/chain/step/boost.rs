@@ -1,0 +1,181 @@
+//! The step `boost`: to a frame that moves, its axes kept parallel.
+
+use crate::chain::code;
+use crate::document::{Code, Faults, Members, Node, Place};
+use crate::physics::boost::Motion;
+use crate::physics::constants::PARTICLES;
+use crate::physics::lorentz::{Change, Step};
+use crate::physics::scale::Scale;
+use crate::units::{Quantity, Units};
+
+const FORMS: [&str; 4] = ["velocity", "beta", "direction", "angular_velocity"];
+const SPEEDS: [&str; 3] = ["gamma", "rapidity", "kinetic_energy"];
+const KNOWN: [&str; 10] = [
+    "velocity",
+    "beta",
+    "direction",
+    "gamma",
+    "rapidity",
+    "kinetic_energy",
+    "particle",
+    "angular_velocity",
+    "position",
+    "inverse",
+];
+
+/// Reads the body of the step.
+pub fn read(node: &Node, place: &Place, units: &Units, faults: &mut Faults) -> Option<Step> {
+    let members = faults.members(node, place, &KNOWN)?;
+    let motion = form(members, place, units, faults).and_then(|motion| {
+        let checked = motion.check();
+        if let Err(impossible) = &checked {
+            faults.note(place, code(impossible), impossible.to_string());
+        }
+        checked.ok().map(|()| Change::Boost(motion))
+    });
+    super::with_inverse(motion, members.get("inverse"), place, faults)
+}
+
+/// Reads a velocity that stands alone, as `velocity` does in a question.
+pub fn velocity(node: &Node, place: &Place, units: &Units, faults: &mut Faults) -> Option<Step> {
+    let value = faults.vector(node, place)?;
+    let motion = Motion::Velocity {
+        value,
+        beta: velocity_scale(units),
+    };
+    if let Err(impossible) = motion.check() {
+        faults.note(place, code(&impossible), impossible.to_string());
+        return None;
+    }
+    Some(Step {
+        change: Change::Boost(motion),
+        inverse: false,
+    })
+}
+
+fn velocity_scale(units: &Units) -> Scale {
+    Motion::to_beta(units.si(Quantity::Velocity))
+}
+
+fn form(members: Members, place: &Place, units: &Units, faults: &mut Faults) -> Option<Motion> {
+    let (form, node) = faults.exactly_one(members, place, &FORMS)?;
+    belongs(members, place, "direction", form, &SPEEDS, faults);
+    belongs(
+        members,
+        place,
+        "angular_velocity",
+        form,
+        &["position"],
+        faults,
+    );
+    belongs(
+        members,
+        place,
+        "kinetic_energy",
+        speed_given(members),
+        &["particle"],
+        faults,
+    );
+    let at = place.field(form);
+    match form {
+        "velocity" => Some(Motion::Velocity {
+            value: faults.vector(node, &at)?,
+            beta: velocity_scale(units),
+        }),
+        "beta" => Some(Motion::Velocity {
+            value: faults.vector(node, &at)?,
+            beta: Scale::ONE,
+        }),
+        "angular_velocity" => {
+            let angular_velocity = faults.vector(node, &at);
+            let position = faults
+                .needed(members, place, "position")
+                .and_then(|node| faults.vector(node, &place.field("position")));
+            let product = units
+                .si(Quantity::AngularVelocity)
+                .times(units.si(Quantity::Length));
+            Some(Motion::Turning {
+                angular_velocity: angular_velocity?,
+                position: position?,
+                beta: Motion::to_beta(product),
+            })
+        }
+        _ => {
+            let direction = faults.vector(node, &at);
+            let (speed, node) = faults.exactly_one(members, place, &SPEEDS)?;
+            let value = faults.number(node, &place.field(speed));
+            match speed {
+                "gamma" => Some(Motion::Gamma {
+                    direction: direction?,
+                    gamma: value?,
+                }),
+                "rapidity" => Some(Motion::Rapidity {
+                    direction: direction?,
+                    rapidity: value?,
+                }),
+                _ => {
+                    let (rest, ratio) = particle(members, place, units, faults)?;
+                    let (direction, energy) = (direction?, value?);
+                    Some(Motion::KineticEnergy {
+                        direction,
+                        energy,
+                        rest,
+                        ratio,
+                    })
+                }
+            }
+        }
+    }
+}
+
+fn speed_given<'m>(members: Members<'m, '_>) -> &'m str {
+    if members.get("kinetic_energy").is_some() {
+        "kinetic_energy"
+    } else {
+        ""
+    }
+}
+
+/// Refuses members that go with another form than the one given.
+fn belongs(
+    members: Members,
+    place: &Place,
+    owner: &str,
+    form: &str,
+    owned: &[&str],
+    faults: &mut Faults,
+) {
+    for name in owned
+        .iter()
+        .filter(|name| form != owner && members.get(name).is_some())
+    {
+        let detail = format!("{name:?} goes with {owner:?}, which is not given");
+        faults.note(&place.field(name), Code::ConflictingFields, detail);
+    }
+}
+
+/// The rest energy of the particle and the scale from energy over rest energy to γ−1.
+fn particle(
+    members: Members,
+    place: &Place,
+    units: &Units,
+    faults: &mut Faults,
+) -> Option<(f64, Scale)> {
+    let node = faults.needed(members, place, "particle")?;
+    let place = place.field("particle");
+    if let Node::Object(_) = node.plain() {
+        let own = faults.members(node, &place, &["rest_energy"])?;
+        let node = faults.needed(own, &place, "rest_energy")?;
+        return Some((
+            faults.number(node, &place.field("rest_energy"))?,
+            Scale::ONE,
+        ));
+    }
+    let choices: Vec<(&str, Scale)> = PARTICLES
+        .iter()
+        .map(|particle| (particle.name, particle.rest_energy))
+        .collect();
+    let rest_energy = faults.choice(node, &place, &choices)?;
+    let volt = crate::units::find(Quantity::Energy, "eV")?.si;
+    Some((1.0, units.si(Quantity::Energy).over(volt).over(rest_energy)))
+}

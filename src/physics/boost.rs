@@ -1,0 +1,323 @@
+//! Boosts: a change to a frame that moves, its axes kept parallel (standard boost).
+//!
+//! With d the direction as given, of any length, and s = γβ/|d|:
+//! E' = E + k (d×E)×d + s c d×B and cB' = cB + k (d×cB)×d − s d×E, k = s²/(γ+1)
+//! (Jackson, Classical Electrodynamics, 3rd ed., eq. 11.149, rearranged so that the components
+//! along d are never touched and no difference of nearly equal numbers is taken).
+
+use super::big::Big;
+use super::constants::SPEED_OF_LIGHT;
+use super::double_double::Dd;
+use super::error::Impossible;
+use super::real::{Real, Vec3, cross, norm2, scale, vector};
+use super::scale::Scale;
+
+/// The motion of the next frame as seen in the current one, in the form it was given.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Motion {
+    /// A velocity, or β when the scale is one.
+    Velocity {
+        /// Components in the unit of `beta`.
+        value: [f64; 3],
+        /// What turns the components into v/c.
+        beta: Scale,
+    },
+    /// The velocity ω×r of a point of a turning rigid body.
+    Turning {
+        /// ω, on the current axes.
+        angular_velocity: [f64; 3],
+        /// r, from a point of the axis, on the current axes.
+        position: [f64; 3],
+        /// What turns the product of the two into v/c.
+        beta: Scale,
+    },
+    /// A direction and the Lorentz factor γ.
+    Gamma {
+        /// Any length.
+        direction: [f64; 3],
+        /// γ ≥ 1.
+        gamma: f64,
+    },
+    /// A direction and the rapidity artanh β.
+    Rapidity {
+        /// Any length.
+        direction: [f64; 3],
+        /// A negative one means the opposite direction.
+        rapidity: f64,
+    },
+    /// A direction and the kinetic energy of a particle at rest in the next frame.
+    KineticEnergy {
+        /// Any length.
+        direction: [f64; 3],
+        /// In the unit of `ratio`.
+        energy: f64,
+        /// Rest energy, in the unit of `ratio`.
+        rest: f64,
+        /// What turns energy/rest into γ−1.
+        ratio: Scale,
+    },
+}
+
+/// A boost ready to be applied, in the arithmetic R.
+#[derive(Clone, Debug)]
+pub struct Boost<R> {
+    /// d, along the velocity.
+    pub direction: Vec3<R>,
+    /// s, with γβ (as a vector) = s d.
+    pub stretch: R,
+    /// γ.
+    pub gamma: R,
+    /// γ − 1, to its own full precision.
+    pub gamma_less_one: R,
+}
+
+/// Bits that hold any sum of squares of doubles exactly.
+const EXACT_BITS: usize = 4608;
+/// Below this 1−β² is taken from more digits than two doubles have.
+const SMALL_W: f64 = 0.0625;
+
+impl Motion {
+    /// Refuses what no frame can do.
+    ///
+    /// # Errors
+    /// |v| ≥ c (judged exactly), γ < 1, a negative energy, a direction of length zero.
+    pub fn check(&self) -> Result<(), Impossible> {
+        let below = |what, value, bound| Err(Impossible::BelowRest { what, value, bound });
+        match *self {
+            Motion::Velocity { .. } | Motion::Turning { .. } => {
+                let w = if self.velocity_fits_dd() {
+                    one_less_beta2(&self.velocity::<Dd>(()), self.beta().value(())).to_f64()
+                } else {
+                    0.0
+                };
+                if w > SMALL_W {
+                    return Ok(());
+                }
+                let velocity = self.velocity::<Big>(EXACT_BITS);
+                // β² < 1 as v² num² < den² (π aside), so that nothing is rounded.
+                let beta = self.beta();
+                let num = Scale { den: 1, ..beta }.value::<Big>(EXACT_BITS);
+                let den = Scale::ratio(beta.den, 1).value::<Big>(EXACT_BITS);
+                let speed = norm2(&velocity) * num.square();
+                if (den.square() - speed.clone()).is_negative() || speed == den.square() {
+                    let times_c = (speed.sqrt() / den).to_f64();
+                    return Err(Impossible::FasterThanLight { times_c });
+                }
+                Ok(())
+            }
+            Motion::Gamma { direction, gamma } => {
+                if gamma < 1.0 {
+                    return below("gamma", gamma, "at least 1");
+                }
+                points_somewhere(direction)
+            }
+            Motion::Rapidity { direction, .. } => points_somewhere(direction),
+            Motion::KineticEnergy {
+                direction,
+                energy,
+                rest,
+                ..
+            } => {
+                if energy < 0.0 {
+                    return below("kinetic_energy", energy, "at least 0");
+                }
+                if rest <= 0.0 {
+                    return below("rest_energy", rest, "above 0");
+                }
+                points_somewhere(direction)
+            }
+        }
+    }
+
+    /// The boost in the arithmetic R, of a motion that passed [`check`](Self::check).
+    pub fn boost<R: Real>(&self, context: R::Context) -> Boost<R> {
+        let one = R::new(1.0, context);
+        let direction = |d: [f64; 3]| {
+            let direction: Vec3<R> = vector(unit_exponent(d), context);
+            let length = norm2(&direction).sqrt();
+            (direction, length)
+        };
+        match *self {
+            Motion::Velocity { .. } | Motion::Turning { .. } => {
+                let d = self.velocity(context);
+                let beta: R = self.beta().value(context);
+                let root = one_less_beta2(&d, beta.clone()).sqrt();
+                let gamma = one.clone() / root.clone();
+                let beta2 = norm2(&d) * beta.square();
+                let gamma_less_one = beta2 / (root.clone() * (one + root.clone()));
+                Boost {
+                    direction: d,
+                    stretch: beta / root,
+                    gamma,
+                    gamma_less_one,
+                }
+            }
+            Motion::Gamma {
+                direction: d,
+                gamma,
+            } => {
+                let (direction, length) = direction(d);
+                let gamma = R::new(gamma, context);
+                let less_one = gamma.clone() - one;
+                Boost::along(direction, length, gamma, less_one)
+            }
+            Motion::KineticEnergy {
+                direction: d,
+                energy,
+                rest,
+                ratio,
+            } => {
+                let (direction, length) = direction(d);
+                let less_one =
+                    R::new(energy, context) * ratio.value(context) / R::new(rest, context);
+                Boost::along(direction, length, less_one.clone() + one, less_one)
+            }
+            Motion::Rapidity {
+                direction: d,
+                rapidity,
+            } => {
+                let (direction, length) = direction(d);
+                let rapidity = R::new(rapidity, context);
+                let half = rapidity.scale2(-1).sinh();
+                let gamma_less_one = half.square().scale2(1);
+                let gamma = gamma_less_one.clone() + one;
+                Boost {
+                    direction,
+                    stretch: rapidity.sinh() / length,
+                    gamma,
+                    gamma_less_one,
+                }
+            }
+        }
+    }
+
+    /// Whether two doubles hold everything in [`boost`](Self::boost) to full precision.
+    pub fn fits_dd(&self) -> bool {
+        match *self {
+            Motion::Velocity { .. } | Motion::Turning { .. } => {
+                self.velocity_fits_dd()
+                    && one_less_beta2(&self.velocity::<Dd>(()), self.beta().value(())).hi > SMALL_W
+            }
+            Motion::Gamma { gamma, .. } => gamma < 1e60,
+            Motion::Rapidity { rapidity, .. } => {
+                rapidity == 0.0 || (1e-60..100.0).contains(&rapidity.abs())
+            }
+            Motion::KineticEnergy { energy, rest, .. } => {
+                let sane = |x: f64| (1e-60..1e60).contains(&x);
+                sane(rest) && (energy == 0.0 || sane(energy) && sane(energy / rest))
+            }
+        }
+    }
+
+    fn velocity_fits_dd(&self) -> bool {
+        let sane = |x: &f64| *x == 0.0 || (1e-60..1e60).contains(&x.abs());
+        match self {
+            Motion::Velocity { value, .. } => value.iter().all(sane),
+            Motion::Turning {
+                angular_velocity,
+                position,
+                ..
+            } => angular_velocity.iter().chain(position).all(sane),
+            _ => true,
+        }
+    }
+
+    /// The velocity in its own unit.
+    fn velocity<R: Real>(&self, context: R::Context) -> Vec3<R> {
+        match self {
+            Motion::Velocity { value, .. } => vector(*value, context),
+            Motion::Turning {
+                angular_velocity,
+                position,
+                ..
+            } => cross(
+                &vector(*angular_velocity, context),
+                &vector(*position, context),
+            ),
+            _ => vector([0.0; 3], context),
+        }
+    }
+
+    fn beta(&self) -> Scale {
+        match self {
+            Motion::Velocity { beta, .. } | Motion::Turning { beta, .. } => *beta,
+            _ => Scale::ONE,
+        }
+    }
+
+    /// The scale to v/c of a velocity whose unit has this scale to m/s.
+    pub fn to_beta(velocity: Scale) -> Scale {
+        velocity.over(Scale::ratio(SPEED_OF_LIGHT, 1))
+    }
+}
+
+/// 1 − (unit·|v|)².
+fn one_less_beta2<R: Real>(velocity: &Vec3<R>, unit: R) -> R {
+    unit.of(1.0) - norm2(velocity) * unit.square()
+}
+
+fn points_somewhere(direction: [f64; 3]) -> Result<(), Impossible> {
+    if direction == [0.0; 3] {
+        return Err(Impossible::NoDirection { what: "direction" });
+    }
+    Ok(())
+}
+
+/// The same direction, its largest component brought between 1 and 2 by a power of two.
+pub(crate) fn unit_exponent(d: [f64; 3]) -> [f64; 3] {
+    let largest = d.iter().fold(0.0f64, |m, x| m.max(x.abs()));
+    if largest == 0.0 {
+        return d;
+    }
+    // In two halves: the power may be past the range of doubles.
+    let n = -libm::ilogb(largest);
+    d.map(|x| libm::scalbn(libm::scalbn(x, n / 2), n - n / 2))
+}
+
+impl<R: Real> Boost<R> {
+    fn along(direction: Vec3<R>, length: R, gamma: R, gamma_less_one: R) -> Boost<R> {
+        let gamma_beta = (gamma_less_one.clone() * (gamma.clone() + gamma.of(1.0))).sqrt();
+        Boost {
+            direction,
+            stretch: gamma_beta / length,
+            gamma,
+            gamma_less_one,
+        }
+    }
+
+    /// The boost that undoes this one.
+    pub fn inverse(self) -> Boost<R> {
+        Boost {
+            stretch: -self.stretch,
+            ..self
+        }
+    }
+
+    /// k = s²/(γ+1) = (γ−1)/d².
+    pub fn curvature(&self) -> R {
+        self.stretch.square() / (self.gamma.clone() + self.gamma.of(1.0))
+    }
+
+    /// γβ as a vector.
+    pub fn gamma_beta(&self) -> Vec3<R> {
+        scale(&self.stretch, &self.direction)
+    }
+
+    /// β as a vector.
+    pub fn beta(&self) -> Vec3<R> {
+        // Both brought near one first, so that no product leaves the range.
+        let n = self.gamma.exponent().unwrap_or(0) as i32;
+        let per_gamma = self.stretch.scale2(-n) / self.gamma.scale2(-n);
+        scale(&per_gamma, &self.direction)
+    }
+
+    /// The boost with its numbers to the precision of two doubles.
+    pub fn to_dd(&self) -> Boost<Dd> {
+        Boost {
+            direction: std::array::from_fn(|i| self.direction[i].to_dd()),
+            stretch: self.stretch.to_dd(),
+            gamma: self.gamma.to_dd(),
+            gamma_less_one: self.gamma_less_one.to_dd(),
+        }
+    }
+}

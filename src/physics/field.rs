@@ -1,0 +1,135 @@
+//! The field of one event, and how a net transformation acts on it.
+
+use super::constants::SPEED_OF_LIGHT;
+use super::lorentz::Net;
+use super::real::{Real, Vec3, add, cross, dot, scale, vector};
+use super::scale::Scale;
+
+/// Electric and magnetic field of one event as doubles, with the exact scale of their units.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Measured {
+    /// E, in units of `units.e`.
+    pub e: [f64; 3],
+    /// B, in units of `units.b`.
+    pub b: [f64; 3],
+    /// What a unit is.
+    pub units: FieldUnits,
+}
+
+/// The units of E in V/m and of B in T.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct FieldUnits {
+    /// One unit of E in V/m.
+    pub e: Scale,
+    /// One unit of B in T.
+    pub b: Scale,
+}
+
+impl FieldUnits {
+    /// V/m and T.
+    pub const SI: FieldUnits = FieldUnits {
+        e: Scale::ONE,
+        b: Scale::ONE,
+    };
+
+    /// How many units of E one unit of cB is.
+    pub fn cb_over_e(self) -> Scale {
+        self.b.times(Scale::ratio(SPEED_OF_LIGHT, 1)).over(self.e)
+    }
+}
+
+/// E and cB in one unit, in the arithmetic R.
+#[derive(Clone, Debug)]
+pub struct Field<R> {
+    /// E.
+    pub e: Vec3<R>,
+    /// cB.
+    pub cb: Vec3<R>,
+}
+
+impl Measured {
+    /// E and cB in V/m divided by 2ⁿ.
+    pub fn field<R: Real>(&self, n: i32, context: R::Context) -> Field<R> {
+        let e = self.units.e.value::<R>(context);
+        let cb = FieldUnits {
+            e: Scale::ONE,
+            ..self.units
+        }
+        .cb_over_e()
+        .value::<R>(context);
+        let part =
+            |x: [f64; 3], unit: &R| vector::<R>(x, context).map(|x| x.scale2(-n) * unit.clone());
+        Field {
+            e: part(self.e, &e),
+            cb: part(self.b, &cb),
+        }
+    }
+
+    /// About log2 of the largest component of E and cB in V/m; `None` when all are zero.
+    pub fn exponent(&self) -> Option<i32> {
+        let cb = FieldUnits {
+            e: Scale::ONE,
+            ..self.units
+        }
+        .cb_over_e();
+        let part = |x: &[f64; 3], unit: Scale| {
+            let largest = x.iter().fold(0.0f64, |m, x| m.max(x.abs()));
+            (largest > 0.0).then(|| libm::ilogb(largest) + libm::ilogb(unit.to_f64()))
+        };
+        part(&self.e, self.units.e).max(part(&self.b, cb))
+    }
+}
+
+/// A net transformation made ready for fields in given units: a few products per reading.
+///
+/// E' = M [E + k (d×E)×d + p d×B], B' = M [B + k (d×B)×d − q d×E]; see
+/// [`boost`](super::boost) for k, with p = s·(cB/E) and q = s/(cB/E) between the units.
+#[derive(Clone, Debug)]
+pub struct Kernel<R> {
+    /// d, k, p and q; `None` when nothing moves.
+    pub motion: Option<(Vec3<R>, R, R, R)>,
+    /// M; `None` when nothing turns.
+    pub matrix: Option<[Vec3<R>; 3]>,
+    /// How many units of E one unit of cB is, about.
+    pub cb_over_e: f64,
+}
+
+impl<R: Real> Kernel<R> {
+    /// Prepares a net transformation for fields in these units.
+    pub fn new(net: &Net<R>, units: FieldUnits, context: R::Context) -> Kernel<R> {
+        let ratio = units.cb_over_e().value::<R>(context);
+        let cb_over_e = ratio.to_f64();
+        let motion = net.boost.as_ref().map(|boost| {
+            let stretch = boost.stretch.clone();
+            let (p, q) = (stretch.clone() * ratio.clone(), stretch / ratio);
+            (boost.direction.clone(), boost.curvature(), p, q)
+        });
+        let turn = net.turn.as_ref().filter(|turn| !turn.is_identity());
+        Kernel {
+            motion,
+            matrix: turn.map(|turn| turn.matrix()),
+            cb_over_e,
+        }
+    }
+
+    /// E' and B' in the units of E and B.
+    pub fn apply(&self, e: &Vec3<R>, b: &Vec3<R>) -> (Vec3<R>, Vec3<R>) {
+        let (e, b) = match &self.motion {
+            Some((d, k, p, q)) => {
+                let (xe, xb) = (cross(d, e), cross(d, b));
+                let across = |x: &Vec3<R>| scale(k, &cross(x, d));
+                let e2 = add(&add(e, &across(&xe)), &scale(p, &xb));
+                let b2 = add(&add(b, &across(&xb)), &scale(&-q.clone(), &xe));
+                (e2, b2)
+            }
+            None => (e.clone(), b.clone()),
+        };
+        match &self.matrix {
+            Some(m) => (
+                m.each_ref().map(|row| dot(row, &e)),
+                m.each_ref().map(|row| dot(row, &b)),
+            ),
+            None => (e, b),
+        }
+    }
+}

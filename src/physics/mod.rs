@@ -1,0 +1,23 @@
+//! Fields and frames: numbers in, numbers out. Knows no text, no units by name, no network.
+
+pub mod big;
+pub mod boost;
+pub mod constants;
+pub mod double_double;
+pub mod energy;
+pub mod error;
+pub mod field;
+pub mod invariants;
+pub mod lorentz;
+pub mod parallel;
+pub mod precise;
+pub mod real;
+pub mod rotation;
+pub mod scale;
+pub mod tensor;
+
+pub use big::Big;
+pub use double_double::Dd;
+pub use error::Impossible;
+pub use real::Real;
+pub use scale::Scale;

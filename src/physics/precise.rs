@@ -1,0 +1,360 @@
+//! The promise on digits: each returned vector is within 1.01·2⁻⁵³ of its own exact length.
+//!
+//! Two doubles carry 2⁻¹⁰⁴ of whatever was summed, so they keep the promise while the result is
+//! not smaller than 2⁻⁴⁰ of that. Where it is, or where an exponent leaves their range, the way
+//! and the reading are computed again with as many bits as it takes.
+
+use nalgebra::Matrix4;
+
+use super::big::Big;
+use super::double_double::Dd;
+use super::error::Impossible;
+use super::field::{FieldUnits, Kernel, Measured};
+use super::lorentz::{Change, Net, Step};
+use super::real::{Real, Vec3, cross, round, vector};
+use super::scale::Scale;
+
+/// Result over what was summed, below which two doubles no longer suffice.
+const KEPT: f64 = 1.0 / (1u64 << 40) as f64;
+/// The numbers of bits tried in turn.
+const LEVELS: [usize; 4] = [256, 640, 1536, 4608];
+/// Bits below the size of what was summed that a result at least keeps.
+const GUARD: i64 = 120;
+/// Largest product of γ(1+β) over the steps of a way, as a power of two.
+const MAX_GROWTH: f64 = 4096.0;
+/// Up to this growth a chain is composed in two doubles.
+const DD_GROWTH: f64 = 20.0;
+
+/// A way whose net transformation is known, ready for any number of readings.
+#[derive(Clone, Debug)]
+pub struct Resolved {
+    steps: Vec<Step>,
+    net: Net<Dd>,
+    /// log2 Π γ(1+β) over the steps.
+    growth: f64,
+    /// By how much the error of the net transformation exceeds that of one step.
+    slack: f64,
+    /// Whether two doubles have room for products of the net γ.
+    fits_dd: bool,
+}
+
+/// A transformed field.
+#[derive(Clone, Debug)]
+pub struct Applied {
+    /// E' in the unit of the answer.
+    pub e: [f64; 3],
+    /// B' in the unit of the answer.
+    pub b: [f64; 3],
+    /// E' and B' in V/m and T to the precision of two doubles.
+    pub precise: (Vec3<Dd>, Vec3<Dd>),
+    /// For E' and B': log2 of the size of what was summed over that of the result (at least 0);
+    /// infinite where terms cancel exactly.
+    pub cancelled_bits: [f64; 2],
+}
+
+impl Resolved {
+    /// Composes steps that passed their checks.
+    ///
+    /// # Errors
+    /// The speeds of the steps multiply up beyond the precision kept, or the net γ is larger
+    /// than a double can hold.
+    pub fn new(steps: Vec<Step>) -> Result<Resolved, Impossible> {
+        let mut fits = true;
+        let mut moving = 0u32;
+        let mut growth = 0.0;
+        for step in &steps {
+            match &step.change {
+                Change::Boost(motion) => {
+                    moving += 1;
+                    let gamma = if motion.fits_dd() {
+                        let gamma = motion.boost::<Dd>(()).gamma.hi;
+                        libm::log2(gamma + ((gamma - 1.0) * (gamma + 1.0)).sqrt())
+                    } else {
+                        fits = false;
+                        motion.boost::<Big>(LEVELS[0]).gamma.exponent().unwrap_or(0) as f64 + 2.0
+                    };
+                    growth += gamma;
+                }
+                Change::Rotate(turn) => fits &= turn.fits_dd(),
+            }
+        }
+        if growth > MAX_GROWTH {
+            return Err(Impossible::PrecisionExhausted {
+                growth,
+                limit: MAX_GROWTH,
+            });
+        }
+        let mut resolved = Resolved {
+            steps,
+            net: Net::IDENTITY,
+            growth,
+            slack: 1.0,
+            fits_dd: true,
+        };
+        if fits && (moving < 2 || growth <= DD_GROWTH) {
+            resolved.net = Net::of(&resolved.steps, ());
+            if moving > 1 {
+                let gamma = resolved
+                    .net
+                    .boost
+                    .as_ref()
+                    .map_or(1.0, |boost| boost.gamma.hi);
+                let lost = growth - libm::log2(2.0 * gamma);
+                resolved.slack = f64::from(moving) * libm::exp2(lost.max(0.0) / 2.0);
+            }
+        } else {
+            resolved.net = Net::<Big>::of(&resolved.steps, resolved.context(LEVELS[0])).to_dd();
+        }
+        let gamma = resolved
+            .net
+            .boost
+            .as_ref()
+            .map_or(1.0, |boost| boost.gamma.hi);
+        if !gamma.is_finite() {
+            return Err(Impossible::Overflow {
+                what: "gamma of the net boost",
+            });
+        }
+        resolved.fits_dd = gamma < 1e60;
+        Ok(resolved)
+    }
+
+    /// The net transformation to the precision of two doubles.
+    pub fn net(&self) -> &Net<Dd> {
+        &self.net
+    }
+
+    /// The steps as given.
+    pub fn steps(&self) -> &[Step] {
+        &self.steps
+    }
+
+    /// Λ of the net transformation, rounded to doubles.
+    pub fn matrix(&self) -> Matrix4<f64> {
+        if self.fits_dd {
+            return self.net.matrix(());
+        }
+        let context = self.context(LEVELS[0]);
+        Net::<Big>::of(&self.steps, context).matrix(context)
+    }
+
+    /// The bits in which a result keeps `bits` of them.
+    fn context(&self, bits: usize) -> usize {
+        bits + 2 * self.growth as usize
+    }
+
+    /// The field in the target frame, in the units `to`.
+    ///
+    /// # Errors
+    /// A component is larger than the largest double.
+    pub fn apply(&self, field: &Measured, to: FieldUnits) -> Result<Applied, Impossible> {
+        let fast = (self.fits_dd && in_range(field)).then(|| {
+            let kernel = Kernel::new(&self.net, field.units, ());
+            let (e, b) = kernel.apply(&vector(field.e, ()), &vector(field.b, ()));
+            (
+                [e, b],
+                sizes(&kernel, field),
+                self.chain_sizes(&kernel, field),
+            )
+        });
+        let part = |which: usize, unit: Scale, target: Scale| {
+            let Some((results, sizes, chain_sizes)) = &fast else {
+                return self.apply_big(field, which, unit, target);
+            };
+            let (result, size) = (&results[which], sizes[which]);
+            let (rounded, precise, _) = if kept(result, size.max(chain_sizes[which])) {
+                let (rounded, precise) = finish(result, unit, target, ());
+                (rounded, precise, 0.0)
+            } else {
+                self.apply_big(field, which, unit, target)
+            };
+            let lost = if size == 0.0 {
+                0.0
+            } else {
+                libm::log2(size * unit.to_f64() / length(&precise))
+            };
+            (rounded, precise, lost.max(0.0))
+        };
+        let (e, precise_e, lost_e) = part(0, field.units.e, to.e);
+        let (b, precise_b, lost_b) = part(1, field.units.b, to.b);
+        for (what, vector) in [("a component of e", e), ("a component of b", b)] {
+            if vector.iter().any(|x| !x.is_finite()) {
+                return Err(Impossible::Overflow { what });
+            }
+        }
+        let (precise, cancelled_bits) = ((precise_e, precise_b), [lost_e, lost_b]);
+        Ok(Applied {
+            e,
+            b,
+            precise,
+            cancelled_bits,
+        })
+    }
+
+    /// For chains, a bound of the size of what is summed that counts in the composition of the
+    /// net transformation: no product of its rounded direction vanishes exactly.
+    fn chain_sizes(&self, kernel: &Kernel<Dd>, field: &Measured) -> [f64; 2] {
+        let Some(boost) = self
+            .net
+            .boost
+            .as_ref()
+            .filter(|_| !self.net.direction_as_given)
+        else {
+            return [0.0; 2];
+        };
+        let [e, b] = [field.e, field.b].map(|x| libm::hypot(libm::hypot(x[0], x[1]), x[2]));
+        let factor = 2.0 * boost.gamma.hi * self.slack;
+        [
+            factor * (e + kernel.cb_over_e * b),
+            factor * (b + e / kernel.cb_over_e),
+        ]
+    }
+
+    /// E' (`which` 0) or B' (1) in as many bits as it takes; zero when it is zero to the last.
+    fn apply_big(
+        &self,
+        field: &Measured,
+        which: usize,
+        unit: Scale,
+        target: Scale,
+    ) -> ([f64; 3], Vec3<Dd>, f64) {
+        let exponent = |v: &Vec3<Big>| v.iter().filter_map(Big::exponent).max();
+        let mut vanishes_by_itself = false;
+        for bits in LEVELS {
+            let context = self.context(bits);
+            let net = Net::<Big>::of(&self.steps, context);
+            let kernel = Kernel::new(&net, field.units, context);
+            let (e, b) = (vector(field.e, context), vector(field.b, context));
+            let (e2, b2) = kernel.apply(&e, &b);
+            let result = if which == 0 { e2 } else { b2 };
+            // |E| + c|B| times 2γ bounds every term of the sum.
+            let ratio = field
+                .units
+                .cb_over_e()
+                .value::<Big>(context)
+                .exponent()
+                .unwrap_or(0);
+            let (own, other, ratio) = if which == 0 {
+                (&e, &b, ratio)
+            } else {
+                (&b, &e, -ratio)
+            };
+            let gamma = net
+                .boost
+                .as_ref()
+                .and_then(|boost| boost.gamma.exponent())
+                .unwrap_or(0);
+            let moved = exponent(other)
+                .filter(|_| net.boost.is_some())
+                .map(|x| x + ratio);
+            let Some(size) = exponent(own).max(moved).map(|size| size + gamma + 3) else {
+                vanishes_by_itself = true;
+                break;
+            };
+            if let Some(reached) = exponent(&result) {
+                // A chain has spent as many bits as its steps multiply up.
+                if size - reached <= (bits as f64 + self.growth) as i64 - GUARD {
+                    let (rounded, precise) = finish(&result, unit, target, context);
+                    return (rounded, precise, ((size - reached) as f64 - 3.0).max(0.0));
+                }
+            }
+            if bits >= self.bits_of_zero(field) {
+                break;
+            }
+        }
+        let zero = [Dd::from_f64(0.0); 3];
+        (
+            [0.0; 3],
+            zero,
+            if vanishes_by_itself {
+                0.0
+            } else {
+                f64::INFINITY
+            },
+        )
+    }
+
+    /// How many bits prove that a sum of products of these doubles vanishes: enough for all of
+    /// their digits side by side.
+    fn bits_of_zero(&self, field: &Measured) -> usize {
+        let direction = self
+            .net
+            .boost
+            .as_ref()
+            .map_or([0.0; 3], |boost| round(&boost.direction));
+        let spread = [field.e, field.b, direction]
+            .map(|v| {
+                let exponents = v.iter().filter(|x| **x != 0.0).map(|x| libm::ilogb(*x));
+                exponents.clone().max().unwrap_or(0) - exponents.min().unwrap_or(0)
+            })
+            .into_iter()
+            .max()
+            .unwrap_or(0);
+        if spread < 100 { LEVELS[1] } else { LEVELS[3] }
+    }
+}
+
+/// Whether products of these numbers stay well inside the range of two doubles.
+fn in_range(field: &Measured) -> bool {
+    field
+        .e
+        .iter()
+        .chain(&field.b)
+        .all(|x| *x == 0.0 || (1e-60..1e60).contains(&x.abs()))
+}
+
+fn length(v: &Vec3<Dd>) -> f64 {
+    libm::hypot(libm::hypot(v[0].hi, v[1].hi), v[2].hi)
+}
+
+fn kept(result: &Vec3<Dd>, size: f64) -> bool {
+    length(result) >= KEPT * size
+}
+
+/// The vector in the unit of the answer, rounded once, and in SI to two doubles.
+fn finish<R: Real>(
+    vector: &Vec3<R>,
+    unit: Scale,
+    target: Scale,
+    context: R::Context,
+) -> ([f64; 3], Vec3<Dd>) {
+    let in_unit = |scale: Scale| -> Vec3<R> {
+        if scale == Scale::ONE {
+            return vector.clone();
+        }
+        let factor = scale.value::<R>(context);
+        vector.clone().map(|x| x * factor.clone())
+    };
+    // Adding zero turns −0 into 0.
+    let rounded = round(&in_unit(unit.over(target))).map(|x| x + 0.0);
+    let si = in_unit(unit);
+    (rounded, std::array::from_fn(|i| si[i].to_dd()))
+}
+
+/// The size of what is summed for E' and B', in the units of the reading.
+fn sizes(kernel: &Kernel<Dd>, field: &Measured) -> [f64; 2] {
+    let Some((d, k, p, q)) = &kernel.motion else {
+        return [0.0; 2];
+    };
+    let d = round(d);
+    let crossed = |x: &[f64; 3]| -> [f64; 3] {
+        let exact = cross(&vector::<Dd>(d, ()), &vector::<Dd>(*x, ()));
+        std::array::from_fn(|i| {
+            let (j, k) = ((i + 1) % 3, (i + 2) % 3);
+            let size = (d[j] * x[k]).abs() + (d[k] * x[j]).abs();
+            if exact[i].is_zero() { 0.0 } else { size }
+        })
+    };
+    let (xe, xb) = (crossed(&field.e), crossed(&field.b));
+    let size = |own: &[f64; 3], x: &[f64; 3], other: &[f64; 3], factor: f64| {
+        (0..3).fold(0.0f64, |sum, i| {
+            let (j, l) = ((i + 1) % 3, (i + 2) % 3);
+            let across = k.hi * (x[j] * d[l].abs() + x[l] * d[j].abs());
+            libm::hypot(sum, own[i].abs() + across + factor.abs() * other[i])
+        })
+    };
+    [
+        size(&field.e, &xe, &xb, p.hi),
+        size(&field.b, &xb, &xe, q.hi),
+    ]
+}

@@ -1,0 +1,108 @@
+//! The arithmetic that the formulas are written in, whatever the number of digits.
+//!
+//! Every formula of this crate stands once, generic over [`Real`]. Two types implement it:
+//! [`Dd`](super::Dd), two doubles (106 bits, fast), and [`Big`](super::Big), as many bits as
+//! asked for. [`precise`](super::precise) chooses between them.
+
+use std::ops::{Add, Div, Mul, Neg, Sub};
+
+/// A real number of some fixed precision.
+pub trait Real:
+    Clone
+    + Add<Output = Self>
+    + Sub<Output = Self>
+    + Mul<Output = Self>
+    + Div<Output = Self>
+    + Neg<Output = Self>
+{
+    /// What is needed to make a number from nothing: the precision.
+    type Context: Copy;
+
+    /// The double itself, exactly.
+    fn new(value: f64, context: Self::Context) -> Self;
+    /// An integer, to full precision.
+    fn integer(value: u128, context: Self::Context) -> Self;
+    /// π to full precision.
+    fn pi(context: Self::Context) -> Self;
+    /// The nearest double (ties to even); infinite past the largest one.
+    fn to_f64(&self) -> f64;
+    /// The number to the precision of two doubles, for values well inside their range.
+    fn to_dd(&self) -> super::Dd;
+    /// The precision this number has.
+    fn context(&self) -> Self::Context;
+    /// Times 2ⁿ, exactly.
+    fn scale2(&self, n: i32) -> Self;
+    /// n with 2ⁿ ≤ |x| < 2ⁿ⁺¹; `None` for zero.
+    fn exponent(&self) -> Option<i64>;
+    /// Square root; zero for zero. The argument is not negative.
+    fn sqrt(&self) -> Self;
+    /// Sine and cosine of an angle in radians.
+    fn sin_cos(&self) -> (Self, Self);
+    /// Hyperbolic sine.
+    fn sinh(&self) -> Self;
+    /// Whether it is exactly zero.
+    fn is_zero(&self) -> bool;
+    /// Whether it is below zero.
+    fn is_negative(&self) -> bool;
+
+    /// The absolute value.
+    fn abs(&self) -> Self {
+        if self.is_negative() {
+            -self.clone()
+        } else {
+            self.clone()
+        }
+    }
+    /// The square.
+    fn square(&self) -> Self {
+        self.clone() * self.clone()
+    }
+    /// A small whole number of the same precision.
+    fn of(&self, value: f64) -> Self {
+        Self::new(value, self.context())
+    }
+}
+
+/// A vector of three components on Cartesian axes.
+pub type Vec3<R> = [R; 3];
+
+/// a × b.
+pub fn cross<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> Vec3<R> {
+    let component = |j: usize, k: usize| a[j].clone() * b[k].clone() - a[k].clone() * b[j].clone();
+    [component(1, 2), component(2, 0), component(0, 1)]
+}
+
+/// a · b.
+pub fn dot<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> R {
+    a[0].clone() * b[0].clone() + a[1].clone() * b[1].clone() + a[2].clone() * b[2].clone()
+}
+
+/// |a|².
+pub fn norm2<R: Real>(a: &Vec3<R>) -> R {
+    dot(a, a)
+}
+
+/// s a.
+pub fn scale<R: Real>(s: &R, a: &Vec3<R>) -> Vec3<R> {
+    a.clone().map(|x| s.clone() * x)
+}
+
+/// a + b.
+pub fn add<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> Vec3<R> {
+    std::array::from_fn(|i| a[i].clone() + b[i].clone())
+}
+
+/// a − b.
+pub fn sub<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> Vec3<R> {
+    std::array::from_fn(|i| a[i].clone() - b[i].clone())
+}
+
+/// Three doubles as a vector.
+pub fn vector<R: Real>(a: [f64; 3], context: R::Context) -> Vec3<R> {
+    a.map(|x| R::new(x, context))
+}
+
+/// The nearest doubles.
+pub fn round<R: Real>(a: &Vec3<R>) -> [f64; 3] {
+    std::array::from_fn(|i| a[i].to_f64())
+}

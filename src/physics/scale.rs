@@ -1,0 +1,82 @@
+//! Exact scales between units: a ratio of whole numbers, times π or not.
+
+use super::real::Real;
+
+/// num/den · π^pi. Every factor between units is one, so that no digit is lost to units.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub struct Scale {
+    /// Numerator.
+    pub num: u128,
+    /// Denominator.
+    pub den: u128,
+    /// Power of π.
+    pub pi: i8,
+}
+
+impl Scale {
+    /// One.
+    pub const ONE: Scale = Scale::ratio(1, 1);
+
+    /// num/den.
+    pub const fn ratio(num: u128, den: u128) -> Scale {
+        Scale { num, den, pi: 0 }
+    }
+
+    /// num/den · π.
+    pub const fn pi(num: u128, den: u128) -> Scale {
+        Scale { num, den, pi: 1 }
+    }
+
+    /// The scale by which numbers in unit `self` are restated in unit `other`, in lowest terms.
+    pub fn over(self, other: Scale) -> Scale {
+        let cross = |a: u128, b: u128| {
+            let common = gcd(a, b);
+            (a / common, b / common)
+        };
+        let (a, d) = cross(self.num, self.den);
+        let (e, f) = cross(other.den, other.num);
+        let (a, f) = cross(a, f);
+        let (e, d) = cross(e, d);
+        Scale {
+            num: a * e,
+            den: d * f,
+            pi: self.pi - other.pi,
+        }
+    }
+
+    /// The scale of a product of two quantities.
+    pub fn times(self, other: Scale) -> Scale {
+        self.over(Scale {
+            num: other.den,
+            den: other.num,
+            pi: -other.pi,
+        })
+    }
+
+    /// The value as a real number.
+    pub fn value<R: Real>(self, context: R::Context) -> R {
+        if self == Scale::ONE {
+            return R::new(1.0, context);
+        }
+        let mut value = R::integer(self.num, context);
+        if self.den != 1 {
+            value = value / R::integer(self.den, context);
+        }
+        for _ in 0..self.pi {
+            value = value * R::pi(context);
+        }
+        for _ in self.pi..0 {
+            value = value / R::pi(context);
+        }
+        value
+    }
+
+    /// The nearest double.
+    pub fn to_f64(self) -> f64 {
+        self.value::<super::Dd>(()).to_f64()
+    }
+}
+
+fn gcd(a: u128, b: u128) -> u128 {
+    if b == 0 { a } else { gcd(b, a % b) }
+}

@@ -1,0 +1,230 @@
+//! The meeting point: a reading and a resolved way give the same field in the target frame.
+
+use crate::physics::Impossible;
+use crate::physics::double_double::Dd;
+use crate::physics::energy::Energy;
+use crate::physics::field::{FieldUnits, Kernel, Measured};
+use crate::physics::invariants::Invariants;
+use crate::physics::lorentz::Change;
+use crate::physics::parallel::{ParallelFrame, parallel_frame};
+use crate::physics::precise::Resolved;
+use crate::physics::real::{Vec3, round, vector};
+use crate::physics::rotation::Turn;
+
+/// E and B at one event, any component of which may be missing.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Reading {
+    /// E, in units of `units.e`.
+    pub e: [Option<f64>; 3],
+    /// B, in units of `units.b`.
+    pub b: [Option<f64>; 3],
+    /// What a unit is.
+    pub units: FieldUnits,
+}
+
+/// A remark that a careful colleague would make.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Notice {
+    /// Stable name.
+    pub code: &'static str,
+    /// In words.
+    pub detail: String,
+}
+
+/// A reading restated in the target frame.
+#[derive(Clone, Debug)]
+pub struct Transformed {
+    /// E', in units of `units.e`; a component that depends on a missing one is missing.
+    pub e: [Option<f64>; 3],
+    /// B', in units of `units.b`.
+    pub b: [Option<f64>; 3],
+    /// What a unit is.
+    pub units: FieldUnits,
+    /// E' in V/m and B' in T to two doubles; `None` when anything is missing.
+    pub precise: Option<(Vec3<Dd>, Vec3<Dd>)>,
+    /// Invariants of the question; `None` when anything is missing.
+    pub invariants: Option<Invariants>,
+    /// Remarks.
+    pub notices: Vec<Notice>,
+}
+
+/// Restates a reading; the answer is in the units `to`.
+///
+/// # Errors
+/// A component of the answer is larger than the largest double.
+pub fn transform(
+    way: &Resolved,
+    reading: &Reading,
+    to: FieldUnits,
+) -> Result<Transformed, Impossible> {
+    let filled = |v: [Option<f64>; 3]| v.map(|x| x.unwrap_or(0.0));
+    let question = Measured {
+        e: filled(reading.e),
+        b: filled(reading.b),
+        units: reading.units,
+    };
+    let applied = way.apply(&question, to)?;
+    let mut notices = Vec::new();
+    note_mended_rotations(way, &mut notices);
+    for (name, bits) in [
+        ("e", applied.cancelled_bits[0]),
+        ("b", applied.cancelled_bits[1]),
+    ] {
+        note_cancellation(name, bits, &mut notices);
+    }
+    let known = known_components(way, reading);
+    let complete = known == [[true; 3]; 2]
+        && [reading.e, reading.b]
+            .as_flattened()
+            .iter()
+            .all(Option::is_some);
+    let hide = |v: [f64; 3], known: [bool; 3]| std::array::from_fn(|i| known[i].then_some(v[i]));
+    let invariants = complete.then(|| {
+        let answer = Measured {
+            e: applied.e,
+            b: applied.b,
+            units: to,
+        };
+        Invariants::of(&question, &answer)
+    });
+    if !complete {
+        notices.push(Notice {
+            code: "missing_component",
+            detail: "a component of the reading is missing; what depends on it is null, and so \
+                     are the invariants"
+                .into(),
+        });
+    }
+    if let Some(found) = &invariants
+        && (found.e2_minus_c2b2.is_none() || found.e_dot_cb.is_none())
+    {
+        notices.push(Notice {
+            code: "invariant_out_of_range",
+            detail: "an invariant is larger than the largest double in V2/m2 and is null".into(),
+        });
+    }
+    note_strength(&question, &mut notices);
+    Ok(Transformed {
+        e: hide(applied.e, known[0]),
+        b: hide(applied.b, known[1]),
+        units: to,
+        precise: complete.then_some(applied.precise),
+        invariants,
+        notices,
+    })
+}
+
+impl Transformed {
+    /// E'/c and B' in T; `None` when anything is missing.
+    pub fn tesla(&self) -> Option<([f64; 3], [f64; 3])> {
+        let (e, b) = self.precise.as_ref()?;
+        let c = Dd::from_f64(crate::physics::constants::C);
+        Some((round(&e.map(|x| x / c)), round(b)))
+    }
+
+    /// Energy density, Poynting vector and stress of the answer; `None` when anything is
+    /// missing or out of range.
+    pub fn energy(&self) -> Option<Energy> {
+        let (e, b) = self.precise.as_ref()?;
+        Some(Energy::of(e, b)).filter(Energy::is_finite)
+    }
+
+    /// The frame in which E and B are parallel, as seen from that of the answer; the inner
+    /// `None` says that the field is null and there is none.
+    pub fn parallel_frame(&self) -> Option<Option<ParallelFrame>> {
+        let (e, b) = self.precise.as_ref()?;
+        Some(parallel_frame(e, b, self.invariants.as_ref()?))
+    }
+}
+
+/// Which components of E' and B' do not depend on a missing one.
+fn known_components(way: &Resolved, reading: &Reading) -> [[bool; 3]; 2] {
+    let mut known = [[true; 3]; 2];
+    if [reading.e, reading.b]
+        .as_flattened()
+        .iter()
+        .all(Option::is_some)
+    {
+        return known;
+    }
+    let kernel = Kernel::new(way.net(), reading.units, ());
+    for (which, v) in [reading.e, reading.b].iter().enumerate() {
+        for i in (0..3).filter(|i| v[*i].is_none()) {
+            let mut unit = [[0.0; 3]; 2];
+            unit[which][i] = 1.0;
+            let (e, b) = kernel.apply(&vector(unit[0], ()), &vector(unit[1], ()));
+            for (known, effect) in known.iter_mut().zip([e, b]) {
+                for j in 0..3 {
+                    known[j] &= effect[j].hi == 0.0;
+                }
+            }
+        }
+    }
+    known
+}
+
+/// From a rotation mended by more than this on, the answer says so.
+const WORTH_SAYING: f64 = 1e-9;
+/// From this many cancelled bits on (six decimal digits), the answer says so.
+const CANCELLED_BITS: f64 = 20.0;
+/// Dielectric strength of air at sea level in V/m, about (common practice).
+const STRONG_E: f64 = 3e6;
+/// The flux density in T from which implants may be disturbed (0.5 mT, the line usually drawn
+/// around magnets: ICNIRP Guidelines on Limits of Exposure to Static Magnetic Fields, 2009).
+const STRONG_B: f64 = 5e-4;
+
+fn note_mended_rotations(way: &Resolved, notices: &mut Vec<Notice>) {
+    let departure = way
+        .steps()
+        .iter()
+        .filter_map(|step| match &step.change {
+            Change::Rotate(turn @ (Turn::Quaternion(_) | Turn::Matrix(_))) => turn.check().ok(),
+            _ => None,
+        })
+        .fold(0.0, f64::max);
+    if departure > WORTH_SAYING {
+        let detail = format!(
+            "a quaternion or matrix was off by {departure:.1e} and was taken to the nearest \
+             rotation; give more digits if the attitude is known better"
+        );
+        notices.push(Notice {
+            code: "rotation_mended",
+            detail,
+        });
+    }
+}
+
+fn note_cancellation(name: &str, bits: f64, notices: &mut Vec<Notice>) {
+    if bits < CANCELLED_BITS {
+        return;
+    }
+    let detail = if bits.is_infinite() {
+        format!("the terms of {name} cancel exactly: it vanishes for the numbers given")
+    } else {
+        let digits = bits * std::f64::consts::LOG10_2;
+        format!(
+            "{name} is what is left of terms about 1e{digits:.0} times larger: it is exact for \
+             the numbers given, but their last digits decide it"
+        )
+    };
+    notices.push(Notice {
+        code: "heavy_cancellation",
+        detail,
+    });
+}
+
+fn note_strength(question: &Measured, notices: &mut Vec<Notice>) {
+    let largest = |v: [f64; 3]| v.iter().fold(0.0f64, |m, x| m.max(x.abs()));
+    let e = largest(question.e) * question.units.e.to_f64();
+    let b = largest(question.b) * question.units.b.to_f64();
+    if e >= STRONG_E || b >= STRONG_B {
+        let detail = "the reading is strong enough that the usual care is due (3 MV/m: air may \
+                      break down; 0.5 mT: implants may be disturbed); follow local codes and \
+                      licensed practice, this answer is no safety clearance"
+            .into();
+        notices.push(Notice {
+            code: "strong_field",
+            detail,
+        });
+    }
+}
