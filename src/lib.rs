@@ -1,9 +1,29 @@
 //! Lodeframe restates measured electric and magnetic fields in the frame where they are needed.
+//!
+//! # Map
+//!
+//! A module imports only from those above it in this list; `tests/layering.rs` checks it.
+//!
+//! | module | what it holds |
+//! |---|---|
+//! | [`physics`] | fields and frames as numbers: boosts, rotations, tensor, invariants, precision |
+//! | [`units`] | the table of UCUM codes |
+//! | [`document`] | a question as a tree of values, and the faults found in it |
+//! | [`chain`] | steps of a way, as written |
+//! | [`transform`] | the meeting point: a reading and a resolved way give the answer |
+//! | [`question`] | what is asked, read from a tree |
+//! | [`answer`] | what is answered, as JSON |
+//! | [`config`] | every flag and variable, with its default |
+//! | [`http`] | paths, handlers, problems, middleware; the only part that knows axum |
 
 pub mod answer;
 pub mod chain;
+pub mod config;
 pub mod document;
+pub mod http;
 pub mod physics;
 pub mod question;
 pub mod transform;
 pub mod units;
+
+pub use http::{AppState, app};

@@ -1,18 +1,84 @@
-//! x
-use std::io::*;
-fn main() {
-    for line in stdin().lock().lines() {
-        let line = line.unwrap();
-        let node = lodeframe::document::Node::from_json(line.as_bytes()).unwrap();
-        match lodeframe::question::Question::read(
-            &node,
-            &lodeframe::question::Limits { steps: 1000 },
-        ) {
-            Ok(q) => match lodeframe::answer::Answer::to(&q) {
-                Ok(a) => println!("{}", serde_json::to_string(&a).unwrap()),
-                Err(e) => println!("{{\"err\":\"{e}\"}}"),
-            },
-            Err(f) => println!("{{\"err\":{:?}}}", format!("{f:?}")),
+//! The command line: start, and a graceful stop.
+
+use std::process::ExitCode;
+
+use clap::Parser;
+use lodeframe::{
+    AppState,
+    config::{Command, CommandLine, Config, Settings, unknown_variables},
+    http::{app, log, openapi, serve::serve},
+};
+use tokio::{
+    net::TcpListener,
+    signal::unix::{SignalKind, signal},
+};
+
+/// The service could not start, for a reason outside its settings.
+const CANNOT_START: u8 = 1;
+/// The settings are wrong.
+const WRONG_SETTINGS: u8 = 2;
+
+fn main() -> ExitCode {
+    let line = CommandLine::parse();
+    match line.command {
+        Some(Command::Openapi) => {
+            print!("{}", openapi::text());
+            ExitCode::SUCCESS
+        }
+        Some(Command::Serve(settings)) => start(&settings),
+        None => start(&line.serve),
+    }
+}
+
+fn start(settings: &Settings) -> ExitCode {
+    let mut faults = unknown_variables(std::env::vars_os().map(|(name, _)| name));
+    let config = settings.check().unwrap_or_else(|found| {
+        faults.extend(found);
+        Config::default()
+    });
+    if !faults.is_empty() {
+        eprintln!("lodeframe cannot start:\n  {}", faults.join("\n  "));
+        return ExitCode::from(WRONG_SETTINGS);
+    }
+    let _log = log::start(config.log, std::io::stderr());
+    let runtime = tokio::runtime::Builder::new_multi_thread()
+        .enable_all()
+        .build();
+    match runtime.and_then(|runtime| runtime.block_on(run(config))) {
+        Ok(()) => ExitCode::SUCCESS,
+        Err(error) => {
+            eprintln!("lodeframe cannot start: {error}");
+            ExitCode::from(CANNOT_START)
         }
     }
+}
+
+async fn run(config: Config) -> std::io::Result<()> {
+    let listener = TcpListener::bind(config.listen).await.map_err(|error| {
+        std::io::Error::new(
+            error.kind(),
+            format!(
+                "{} cannot be listened on ({error}); choose another with --listen",
+                config.listen
+            ),
+        )
+    })?;
+    let (mut terminate, mut interrupt) = (
+        signal(SignalKind::terminate())?,
+        signal(SignalKind::interrupt())?,
+    );
+    let stop = async move {
+        tokio::select! {
+            _ = terminate.recv() => {}
+            _ = interrupt.recv() => {}
+        }
+    };
+    let address = listener.local_addr()?;
+    let app = app(AppState::new(config.clone()));
+    println!(
+        "Lodeframe {} listens on http://{address} (stop with Ctrl-C)",
+        env!("CARGO_PKG_VERSION")
+    );
+    serve(listener, app, &config, stop).await;
+    Ok(())
 }

@@ -1,0 +1,38 @@
+//! One file for each resource.
+
+pub(super) mod health;
+pub(super) mod metrics;
+pub(super) mod openapi;
+pub(super) mod page;
+pub(super) mod problems;
+pub(super) mod reference;
+
+use axum::{
+    http::{HeaderValue, header},
+    response::{IntoResponse, Response},
+};
+
+use super::accept;
+
+/// JSON as an answer.
+pub(super) fn json(value: &impl serde::Serialize) -> Response {
+    let text = serde_json::to_vec(value).expect("answers have a JSON form");
+    (
+        [(header::CONTENT_TYPE, HeaderValue::from_static(accept::JSON))],
+        text,
+    )
+        .into_response()
+}
+
+/// A page for people: styles of its own, scripts of this service, nothing from elsewhere.
+fn html(text: impl Into<axum::body::Body>) -> Response {
+    const POLICY: &str = "default-src 'none'; script-src 'self'; style-src 'self' 'unsafe-inline'; \
+         img-src 'self' data:; connect-src 'self'; base-uri 'none'; form-action 'self'; \
+         frame-ancestors 'none'";
+    let headers = [
+        (header::CONTENT_TYPE, "text/html; charset=utf-8"),
+        (header::CONTENT_SECURITY_POLICY, POLICY),
+        (header::REFERRER_POLICY, "no-referrer"),
+    ];
+    (headers, text.into()).into_response()
+}

@@ -1,0 +1,46 @@
+//! Every path of the service.
+
+use axum::{Router, http::HeaderName};
+use tower_http::cors::{AllowOrigin, Any, CorsLayer};
+use utoipa_axum::{router::OpenApiRouter, routes};
+
+use super::{AppState, handlers, middleware::Observe, openapi};
+
+/// The whole service as one router, ready to be served.
+pub fn app(state: AppState) -> Router {
+    let (mut router, _) = routes().split_for_parts();
+    let origins = &state.config.cors_origins;
+    if !origins.is_empty() {
+        router = router.layer(cors(origins));
+    }
+    router.layer(Observe(state.clone())).with_state(state)
+}
+
+/// Every path with its handler and its description.
+pub fn routes() -> OpenApiRouter<AppState> {
+    OpenApiRouter::with_openapi(openapi::head())
+        .routes(routes!(handlers::page::page))
+        .routes(routes!(handlers::openapi::openapi))
+        .routes(routes!(handlers::reference::reference))
+        .routes(routes!(handlers::reference::reference_asset))
+        .routes(routes!(handlers::problems::list_problems))
+        .routes(routes!(handlers::problems::explain_problem))
+        .routes(routes!(handlers::health::live))
+        .routes(routes!(handlers::health::ready))
+        .routes(routes!(handlers::metrics::metrics))
+}
+
+/// Lets pages of the named origins ask, without cookies.
+fn cors(origins: &[String]) -> CorsLayer {
+    let origins = origins
+        .iter()
+        .map(|origin| origin.parse().expect("checked with the settings"));
+    CorsLayer::new()
+        .allow_origin(AllowOrigin::list(origins))
+        .allow_methods(Any)
+        .allow_headers(Any)
+        .expose_headers([
+            axum::http::header::ETAG,
+            HeaderName::from_static("x-request-id"),
+        ])
+}

@@ -1,0 +1,41 @@
+//! What all requests share.
+
+use std::sync::Arc;
+
+use bytes::Bytes;
+
+use super::{metrics::Metrics, openapi};
+use crate::config::Config;
+
+/// What all requests share; a clone is one more handle to the same.
+#[derive(Clone)]
+pub struct AppState(Arc<Shared>);
+
+/// The parts of [`AppState`].
+pub struct Shared {
+    /// The settings the service was started with.
+    pub config: Config,
+    /// What is counted.
+    pub metrics: Metrics,
+    /// The OpenAPI document, as served.
+    pub openapi: Bytes,
+}
+
+impl AppState {
+    /// Prepares everything that is made once and never changes.
+    pub fn new(config: Config) -> AppState {
+        AppState(Arc::new(Shared {
+            config,
+            metrics: Metrics::new(),
+            openapi: openapi::text().into(),
+        }))
+    }
+}
+
+impl std::ops::Deref for AppState {
+    type Target = Shared;
+
+    fn deref(&self) -> &Shared {
+        &self.0
+    }
+}
