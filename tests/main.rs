@@ -2,3 +2,4 @@
 
 mod arithmetic;
 mod laws;
+mod schema;

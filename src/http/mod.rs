@@ -24,6 +24,7 @@ pub mod middleware;
 pub mod openapi;
 pub mod problem;
 pub mod router;
+pub mod schema;
 pub mod serve;
 mod state;
 

@@ -19,6 +19,12 @@ pub fn app(state: AppState) -> Router {
 /// Every path with its handler and its description.
 pub fn routes() -> OpenApiRouter<AppState> {
     OpenApiRouter::with_openapi(openapi::head())
+        .routes(routes!(
+            handlers::transform::transform,
+            handlers::transform::transform_by_url
+        ))
+        .routes(routes!(handlers::units::units))
+        .routes(routes!(handlers::constants::constants))
         .routes(routes!(handlers::page::page))
         .routes(routes!(handlers::openapi::openapi))
         .routes(routes!(handlers::reference::reference))

@@ -77,6 +77,23 @@ impl Scale {
     }
 }
 
+impl std::fmt::Display for Scale {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        let reduced = self.over(Scale::ONE);
+        write!(f, "{}", reduced.num)?;
+        match self.pi {
+            0 => {}
+            1 => f.write_str("*pi")?,
+            n => write!(f, "*pi^{n}")?,
+        }
+        if reduced.den == 1 {
+            Ok(())
+        } else {
+            write!(f, "/{}", reduced.den)
+        }
+    }
+}
+
 fn gcd(a: u128, b: u128) -> u128 {
     if b == 0 { a } else { gcd(b, a % b) }
 }

@@ -1,11 +1,14 @@
 //! One file for each resource.
 
+pub(super) mod constants;
 pub(super) mod health;
 pub(super) mod metrics;
 pub(super) mod openapi;
 pub(super) mod page;
 pub(super) mod problems;
 pub(super) mod reference;
+pub(super) mod transform;
+pub(super) mod units;
 
 use axum::{
     http::{HeaderValue, header},

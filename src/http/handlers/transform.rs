@@ -1,0 +1,137 @@
+//! One reading restated: `POST` with the question as JSON, `GET` with the same question as a URL.
+
+use axum::{
+    extract::{RawQuery, State},
+    http::HeaderMap,
+    response::Response,
+};
+
+use super::json;
+use crate::{
+    answer::{Answer, ENGINE},
+    chain,
+    document::{Code, Fault, Node, Path, Segment, from_query},
+    http::{
+        AppState,
+        accept::{JSON, negotiate},
+        body::JsonBody,
+        cache::{cached, etag},
+        problem::{CommonProblems, Problem, ProblemDocument, Source},
+        schema::{self, Query},
+    },
+    physics::Impossible,
+    question::{Limits, Question},
+};
+
+/// How long an answer may be kept: it never changes for one version of the service.
+const CACHE: &str = "public, max-age=86400";
+
+/// Restate one reading in another frame.
+///
+/// The way to the target frame is exactly one of `steps`, `velocity`, `boost` and `rotation`.
+/// Everything wrong with a question is answered at once.
+#[utoipa::path(
+    post, path = "/v1/transform", tag = "fields", operation_id = "transform",
+    request_body(
+        content = schema::Question, content_type = "application/json",
+        description = "The reading, the way to the target frame, and what the answer should hold",
+        examples(
+            ("motional_field" = (
+                summary = "An orbiting probe: what field is seen at rest with the ground",
+                value = json!(schema::examples::orbiting_probe()))),
+            ("turned_axes" = (
+                summary = "Axes turned by 30 degrees, then a boost along the new x axis",
+                value = json!(schema::examples::turned_axes()))),
+            ("fast_beam" = (
+                summary = "The field of a pickup, in the frame of a proton beam",
+                value = json!(schema::examples::fast_beam()))),
+        ),
+    ),
+    responses(
+        (status = 200, description = "The same field in the target frame", body = Answer,
+            content_type = "application/json",
+            examples(
+                ("motional_field" = (value = json!(schema::examples::answer_to(schema::examples::orbiting_probe())))),
+                ("turned_axes" = (value = json!(schema::examples::answer_to(schema::examples::turned_axes())))),
+                ("fast_beam" = (value = json!(schema::examples::answer_to(schema::examples::fast_beam())))),
+            )),
+        (status = 400, description = "The question cannot be understood", body = ProblemDocument, content_type = "application/problem+json"),
+        (status = 406, description = "No acceptable representation", body = ProblemDocument, content_type = "application/problem+json"),
+        (status = 408, description = "The body did not arrive in time", body = ProblemDocument, content_type = "application/problem+json"),
+        (status = 413, description = "The body is too large", body = ProblemDocument, content_type = "application/problem+json"),
+        (status = 415, description = "The body is not JSON", body = ProblemDocument, content_type = "application/problem+json"),
+        (status = 422, description = "The question has no answer: a speed past c, no rotation, an overflow", body = ProblemDocument, content_type = "application/problem+json"),
+        CommonProblems,
+    ),
+)]
+pub(crate) async fn transform(
+    State(state): State<AppState>,
+    headers: HeaderMap,
+    JsonBody(body): JsonBody,
+) -> Result<Response, Problem> {
+    negotiate(&headers, &[JSON])?;
+    let refuse = |faults| Problem::from_faults(faults, Source::Body);
+    let node = Node::from_json(&body).map_err(|fault| refuse(vec![fault]))?;
+    let question = Question::read(&node, &limits(&state)).map_err(refuse)?;
+    answer(&question).map_err(refuse)
+}
+
+/// Restate one reading in another frame, by URL.
+///
+/// The same question as by `POST`: a parameter is a path into the JSON question joined by dots,
+/// vectors are comma lists, `steps` is JSON text, and a literal `+` is written `%2B`.
+#[utoipa::path(
+    get, path = "/v1/transform", tag = "fields", operation_id = "transform_by_url",
+    params(Query),
+    responses(
+        (status = 200, description = "The same field in the target frame", body = Answer,
+            content_type = "application/json",
+            headers(
+                ("ETag" = String, description = "Tag of the question, this version and the catalogue"),
+                ("Cache-Control" = String, description = "How long the answer may be kept"),
+            )),
+        (status = 304, description = "The answer is the one the client holds"),
+        (status = 400, description = "The question cannot be understood", body = ProblemDocument, content_type = "application/problem+json"),
+        (status = 406, description = "No acceptable representation", body = ProblemDocument, content_type = "application/problem+json"),
+        (status = 422, description = "The question has no answer", body = ProblemDocument, content_type = "application/problem+json"),
+        CommonProblems,
+    ),
+)]
+pub(crate) async fn transform_by_url(
+    State(state): State<AppState>,
+    headers: HeaderMap,
+    RawQuery(query): RawQuery,
+) -> Result<Response, Problem> {
+    let representation = negotiate(&headers, &[JSON])?;
+    let refuse = |faults| Problem::from_faults(faults, Source::Query);
+    let node = from_query(&query.unwrap_or_default()).map_err(refuse)?;
+    let question = Question::read(&node, &limits(&state)).map_err(refuse)?;
+    // The question as understood, whatever the order and spelling of its parameters.
+    let canonical = format!("{question:?}");
+    let tag = etag(&[
+        canonical.as_bytes(),
+        representation.as_bytes(),
+        ENGINE.as_bytes(),
+    ]);
+    cached(&headers, tag, CACHE, || answer(&question).map_err(refuse))
+}
+
+fn limits(state: &AppState) -> Limits {
+    Limits {
+        steps: state.config.max_steps,
+    }
+}
+
+fn answer(question: &Question) -> Result<Response, Vec<Fault>> {
+    match Answer::to(question) {
+        Ok(answer) => Ok(json(&answer)),
+        Err(impossible) => Err(vec![overflow(&impossible)]),
+    }
+}
+
+/// An answer that no double holds is mended where its unit is chosen.
+fn overflow(impossible: &Impossible) -> Fault {
+    let place = Path(vec![Segment::Field("answer_units".into())]);
+    let code: Code = chain::code(impossible);
+    Fault::at(&place, code, impossible.to_string())
+}

@@ -1,0 +1,368 @@
+//! The shape of a question, for the OpenAPI document. Questions are read by hand from a tree,
+//! so that every fault is found at once; a test keeps that reader and these types equal.
+
+use serde::{Deserialize, Serialize};
+use utoipa::{IntoParams, ToSchema};
+
+/// A reading, the way to the target frame, and what the answer should hold.
+///
+/// Exactly one of `steps`, `velocity`, `boost` and `rotation` names the way, and at least one of
+/// `e` and `b` is given. Unknown and repeated names are refused. A null or left-out number is
+/// missing, never zero.
+#[derive(Clone, Debug, Default, Serialize, Deserialize, ToSchema)]
+#[schema(as = Question, example = json!(examples::orbiting_probe()))]
+#[serde(deny_unknown_fields)]
+pub struct Question {
+    /// Electric field in `units.e`, on the axes of the reading; components may be null.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub e: Option<[Option<f64>; 3]>,
+    /// Magnetic flux density in `units.b`, on the axes of the reading; components may be null.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub b: Option<[Option<f64>; 3]>,
+    /// Units of the question, SI where left out.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub units: Option<Units>,
+    /// Units of the answer, those of the question where left out.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub answer_units: Option<AnswerUnits>,
+    /// The way as a chain: each step leads from the current frame to the next one.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub steps: Option<Vec<Step>>,
+    /// The way as one boost, by the velocity of the target frame as seen in the frame of the reading, in `units.velocity`.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub velocity: Option<[f64; 3]>,
+    /// The way as one boost, in any of its forms.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub boost: Option<Boost>,
+    /// The way as one rotation.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub rotation: Option<Rotate>,
+    /// Take the whole way backwards.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub inverse: Option<bool>,
+    /// Further parts of the answer.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub include: Option<Vec<Part>>,
+    /// Convention of the tensor; `mostly_minus` where left out.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub signature: Option<Signature>,
+}
+
+/// A part of the answer given on request.
+#[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[serde(rename_all = "snake_case")]
+pub enum Part {
+    /// The field tensor, covariant and contravariant, and its dual.
+    Tensor,
+    /// The net Lorentz matrix.
+    Matrix,
+    /// Energy density, Poynting vector and Maxwell stress.
+    Energy,
+    /// The frame in which E and B are parallel.
+    ParallelFrame,
+}
+
+/// Which of time and space counts negative in the metric.
+#[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[serde(rename_all = "snake_case")]
+pub enum Signature {
+    /// (+ − − −)
+    MostlyMinus,
+    /// (− + + +)
+    MostlyPlus,
+}
+
+/// Units by quantity: UCUM codes, case-sensitive (`GET /v1/units` lists them).
+#[derive(Clone, Debug, Default, Serialize, Deserialize, ToSchema)]
+#[schema(example = json!({"e": "mV/m", "b": "nT", "velocity": "km/s", "angle": "deg"}))]
+#[serde(deny_unknown_fields)]
+pub struct Units {
+    /// Electric field: V/m, mV/m, uV/m, kV/m, MV/m, V/cm or statV/cm.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub e: Option<String>,
+    /// Magnetic flux density: T, mT, uT, nT, pT or G.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub b: Option<String>,
+    /// Velocity: m/s, km/s or [kn_i].
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub velocity: Option<String>,
+    /// Angle: rad or deg.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub angle: Option<String>,
+    /// Angular velocity: rad/s, deg/s, circ/s or circ/min.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub angular_velocity: Option<String>,
+    /// Energy: J, eV, keV, MeV or GeV.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub energy: Option<String>,
+    /// Length: m, km, cm or mm.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub length: Option<String>,
+    /// Time: s.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub time: Option<String>,
+}
+
+/// Units of an answer.
+#[derive(Clone, Debug, Default, Serialize, Deserialize, ToSchema)]
+#[schema(as = UnitsOfAnswer, example = json!({"e": "kV/m", "b": "G"}))]
+#[serde(deny_unknown_fields)]
+pub struct AnswerUnits {
+    /// Unit of E', a code of `units.e`.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub e: Option<String>,
+    /// Unit of B', a code of `units.b`.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub b: Option<String>,
+}
+
+/// A step from the current frame to the next one: an object with exactly one member.
+#[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[serde(rename_all = "snake_case", deny_unknown_fields)]
+pub enum Step {
+    /// To a frame that moves, its axes kept parallel.
+    Boost(Boost),
+    /// To axes that are turned.
+    Rotate(Rotate),
+}
+
+/// A boost, by exactly one of `velocity`; `beta`; `direction` with one of `gamma`, `rapidity`,
+/// or `kinetic_energy` and `particle`; `angular_velocity` with `position`.
+#[derive(Clone, Debug, Default, Serialize, Deserialize, ToSchema)]
+#[schema(example = json!({"velocity": [7600.0, 0.0, 0.0]}))]
+#[serde(deny_unknown_fields)]
+pub struct Boost {
+    /// Velocity of the next frame as seen in the current one, on the current axes, in `units.velocity`.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub velocity: Option<[f64; 3]>,
+    /// The same over c.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub beta: Option<[f64; 3]>,
+    /// Direction of motion, of any length but zero.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub direction: Option<[f64; 3]>,
+    /// Lorentz factor, at least 1.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    #[schema(minimum = 1)]
+    pub gamma: Option<f64>,
+    /// Rapidity artanh β; negative means against `direction`.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub rapidity: Option<f64>,
+    /// Kinetic energy of a particle at rest in the next frame, in `units.energy`.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    #[schema(minimum = 0)]
+    pub kinetic_energy: Option<f64>,
+    /// The particle: a name, or its rest energy in `units.energy`.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub particle: Option<Particle>,
+    /// Angular velocity of a rigid body, in `units.angular_velocity`; the next frame moves with one of its points.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub angular_velocity: Option<[f64; 3]>,
+    /// From a point on the axis to that point, in `units.length`.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub position: Option<[f64; 3]>,
+    /// Undo this step: for a motion reported from the other side.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub inverse: Option<bool>,
+}
+
+/// A particle by name or by rest energy.
+#[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[serde(untagged)]
+pub enum Particle {
+    /// One of the particles whose rest energy is known (CODATA 2022).
+    Named(ParticleName),
+    /// Any other, by its rest energy.
+    Other(OtherParticle),
+}
+
+/// A particle whose rest energy is known.
+#[derive(Clone, Copy, Debug, Serialize, Deserialize, ToSchema)]
+#[serde(rename_all = "snake_case")]
+#[allow(missing_docs, reason = "the names say it")]
+pub enum ParticleName {
+    Electron,
+    Muon,
+    Proton,
+    Deuteron,
+    Alpha,
+}
+
+/// A particle by its rest energy.
+#[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[serde(deny_unknown_fields)]
+pub struct OtherParticle {
+    /// Rest energy in `units.energy`, above 0.
+    pub rest_energy: f64,
+}
+
+/// A rotation: the turn that carries the current axes onto the next ones (right-hand rule), by
+/// exactly one of `axis` with `angle`, `quaternion`, `matrix` and `euler`.
+#[derive(Clone, Debug, Default, Serialize, Deserialize, ToSchema)]
+#[schema(example = json!({"axis": [0.0, 0.0, 1.0], "angle": 0.5}))]
+#[serde(deny_unknown_fields)]
+pub struct Rotate {
+    /// Axis of the turn, of any length but zero.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub axis: Option<[f64; 3]>,
+    /// Angle of the turn in `units.angle`.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub angle: Option<f64>,
+    /// The turn as a quaternion (Hamilton's; Rv = q v q*), of length 1 to about six decimals.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub quaternion: Option<Quaternion>,
+    /// M = R⁻¹, which multiplies components: row i is the next axis i on the current axes.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub matrix: Option<[[f64; 3]; 3]>,
+    /// Three turns about coordinate axes.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub euler: Option<Euler>,
+    /// Undo this step: for an attitude reported from the other side, such as body to ground.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub inverse: Option<bool>,
+}
+
+/// A quaternion w + xi + yj + zk.
+#[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[schema(as = AttitudeQuaternion, example = json!({"w": 1.0, "x": 0.0, "y": 0.0, "z": 0.0}))]
+#[serde(deny_unknown_fields)]
+#[allow(missing_docs, reason = "the names say it")]
+pub struct Quaternion {
+    pub w: f64,
+    pub x: f64,
+    pub y: f64,
+    pub z: f64,
+}
+
+/// Three turns in a row.
+#[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[schema(example = json!({"axes": "zyx", "angles": [0.1, 0.2, 0.3], "about": "moving"}))]
+#[serde(deny_unknown_fields)]
+pub struct Euler {
+    /// Three letters of x, y and z, none twice in a row.
+    #[schema(pattern = "^[xyz]{3}$")]
+    pub axes: String,
+    /// One angle for each axis, in `units.angle`.
+    pub angles: [f64; 3],
+    /// `moving`: each turn is about an axis already turned; `fixed`: about the axes at the start.
+    pub about: About,
+}
+
+/// What the axes of a turn belong to.
+#[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[serde(rename_all = "snake_case")]
+pub enum About {
+    /// The axes as turned so far.
+    Moving,
+    /// The axes at the start.
+    Fixed,
+}
+
+/// The question as parameters: each is a path into the JSON question, joined by dots.
+#[derive(IntoParams)]
+#[into_params(parameter_in = Query)]
+#[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
+pub struct Query {
+    /// Electric field: three numbers joined by commas; an empty one is missing.
+    #[param(required = false, example = "0,1.2,0")]
+    e: String,
+    /// Magnetic flux density: three numbers joined by commas; an empty one is missing.
+    #[param(required = false, example = "0,0,45000")]
+    b: String,
+    /// Unit of E; likewise `units.angle`, `units.angular_velocity`, `units.energy`, `units.length`.
+    #[param(required = false, rename = "units.e", example = "mV/m")]
+    units_e: String,
+    /// Unit of B.
+    #[param(required = false, rename = "units.b", example = "nT")]
+    units_b: String,
+    /// Unit of velocities.
+    #[param(required = false, rename = "units.velocity", example = "km/s")]
+    units_velocity: String,
+    /// The way as one boost: three numbers joined by commas.
+    #[param(required = false, example = "7.6,0,0")]
+    velocity: String,
+    /// The way as a chain: JSON text.
+    #[param(required = false)]
+    steps: String,
+    /// The way as one rotation: its axis; likewise `rotation.matrix`, `rotation.quaternion.w` and so on.
+    #[param(required = false, rename = "rotation.axis")]
+    rotation_axis: String,
+    /// The angle of that rotation.
+    #[param(required = false, rename = "rotation.angle")]
+    rotation_angle: String,
+    /// The way as one boost: its direction; likewise `boost.beta`, `boost.rapidity` and so on.
+    #[param(required = false, rename = "boost.direction")]
+    boost_direction: String,
+    /// The Lorentz factor of that boost.
+    #[param(required = false, rename = "boost.gamma")]
+    boost_gamma: String,
+    /// Take the whole way backwards.
+    #[param(required = false)]
+    inverse: String,
+    /// Further parts of the answer, joined by commas.
+    #[param(required = false)]
+    include: String,
+    /// Convention of the tensor: mostly_minus or mostly_plus.
+    #[param(required = false)]
+    signature: String,
+    /// Unit of E' in the answer.
+    #[param(required = false, rename = "answer_units.e")]
+    answer_units_e: String,
+    /// Unit of B' in the answer.
+    #[param(required = false, rename = "answer_units.b")]
+    answer_units_b: String,
+}
+
+/// Questions of the OpenAPI document and their true answers. All values are invented.
+pub mod examples {
+    use serde_json::{Value, json};
+
+    use crate::{
+        answer::Answer,
+        document::Node,
+        question::{Limits, Question},
+    };
+
+    /// A probe pair on a satellite, restated for an observer at rest below it.
+    pub fn orbiting_probe() -> Value {
+        json!({
+            "e": [12.5, 340.0, -3.75],
+            "b": [1200.0, -450.0, 44700.0],
+            "units": {"e": "mV/m", "b": "nT", "velocity": "km/s"},
+            "velocity": [7.6, 0.0, 0.0],
+            "inverse": true,
+        })
+    }
+
+    /// A turn of the axes, then a boost, with all parts of the answer.
+    pub fn turned_axes() -> Value {
+        json!({
+            "e": [0.0, 1.2, 0.0],
+            "b": [0.0, 0.0, 45000.0],
+            "units": {"e": "mV/m", "b": "nT", "velocity": "km/s", "angle": "deg"},
+            "steps": [
+                {"rotate": {"axis": [0.0, 0.0, 1.0], "angle": 30.0}},
+                {"boost": {"velocity": [7.6, 0.0, 0.0]}},
+            ],
+            "include": ["tensor", "matrix", "energy", "parallel_frame"],
+        })
+    }
+
+    /// The field beside a beam, in the frame of its particles.
+    pub fn fast_beam() -> Value {
+        json!({
+            "e": [0.0, 30.0, 0.0],
+            "b": [0.0, 0.0, 1.0],
+            "units": {"e": "kV/m", "b": "G", "energy": "GeV"},
+            "boost": {"direction": [1.0, 0.0, 0.0], "kinetic_energy": 26.0, "particle": "proton"},
+        })
+    }
+
+    /// What the service answers.
+    pub fn answer_to(question: Value) -> Answer {
+        let text = question.to_string();
+        let node = Node::from_json(text.as_bytes()).expect("an example is JSON");
+        let question = Question::read(&node, &Limits { steps: 10 }).expect("an example is right");
+        Answer::to(&question).expect("an example has an answer")
+    }
+}
