@@ -277,11 +277,9 @@ fn net(way: &Resolved, unit: Scale) -> NetTransformation {
     let [w, x, y, z] = turn
         .as_ref()
         .map_or([1.0, 0.0, 0.0, 0.0], |turn| turn.rounded());
-    let boosts_alone = !way.steps().is_empty()
-        && way
-            .steps()
-            .iter()
-            .all(|step| matches!(step.change, Change::Boost(_)));
+    let mut steps = way.steps().peekable();
+    let boosts_alone =
+        steps.peek().is_some() && steps.all(|step| matches!(step.change, Change::Boost(_)));
     let angle = 2.0 * libm::atan2(libm::hypot(libm::hypot(x, y), z), w);
     NetTransformation {
         velocity,

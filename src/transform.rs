@@ -1,15 +1,14 @@
 //! The meeting point: a reading and a resolved way give the same field in the target frame.
 
+use crate::document::Notice;
 use crate::physics::Impossible;
 use crate::physics::double_double::Dd;
 use crate::physics::energy::Energy;
 use crate::physics::field::{FieldUnits, Kernel, Measured};
 use crate::physics::invariants::Invariants;
-use crate::physics::lorentz::Change;
 use crate::physics::parallel::{ParallelFrame, parallel_frame};
 use crate::physics::precise::Resolved;
 use crate::physics::real::{Vec3, round, vector};
-use crate::physics::rotation::Turn;
 
 /// E and B at one event, any component of which may be missing.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -20,15 +19,6 @@ pub struct Reading {
     pub b: [Option<f64>; 3],
     /// What a unit is.
     pub units: FieldUnits,
-}
-
-/// A remark that a careful colleague would make.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub struct Notice {
-    /// Stable name.
-    pub code: &'static str,
-    /// In words.
-    pub detail: String,
 }
 
 /// A reading restated in the target frame.
@@ -174,14 +164,7 @@ const STRONG_E: f64 = 3e6;
 const STRONG_B: f64 = 5e-4;
 
 fn note_mended_rotations(way: &Resolved, notices: &mut Vec<Notice>) {
-    let departure = way
-        .steps()
-        .iter()
-        .filter_map(|step| match &step.change {
-            Change::Rotate(turn @ (Turn::Quaternion(_) | Turn::Matrix(_))) => turn.check().ok(),
-            _ => None,
-        })
-        .fold(0.0, f64::max);
+    let departure = way.mended();
     if departure > WORTH_SAYING {
         let detail = format!(
             "a quaternion or matrix was off by {departure:.1e} and was taken to the nearest \

@@ -21,6 +21,16 @@ pub struct Step {
     pub inverse: bool,
 }
 
+impl Step {
+    /// The step taken the other way.
+    pub fn undone(self) -> Step {
+        Step {
+            inverse: !self.inverse,
+            ..self
+        }
+    }
+}
+
 /// What a step changes: the state of motion or the axes.
 #[derive(Clone, Debug, PartialEq)]
 pub enum Change {
@@ -52,7 +62,7 @@ impl Net<Dd> {
 
 impl<R: Real> Net<R> {
     /// Composes steps that passed their checks.
-    pub fn of(steps: &[Step], context: R::Context) -> Net<R> {
+    pub fn of<'s>(steps: impl IntoIterator<Item = &'s Step>, context: R::Context) -> Net<R> {
         let mut net = Net {
             boost: None,
             turn: None,
@@ -71,6 +81,21 @@ impl<R: Real> Net<R> {
             };
         }
         net
+    }
+
+    /// This transformation, then another.
+    pub fn then(self, next: &Net<R>) -> Net<R> {
+        if self.boost.is_none() && self.turn.is_none() {
+            return next.clone();
+        }
+        let moved = match &next.boost {
+            Some(boost) => self.then_boost(boost.clone()),
+            None => self,
+        };
+        match &next.turn {
+            Some(turn) => moved.then_turn(turn.clone()),
+            None => moved,
+        }
     }
 
     fn then_turn(self, turn: Quaternion<R>) -> Net<R> {

@@ -4,6 +4,8 @@
 //! not smaller than 2⁻⁴⁰ of that. Where it is, or where an exponent leaves their range, the way
 //! and the reading are computed again with as many bits as it takes.
 
+use std::sync::Arc;
+
 use nalgebra::Matrix4;
 
 use super::big::Big;
@@ -28,14 +30,29 @@ const DD_GROWTH: f64 = 20.0;
 /// A way whose net transformation is known, ready for any number of readings.
 #[derive(Clone, Debug)]
 pub struct Resolved {
-    steps: Vec<Step>,
+    /// The steps, in pieces that ways share.
+    steps: Vec<Arc<[Step]>>,
+    tally: Tally,
     net: Net<Dd>,
-    /// log2 Π γ(1+β) over the steps.
-    growth: f64,
     /// By how much the error of the net transformation exceeds that of one step.
     slack: f64,
     /// Whether two doubles have room for products of the net γ.
     fits_dd: bool,
+}
+
+/// What counts when steps are composed.
+#[derive(Clone, Copy, Debug)]
+struct Tally {
+    /// How many steps move.
+    moving: u32,
+    /// log2 Π γ(1+β) over the steps.
+    growth: f64,
+    /// Whether two doubles hold every step.
+    fits: bool,
+    /// By how much the error of the worst turn exceeds that of two doubles.
+    turned: f64,
+    /// The largest departure of a quaternion or matrix that was mended.
+    mended: f64,
 }
 
 /// A transformed field.
@@ -59,25 +76,34 @@ impl Resolved {
     /// The speeds of the steps multiply up beyond the precision kept, or the net γ is larger
     /// than a double can hold.
     pub fn new(steps: Vec<Step>) -> Result<Resolved, Impossible> {
-        let mut fits = true;
-        let mut moving = 0u32;
-        let mut growth = 0.0;
-        for step in &steps {
-            match &step.change {
-                Change::Boost(motion) => {
-                    moving += 1;
-                    let gamma = if motion.fits_dd() {
-                        let gamma = motion.boost::<Dd>(()).gamma.hi;
-                        libm::log2(gamma + ((gamma - 1.0) * (gamma + 1.0)).sqrt())
-                    } else {
-                        fits = false;
-                        motion.boost::<Big>(LEVELS[0]).gamma.exponent().unwrap_or(0) as f64 + 2.0
-                    };
-                    growth += gamma;
-                }
-                Change::Rotate(turn) => fits &= turn.fits_dd(),
-            }
-        }
+        let tally = steps.iter().map(Tally::of).fold(Tally::NOTHING, Tally::and);
+        let steps: Arc<[Step]> = steps.into();
+        Resolved::compose(vec![steps.clone()], tally, || Net::of(&*steps, ()))
+    }
+
+    /// Joins ways, one after the other, without resolving any of them again.
+    ///
+    /// # Errors
+    /// As for [`new`](Self::new).
+    pub fn join<'r>(
+        parts: impl IntoIterator<Item = &'r Resolved> + Clone,
+    ) -> Result<Resolved, Impossible> {
+        let all = || parts.clone().into_iter();
+        let steps = all().flat_map(|part| part.steps.iter().cloned()).collect();
+        let tally = all()
+            .map(|part| part.tally)
+            .fold(Tally::NOTHING, Tally::and);
+        Resolved::compose(steps, tally, || {
+            all().fold(Net::IDENTITY, |net, part| net.then(&part.net))
+        })
+    }
+
+    fn compose(
+        steps: Vec<Arc<[Step]>>,
+        tally: Tally,
+        in_dd: impl FnOnce() -> Net<Dd>,
+    ) -> Result<Resolved, Impossible> {
+        let Tally { moving, growth, .. } = tally;
         if growth > MAX_GROWTH {
             return Err(Impossible::PrecisionExhausted {
                 growth,
@@ -86,30 +112,22 @@ impl Resolved {
         }
         let mut resolved = Resolved {
             steps,
+            tally,
             net: Net::IDENTITY,
-            growth,
-            slack: 1.0,
+            slack: tally.turned,
             fits_dd: true,
         };
-        if fits && (moving < 2 || growth <= DD_GROWTH) {
-            resolved.net = Net::of(&resolved.steps, ());
+        let gamma = |net: &Net<Dd>| net.boost.as_ref().map_or(1.0, |boost| boost.gamma.hi);
+        if tally.fits && (moving < 2 || growth <= DD_GROWTH) {
+            resolved.net = in_dd();
             if moving > 1 {
-                let gamma = resolved
-                    .net
-                    .boost
-                    .as_ref()
-                    .map_or(1.0, |boost| boost.gamma.hi);
-                let lost = growth - libm::log2(2.0 * gamma);
-                resolved.slack = f64::from(moving) * libm::exp2(lost.max(0.0) / 2.0);
+                let lost = growth - libm::log2(2.0 * gamma(&resolved.net));
+                resolved.slack *= f64::from(moving) * libm::exp2(lost.max(0.0) / 2.0);
             }
         } else {
-            resolved.net = Net::<Big>::of(&resolved.steps, resolved.context(LEVELS[0])).to_dd();
+            resolved.net = resolved.big(resolved.context(LEVELS[0])).to_dd();
         }
-        let gamma = resolved
-            .net
-            .boost
-            .as_ref()
-            .map_or(1.0, |boost| boost.gamma.hi);
+        let gamma = gamma(&resolved.net);
         if !gamma.is_finite() {
             return Err(Impossible::Overflow {
                 what: "gamma of the net boost",
@@ -119,14 +137,24 @@ impl Resolved {
         Ok(resolved)
     }
 
+    /// The net transformation in as many bits as asked for.
+    fn big(&self, context: usize) -> Net<Big> {
+        Net::of(self.steps(), context)
+    }
+
     /// The net transformation to the precision of two doubles.
     pub fn net(&self) -> &Net<Dd> {
         &self.net
     }
 
     /// The steps as given.
-    pub fn steps(&self) -> &[Step] {
-        &self.steps
+    pub fn steps(&self) -> impl Iterator<Item = &Step> {
+        self.steps.iter().flat_map(|piece| piece.iter())
+    }
+
+    /// How far the worst quaternion or matrix was from a rotation.
+    pub fn mended(&self) -> f64 {
+        self.tally.mended
     }
 
     /// Λ of the net transformation, rounded to doubles.
@@ -135,12 +163,12 @@ impl Resolved {
             return self.net.matrix(());
         }
         let context = self.context(LEVELS[0]);
-        Net::<Big>::of(&self.steps, context).matrix(context)
+        self.big(context).matrix(context)
     }
 
     /// The bits in which a result keeps `bits` of them.
     fn context(&self, bits: usize) -> usize {
-        bits + 2 * self.growth as usize
+        bits + 2 * self.tally.growth as usize
     }
 
     /// The field in the target frame, in the units `to`.
@@ -222,7 +250,7 @@ impl Resolved {
         let mut vanishes_by_itself = false;
         for bits in LEVELS {
             let context = self.context(bits);
-            let net = Net::<Big>::of(&self.steps, context);
+            let net = self.big(context);
             let kernel = Kernel::new(&net, field.units, context);
             let (e, b) = (vector(field.e, context), vector(field.b, context));
             let (e2, b2) = kernel.apply(&e, &b);
@@ -253,7 +281,7 @@ impl Resolved {
             };
             if let Some(reached) = exponent(&result) {
                 // A chain has spent as many bits as its steps multiply up.
-                if size - reached <= (bits as f64 + self.growth) as i64 - GUARD {
+                if size - reached <= (bits as f64 + self.tally.growth) as i64 - GUARD {
                     let (rounded, precise) = finish(&result, unit, target, context);
                     return (rounded, precise, ((size - reached) as f64 - 3.0).max(0.0));
                 }
@@ -291,6 +319,52 @@ impl Resolved {
             .max()
             .unwrap_or(0);
         if spread < 100 { LEVELS[1] } else { LEVELS[3] }
+    }
+}
+
+impl Tally {
+    const NOTHING: Tally = Tally {
+        moving: 0,
+        growth: 0.0,
+        fits: true,
+        turned: 1.0,
+        mended: 0.0,
+    };
+
+    fn of(step: &Step) -> Tally {
+        match &step.change {
+            Change::Boost(motion) => {
+                let fits = motion.fits_dd();
+                let growth = if fits {
+                    let gamma = motion.boost::<Dd>(()).gamma.hi;
+                    libm::log2(gamma + ((gamma - 1.0) * (gamma + 1.0)).sqrt())
+                } else {
+                    motion.boost::<Big>(LEVELS[0]).gamma.exponent().unwrap_or(0) as f64 + 2.0
+                };
+                Tally {
+                    moving: 1,
+                    growth,
+                    fits,
+                    ..Tally::NOTHING
+                }
+            }
+            Change::Rotate(turn) => Tally {
+                fits: turn.fits_dd(),
+                turned: turn.slack(),
+                mended: turn.check().unwrap_or(0.0),
+                ..Tally::NOTHING
+            },
+        }
+    }
+
+    fn and(self, next: Tally) -> Tally {
+        Tally {
+            moving: self.moving + next.moving,
+            growth: self.growth + next.growth,
+            fits: self.fits && next.fits,
+            turned: self.turned.max(next.turned),
+            mended: self.mended.max(next.mended),
+        }
     }
 }
 
