@@ -9,6 +9,7 @@ use crate::physics::invariants::Invariants;
 use crate::physics::parallel::{ParallelFrame, parallel_frame};
 use crate::physics::precise::Resolved;
 use crate::physics::real::{Vec3, round, vector};
+use crate::physics::reduction::Reduction;
 
 /// E and B at one event, any component of which may be missing.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -52,6 +53,7 @@ pub fn transform(
         e: filled(reading.e),
         b: filled(reading.b),
         units: reading.units,
+        reduction: Reduction::default(),
     };
     let applied = way.apply(&question, to)?;
     let mut notices = Vec::new();
@@ -74,6 +76,7 @@ pub fn transform(
             e: applied.e,
             b: applied.b,
             units: to,
+            reduction: Reduction::default(),
         };
         Invariants::of(&question, &answer)
     });

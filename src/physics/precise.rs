@@ -178,7 +178,8 @@ impl Resolved {
     pub fn apply(&self, field: &Measured, to: FieldUnits) -> Result<Applied, Impossible> {
         let fast = (self.fits_dd && in_range(field)).then(|| {
             let kernel = Kernel::new(&self.net, field.units, ());
-            let (e, b) = kernel.apply(&vector(field.e, ()), &vector(field.b, ()));
+            let [e, b] = field.vectors(());
+            let (e, b) = kernel.apply(&e, &b);
             (
                 [e, b],
                 sizes(&kernel, field),
@@ -230,7 +231,9 @@ impl Resolved {
         else {
             return [0.0; 2];
         };
-        let [e, b] = [field.e, field.b].map(|x| libm::hypot(libm::hypot(x[0], x[1]), x[2]));
+        let [e, b] = field
+            .magnitudes()
+            .map(|x| libm::hypot(libm::hypot(x[0], x[1]), x[2]));
         let factor = 2.0 * boost.gamma.hi * self.slack;
         [
             factor * (e + kernel.cb_over_e * b),
@@ -252,7 +255,7 @@ impl Resolved {
             let context = self.context(bits);
             let net = self.big(context);
             let kernel = Kernel::new(&net, field.units, context);
-            let (e, b) = (vector(field.e, context), vector(field.b, context));
+            let [e, b] = field.vectors(context);
             let (e2, b2) = kernel.apply(&e, &b);
             let result = if which == 0 { e2 } else { b2 };
             // |E| + c|B| times 2γ bounds every term of the sum.
@@ -262,20 +265,19 @@ impl Resolved {
                 .value::<Big>(context)
                 .exponent()
                 .unwrap_or(0);
+            let sizes = field.magnitudes().map(largest_exponent);
             let (own, other, ratio) = if which == 0 {
-                (&e, &b, ratio)
+                (sizes[0], sizes[1], ratio)
             } else {
-                (&b, &e, -ratio)
+                (sizes[1], sizes[0], -ratio)
             };
             let gamma = net
                 .boost
                 .as_ref()
                 .and_then(|boost| boost.gamma.exponent())
                 .unwrap_or(0);
-            let moved = exponent(other)
-                .filter(|_| net.boost.is_some())
-                .map(|x| x + ratio);
-            let Some(size) = exponent(own).max(moved).map(|size| size + gamma + 3) else {
+            let moved = other.filter(|_| net.boost.is_some()).map(|x| x + ratio);
+            let Some(size) = own.max(moved).map(|size| size + gamma + 3) else {
                 vanishes_by_itself = true;
                 break;
             };
@@ -305,6 +307,9 @@ impl Resolved {
     /// How many bits prove that a sum of products of these doubles vanishes: enough for all of
     /// their digits side by side.
     fn bits_of_zero(&self, field: &Measured) -> usize {
+        if !field.reduction.is_none() {
+            return LEVELS[2];
+        }
         let direction = self
             .net
             .boost
@@ -370,11 +375,14 @@ impl Tally {
 
 /// Whether products of these numbers stay well inside the range of two doubles.
 fn in_range(field: &Measured) -> bool {
-    field
-        .e
-        .iter()
-        .chain(&field.b)
-        .all(|x| *x == 0.0 || (1e-60..1e60).contains(&x.abs()))
+    let sane = |x: f64| x == 0.0 || (1e-60..1e60).contains(&x.abs());
+    let mut read = field.e.into_iter().chain(field.b);
+    read.all(sane) && field.reduction.numbers().all(sane)
+}
+
+fn largest_exponent(v: [f64; 3]) -> Option<i64> {
+    let largest = v.into_iter().fold(0.0f64, f64::max).min(f64::MAX);
+    (largest > 0.0).then(|| i64::from(libm::ilogb(largest)))
 }
 
 fn length(v: &Vec3<Dd>) -> f64 {
@@ -407,28 +415,30 @@ fn finish<R: Real>(
 
 /// The size of what is summed for E' and B', in the units of the reading.
 fn sizes(kernel: &Kernel<Dd>, field: &Measured) -> [f64; 2] {
+    let own = field.magnitudes();
     let Some((d, k, p, q)) = &kernel.motion else {
-        return [0.0; 2];
+        return if field.reduction.is_none() {
+            [0.0; 2]
+        } else {
+            own.map(|x| libm::hypot(libm::hypot(x[0], x[1]), x[2]))
+        };
     };
-    let d = round(d);
-    let crossed = |x: &[f64; 3]| -> [f64; 3] {
-        let exact = cross(&vector::<Dd>(d, ()), &vector::<Dd>(*x, ()));
+    let (exact_d, d) = (vector::<Dd>(round(d), ()), round(d));
+    let exact = field.vectors::<Dd>(());
+    let [xe, xb]: [[f64; 3]; 2] = std::array::from_fn(|which| {
+        let (exact, x) = (cross(&exact_d, &exact[which]), own[which]);
         std::array::from_fn(|i| {
             let (j, k) = ((i + 1) % 3, (i + 2) % 3);
-            let size = (d[j] * x[k]).abs() + (d[k] * x[j]).abs();
+            let size = d[j].abs() * x[k] + d[k].abs() * x[j];
             if exact[i].is_zero() { 0.0 } else { size }
         })
-    };
-    let (xe, xb) = (crossed(&field.e), crossed(&field.b));
+    });
     let size = |own: &[f64; 3], x: &[f64; 3], other: &[f64; 3], factor: f64| {
         (0..3).fold(0.0f64, |sum, i| {
             let (j, l) = ((i + 1) % 3, (i + 2) % 3);
             let across = k.hi * (x[j] * d[l].abs() + x[l] * d[j].abs());
-            libm::hypot(sum, own[i].abs() + across + factor.abs() * other[i])
+            libm::hypot(sum, own[i] + across + factor.abs() * other[i])
         })
     };
-    [
-        size(&field.e, &xe, &xb, p.hi),
-        size(&field.b, &xb, &xe, q.hi),
-    ]
+    [size(&own[0], &xe, &xb, p.hi), size(&own[1], &xb, &xe, q.hi)]
 }
