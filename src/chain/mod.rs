@@ -47,5 +47,6 @@ pub fn code(impossible: &Impossible) -> Code {
         Impossible::NotARotation { .. } | Impossible::Mirror { .. } => Code::NotARotation,
         Impossible::Overflow { .. } => Code::Overflow,
         Impossible::PrecisionExhausted { .. } => Code::PrecisionExhausted,
+        Impossible::FieldInPlane { .. } => Code::FieldInPlane,
     }
 }
