@@ -74,12 +74,7 @@ pub fn transform(
     let complete = given == [[true; 3]; 2];
     let hide = |v: [f64; 3], known: [bool; 3]| std::array::from_fn(|i| known[i].then_some(v[i]));
     let invariants = complete.then(|| {
-        let answer = Measured {
-            e: applied.e,
-            b: applied.b,
-            units: to,
-            reduction: Reduction::default(),
-        };
+        let answer = Measured::new(applied.e, applied.b, to);
         Invariants::of(&question, &answer)
     });
     if !complete {

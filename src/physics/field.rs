@@ -51,6 +51,16 @@ pub struct Field<R> {
 }
 
 impl Measured {
+    /// E and B that need no reduction.
+    pub fn new(e: [f64; 3], b: [f64; 3], units: FieldUnits) -> Measured {
+        Measured {
+            e,
+            b,
+            units,
+            reduction: Reduction::default(),
+        }
+    }
+
     /// E and B in their own units.
     pub fn vectors<R: Real>(&self, context: R::Context) -> [Vec3<R>; 2] {
         if self.reduction.is_none() {
