@@ -11,7 +11,8 @@ from mpmath import mp, mpf
 
 import ways
 from reference import solve
-from reference.algebra import norm, scale
+from reference.algebra import dot, norm, scale
+from reference.boost import gamma_of
 from reference.units import C
 
 EVERYTHING = ["tensor", "matrix", "energy", "parallel_frame"]
@@ -76,7 +77,7 @@ def test_mostly_plus_flips_the_sign_of_all_three(service):
 
 def test_energy_and_stress_of_the_answer(pairs, constants):
     for answer, exact in pairs:
-        density, poynting, stress = exact.energy(constants["vacuum electric permittivity"])
+        density, poynting, stress = exact.energy(constants["magnetic_constant"])
         assert_close(answer["energy"]["density"], density)
         assert_close(answer["energy"]["stress"], stress)
         # The Poynting vector may be small against c·u where E and B are nearly parallel.
@@ -92,14 +93,18 @@ def test_invariants_of_the_question(pairs):
 
 
 def test_the_parallel_frame_of_the_answer(pairs):
+    """E there is reported as a length, B with the sign of E·B."""
     for answer, exact in pairs:
         beta, e, cb = exact.parallel
         frame = answer["parallel_frame"]
         assert frame["exists"] is True
-        assert_close(frame["beta"], norm(beta) if isinstance(frame["beta"], float) else beta)
+        assert_close(frame["beta"], norm(beta))
+        assert_close(frame["velocity"], scale(mpf(C), beta))
+        assert_close(frame["direction"], scale(1 / norm(beta), beta))
+        assert_close(frame["gamma"], gamma_of(beta))
         assert_close(frame["rapidity"], mp.atanh(norm(beta)))
-        assert_close(abs(frame["e_parallel"]), norm(e))
-        assert_close(abs(frame["b_parallel"]), norm(cb) / C)
+        assert_close(frame["e_parallel"], norm(e))
+        assert_close(frame["b_parallel"], mp.sign(dot(e, cb)) * norm(cb) / C)
 
 
 def test_a_null_field_has_no_parallel_frame(service):

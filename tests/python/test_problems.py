@@ -37,12 +37,12 @@ FAULTS = [
     ("unknown_choice", turn(euler={"axes": "zyx", "angles": [1, 2, 3], "about": "rolling"}), "/rotation/euler/about"),
     ("unknown_choice", boost(direction=[1, 0, 0], kinetic_energy=1, particle="pion"), "/boost/particle"),
     ("faster_than_light", GOOD | {"velocity": [299792458, 0, 0]}, "/velocity"),
-    ("faster_than_light", boost(beta=[0.6, 0.8, 0.1]), "/boost/beta"),
-    ("no_direction", turn(axis=[0, 0, 0], angle=1), "/rotation/axis"),
-    ("no_direction", boost(direction=[0, 0, 0], gamma=2), "/boost/direction"),
-    ("below_rest", boost(direction=[1, 0, 0], gamma=0.5), "/boost/gamma"),
-    ("below_rest", boost(direction=[1, 0, 0], kinetic_energy=-1, particle="proton"), "/boost/kinetic_energy"),
-    ("not_a_rotation", turn(quaternion={"w": 1, "x": 1, "y": 0, "z": 0}), "/rotation/quaternion"),
+    ("faster_than_light", boost(beta=[0.6, 0.8, 0.1]), "/boost"),
+    ("no_direction", turn(axis=[0, 0, 0], angle=1), "/rotation"),
+    ("no_direction", boost(direction=[0, 0, 0], gamma=2), "/boost"),
+    ("below_rest", boost(direction=[1, 0, 0], gamma=0.5), "/boost"),
+    ("below_rest", boost(direction=[1, 0, 0], kinetic_energy=-1, particle="proton"), "/boost"),
+    ("not_a_rotation", turn(quaternion={"w": 1, "x": 1, "y": 0, "z": 0}), "/rotation"),
     ("too_many_steps", {"e": [0, 1, 0], "b": [0, 0, 1], "steps": [{"boost": {"beta": [0, 0, 0]}}] * 1001}, "/steps"),
     ("overflow", {"e": [0, 1e300, 0], "b": [0, 0, 1], "boost": {"direction": [1, 0, 0], "gamma": 1e20}}, None),
     ("precision_exhausted", {"e": [0, 1, 0], "b": [0, 0, 1], "steps": [
@@ -68,8 +68,8 @@ REQUESTS = [
     ("unsupported_media_type", "POST", "/v1/transform", json.dumps(GOOD).encode(), {"Content-Type": "text/plain"}),
     ("unsupported_media_type", "POST", "/v1/transform", json.dumps(GOOD).encode(), {}),
     ("body_too_large", "POST", "/v1/transform", b" " * (1 << 20) + b"{}", JSON),
-    ("uri_too_long", "GET", "/v1/transform?e=" + "1" * 70_000, None, {}),
-    ("headers_too_large", "GET", "/health/live", None, {"X-Long": "x" * 200_000}),
+    ("uri_too_long", "GET", "/v1/transform?e=" + "1" * 20_000, None, {}),
+    ("headers_too_large", "GET", "/health/live", None, {"X-Long": "x" * 40_000}),
 ]
 
 # Provoked by tests of their own, below.
@@ -142,8 +142,8 @@ def test_six_mistakes_get_one_answer_that_names_all_six(service):
         ("wrong_type", "/b/1"),
         ("unknown_field", "/colour"),
         ("unknown_unit", "/units/velocity"),
-        ("faster_than_light", "/steps/0/boost/beta"),
-        ("not_a_rotation", "/steps/1/rotate/quaternion"),
+        ("faster_than_light", "/steps/0/boost"),
+        ("not_a_rotation", "/steps/1/rotate"),
     }
     assert all(len(fault["detail"]) > 20 for fault in reply.json["errors"])
 
@@ -160,6 +160,13 @@ def test_a_repeated_parameter(service):
     reply = service.get("/v1/transform?e=0,1,0&e=0,1,0&b=0,0,1&velocity=1,0,0")
     (fault,) = check_document(reply, "repeated_field")["errors"]
     assert fault["parameter"] == "e"
+
+
+@pytest.mark.parametrize("status, head", [(414, b"GET /" + b"1" * 1_000_000), (431, b"GET / HTTP/1.1\r\nX: " + b"x" * 1_000_000)])
+def test_heads_past_the_limits_of_the_parser_are_refused_too(service, status, head):
+    """Too large to be read at all: refused with the same status, but nothing to write a document for."""
+    assert service.raw(head).status == status
+    assert service.get("/health/live").status == 200
 
 
 def test_a_request_that_does_not_arrive(tmp_path):

@@ -42,15 +42,16 @@ def invariants(e, cb):
     return dot(e, e) - dot(cb, cb), dot(e, cb)
 
 
-def energy(e, cb, epsilon_0):
+def energy(e, b, mu_0):
     """Energy density in J/m³, Poynting vector in W/m², Maxwell stress in Pa (tension positive).
 
-    `epsilon_0` in F/m; μ₀ = 1/(ε₀c²).
+    Of E in V/m and B in T; `mu_0` in N/A², and ε₀ = 1/(μ₀c²).
     """
-    density = epsilon_0 * (dot(e, e) + dot(cb, cb)) / 2
-    poynting = scale(epsilon_0 * C, cross(e, cb))
+    epsilon_0 = 1 / (mu_0 * C**2)
+    density = (epsilon_0 * dot(e, e) + dot(b, b) / mu_0) / 2
+    poynting = scale(1 / mu_0, cross(e, b))
     stress = [
-        [epsilon_0 * (e[i] * e[j] + cb[i] * cb[j]) - (i == j) * density for j in range(3)]
+        [epsilon_0 * e[i] * e[j] + b[i] * b[j] / mu_0 - (i == j) * density for j in range(3)]
         for i in range(3)
     ]
     return density, poynting, stress

@@ -81,9 +81,10 @@ class Exact:
     def invariants(self):
         return field.invariants(*self._source)
 
-    def energy(self, epsilon_0):
-        """(density, Poynting vector, stress) of the answer for a given ε₀ in F/m."""
-        return field.energy(*self.si, mpf(epsilon_0))
+    def energy(self, mu_0):
+        """(density, Poynting vector, stress) of the answer for a given μ₀ in N/A²."""
+        e, cb = self.si
+        return field.energy(e, scale(1 / mpf(C), cb), mpf(mu_0))
 
     @property
     def tensors(self):
