@@ -162,7 +162,8 @@ def test_a_repeated_parameter(service):
     assert fault["parameter"] == "e"
 
 
-@pytest.mark.parametrize("status, head", [(414, b"GET /" + b"1" * 1_000_000), (431, b"GET / HTTP/1.1\r\nX: " + b"x" * 1_000_000)])
+@pytest.mark.parametrize("status, head", [
+    (414, b"GET /" + b"1" * 1_000_000), (431, b"GET / HTTP/1.1\r\nX: " + b"x" * 1_000_000)])
 def test_heads_past_the_limits_of_the_parser_are_refused_too(service, status, head):
     """Too large to be read at all: refused with the same status, but nothing to write a document for."""
     assert service.raw(head).status == status
