@@ -171,6 +171,12 @@ def mixed_scales(rng):
                       "gamma": 1 + power(rng, -15, 15)}}
 
 
+def past_the_largest(rng):
+    """About half of the answers exceed the largest double."""
+    return {"e": vector(rng, power(rng, 300, 308)), "b": vector(rng, power(rng, 295, 302)),
+            "boost": {"direction": direction(rng), "gamma": 1 + power(rng, -3, 5)}}
+
+
 BOOSTS = {
     "velocity, beta 1e-12 to 1e-3": slow,
     "velocity, beta 0.001 to 0.9": fast,

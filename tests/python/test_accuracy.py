@@ -59,17 +59,20 @@ def test_the_reference_agrees_with_itself(regime):
         assert off <= norm(vector) * U**2
 
 
-def test_a_component_past_the_largest_double_is_refused(service):
-    """Overflow is a problem, never Infinity and never a wrong number."""
-    reply = service.post({"e": [0, 1e300, 0], "b": [0, 0, 0],
-                          "boost": {"direction": [1, 0, 0], "gamma": 1e20}})
-    assert reply.status == 422
-    assert [fault["code"] for fault in reply.json["errors"]] == ["overflow"]
-
-
-def test_the_largest_answer_that_fits_is_given(service):
-    """γ = 2 lifts half the largest double to the largest double itself."""
-    question = {"e": [0, 2.0**1023 - 2.0**970, 0], "b": [0, 0, 0],
-                "boost": {"direction": [1, 0, 0], "gamma": 1.9999999999999998}}
-    answer = service.ask(question)
-    assert error(answer["e"], solve(question).e) <= PROMISE
+def test_overflow_is_refused_exactly_where_no_double_can_hold_the_answer(service):
+    """Never Infinity, never a wrong number, and never a refusal of what fits."""
+    rng = random.Random("overflow")
+    questions = [regimes.past_the_largest(rng) for _ in range(200)]
+    seen = set()
+    for question, reply in zip(questions, service.post_all(questions)):
+        exact = solve(question)
+        # Rounds to the largest double below half of the next spacing, IEEE 754 § 4.3.1.
+        fits = all(abs(x) < 2**1024 - mpf(2) ** 970 for x in exact.e + exact.b)
+        seen.add(fits)
+        if fits:
+            assert reply.status == 200, reply.body.decode()
+            assert max(error(reply.json[name], getattr(exact, name)) for name in "eb") <= PROMISE
+        else:
+            assert reply.status == 422
+            assert {fault["code"] for fault in reply.json["errors"]} == {"overflow"}
+    assert seen == {True, False}

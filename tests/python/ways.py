@@ -103,6 +103,17 @@ def cancelling_chain(rng):
     return {"e": e, "b": b, "steps": [{"boost": {"velocity": v}}, {"rotate": rotation(rng)}]}
 
 
+def tiny_step_left(rng):
+    """E cancels but for a last step of 1e-10 to 1e-300 m/s or rad."""
+    v, b = float(rng.randrange(1, 10**6)), float(rng.randrange(1, 100))
+    boost, small = {"boost": {"velocity": [v, 0, 0]}}, power(rng, -300, -10)
+    return {"e": [0, v * b, 0], "b": [0, 0, b], "steps": rng.choice([
+        [boost, {"boost": {"velocity": vector(rng, small)}}],
+        [boost, {"boost": {"velocity": [small, 0, 0]}}],
+        [{"rotate": {"axis": direction(rng), "angle": small}}, boost],
+    ])}
+
+
 UNITS = {
     "e": ["V/m", "mV/m", "uV/m", "kV/m", "MV/m", "V/cm", "statV/cm"],
     "b": ["T", "mT", "uT", "nT", "pT", "G"],
@@ -146,6 +157,7 @@ WAYS = {
     "up and down, 1,000 steps": (up_and_down, 4),
     "through gamma 1e6 to 1e20 and back": (high_and_back, 60),
     "chain that nearly cancels E": (cancelling_chain, 200),
+    "chain that cancels E but for a tiny step": (tiny_step_left, 100),
     "any units": (any_units, 500),
     "units in which E cancels": (cancelling_units, 100),
 }
