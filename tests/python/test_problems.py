@@ -20,11 +20,11 @@ def turn(**form):
 
 # Faults of a question: code, question, the place that is named (RFC 6901).
 FAULTS = [
-    ("number_out_of_range", b'{"e": [0, 1e999, 0], "b": [0, 0, 1], "velocity": [1, 0, 0]}', "/e/1"),
+    ("number_out_of_range", b'{"e": [0, 1e999, 0], "b": [0, 0, 1], "velocity": [1, 0, 0]}', None),
     ("unknown_field", GOOD | {"speed": 1}, "/speed"),
     ("unknown_field", boost(beta=[0.1, 0, 0], inversed=True), "/boost/inversed"),
     ("repeated_field", b'{"e": [0, 1, 0], "e": [0, 1, 0], "b": [0, 0, 1], "velocity": [1, 0, 0]}', "/e"),
-    ("wrong_type", GOOD | {"e": 1}, "/e"),
+    ("wrong_type", json.dumps(GOOD | {"e": 1}).encode(), "/e"),  # by URL one number is a list of one
     ("wrong_type", GOOD | {"b": [0, "north", 0]}, "/b/1"),
     ("wrong_length", GOOD | {"e": [0, 1]}, "/e"),
     ("wrong_length", turn(matrix=[[1, 0, 0], [0, 1, 0]]), "/rotation/matrix"),
@@ -46,7 +46,7 @@ FAULTS = [
     ("too_many_steps", {"e": [0, 1, 0], "b": [0, 0, 1], "steps": [{"boost": {"beta": [0, 0, 0]}}] * 1001}, "/steps"),
     ("overflow", {"e": [0, 1e300, 0], "b": [0, 0, 1], "boost": {"direction": [1, 0, 0], "gamma": 1e20}}, None),
     ("precision_exhausted", {"e": [0, 1, 0], "b": [0, 0, 1], "steps": [
-        {"boost": {"direction": d, "rapidity": 700}} for d in ([1, 0, 0], [0, 1, 0], [-1, 0, 0], [0, -1, 0])]}, None),
+        {"boost": {"direction": [1, 0, 0], "rapidity": rapidity}} for rapidity in 10 * [700, -700]]}, None),
 ]
 
 # Problems of a request: code, method, path, body, headers.
@@ -99,24 +99,18 @@ def check_document(reply, code):
 def test_no_code_is_left_out(service):
     known = {entry["code"] for entry in service.get("/problems").json}
     provoked = {row[0] for row in FAULTS + REQUESTS} | OTHERS
-    assert provoked | OUT_OF_REACH.keys() == known
-    assert not provoked & OUT_OF_REACH.keys()
+    assert known - provoked == OUT_OF_REACH.keys()
 
 
 @pytest.mark.parametrize("code, question, place", FAULTS, ids=[f"{row[0]} {i}" for i, row in enumerate(FAULTS)])
 def test_a_fault_of_the_question(service, code, question, place):
-    reply = service.post(question)
-    problem = check_document(reply, code)
-    (fault,) = problem["errors"]
+    (fault,) = check_document(service.post(question), code)["errors"]
     assert fault["code"] == code and fault["detail"]
-    if place is not None:
-        assert fault["pointer"] == place
-    if isinstance(question, dict) and code != "too_many_steps":
-        (fault_by_url,) = check_document(service.get(by_url(question)), code)["errors"]
-        assert fault_by_url == {key: value for key, value in fault.items() if key != "pointer"} | {
-            "parameter": fault_by_url["parameter"]}
-        if place and not isinstance(fault_by_url["parameter"], int):
-            assert place.strip("/").split("/")[0] == fault_by_url["parameter"].split(".")[0]
+    assert place is None or fault["pointer"] == place
+    if isinstance(question, dict) and len(by_url(question)) < 8192:
+        (by_parameter,) = check_document(service.get(by_url(question)), code)["errors"]
+        assert by_parameter["code"] == code and by_parameter["detail"]
+        assert by_parameter["parameter"] == fault["pointer"].strip("/").replace("/", ".")
 
 
 @pytest.mark.parametrize("code, method, path, body, headers", REQUESTS,
