@@ -1,5 +1,13 @@
-//! All integration tests in one binary: two cores link one file faster than many.
+//! All integration tests in one binary (two cores link one file faster than many); each module is
+//! named after what it tests.
 
 mod arithmetic;
+mod http;
 mod laws;
+mod layering;
+mod middleware;
+mod openapi;
+mod problems;
 mod schema;
+mod start;
+mod support;
