@@ -19,8 +19,10 @@ use crate::units::Quantity;
 #[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
 pub struct Answer {
     /// Electric field E' in `units.e`, on the axes of the target frame. A component that depends on a missing one is null.
+    #[schema(min_items = 3, max_items = 3)]
     pub e: [Option<f64>; 3],
     /// Magnetic flux density B' in `units.b`, on the axes of the target frame.
+    #[schema(min_items = 3, max_items = 3)]
     pub b: [Option<f64>; 3],
     /// Units of `e` and `b`.
     pub units: AnswerUnits,
@@ -73,8 +75,10 @@ pub struct Invariants {
 #[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
 pub struct NetTransformation {
     /// Velocity of the target as seen in the source frame, on the source axes, in the velocity unit of the question.
+    #[schema(min_items = 3, max_items = 3)]
     pub velocity: [f64; 3],
     /// The same over c.
+    #[schema(min_items = 3, max_items = 3)]
     pub beta: [f64; 3],
     /// Lorentz factor γ.
     pub gamma: f64,
@@ -120,6 +124,7 @@ pub struct Energy {
     /// Energy density in J/m³.
     pub density: f64,
     /// Poynting vector in W/m².
+    #[schema(min_items = 3, max_items = 3)]
     pub poynting: [f64; 3],
     /// Maxwell stress in Pa, tension positive.
     pub stress: [[f64; 3]; 3],
@@ -142,10 +147,12 @@ pub struct FoundFrame {
     #[schema(example = true)]
     pub exists: bool,
     /// Its velocity as seen in the target frame, along E×B, in the velocity unit of the question.
+    #[schema(min_items = 3, max_items = 3)]
     pub velocity: [f64; 3],
     /// The speed over c.
     pub beta: f64,
     /// Unit vector of the velocity; zero when nothing need move.
+    #[schema(min_items = 3, max_items = 3)]
     pub direction: [f64; 3],
     /// Lorentz factor.
     pub gamma: f64,

@@ -1,6 +1,14 @@
-//! All integration tests in one binary: two cores link one file faster than many.
+//! All integration tests in one binary (two cores link one file faster than many); each module is
+//! named after what it tests.
 
 mod arithmetic;
 mod frames;
+mod http;
 mod laws;
+mod layering;
+mod middleware;
+mod openapi;
+mod problems;
 mod schema;
+mod start;
+mod support;

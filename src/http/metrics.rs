@@ -1,10 +1,17 @@
 //! What the service counts, in OpenMetrics terms.
 
-use std::{sync::Arc, time::Duration};
+use std::{
+    fmt,
+    hash::{Hash, Hasher},
+    time::Duration,
+};
 
-use axum::http::StatusCode;
+use axum::{
+    extract::{MatchedPath, Request},
+    http::StatusCode,
+};
 use prometheus_client::{
-    encoding::{EncodeLabelSet, EncodeLabelValue, text},
+    encoding::{EncodeLabelSet, EncodeLabelValue, LabelValueEncoder, text},
     metrics::{counter::Counter, family::Family, gauge::Gauge, histogram::Histogram, info::Info},
     registry::{Registry, Unit},
 };
@@ -28,9 +35,44 @@ pub struct Metrics {
 /// The labels of a duration.
 #[derive(Clone, Debug, PartialEq, Eq, Hash, EncodeLabelSet)]
 struct Answered {
-    /// The route template, never the path itself.
-    route: Arc<str>,
+    route: Route,
     class: Class,
+}
+
+/// The template of a route, such as `/problems/{code}`, never the path itself.
+#[derive(Clone, Debug)]
+pub struct Route(Option<MatchedPath>);
+
+impl Route {
+    /// The route that a request was sent to.
+    pub fn of(request: &Request) -> Route {
+        Route(request.extensions().get().cloned())
+    }
+
+    /// The template, or `unmatched`.
+    pub fn as_str(&self) -> &str {
+        self.0.as_ref().map_or("unmatched", MatchedPath::as_str)
+    }
+}
+
+impl PartialEq for Route {
+    fn eq(&self, other: &Route) -> bool {
+        self.as_str() == other.as_str()
+    }
+}
+
+impl Eq for Route {}
+
+impl Hash for Route {
+    fn hash<H: Hasher>(&self, state: &mut H) {
+        self.as_str().hash(state);
+    }
+}
+
+impl EncodeLabelValue for Route {
+    fn encode(&self, encoder: &mut LabelValueEncoder) -> Result<(), fmt::Error> {
+        self.as_str().encode(encoder)
+    }
 }
 
 /// The first digit of a status.
@@ -38,10 +80,7 @@ struct Answered {
 struct Class(u16);
 
 impl EncodeLabelValue for Class {
-    fn encode(
-        &self,
-        encoder: &mut prometheus_client::encoding::LabelValueEncoder,
-    ) -> Result<(), std::fmt::Error> {
+    fn encode(&self, encoder: &mut LabelValueEncoder) -> Result<(), fmt::Error> {
         format!("{}xx", self.0).encode(encoder)
     }
 }
@@ -98,7 +137,7 @@ impl Metrics {
     }
 
     /// Records how long an answer took.
-    pub fn answered(&self, route: Arc<str>, status: StatusCode, time: Duration) {
+    pub fn answered(&self, route: Route, status: StatusCode, time: Duration) {
         let class = Class(status.as_u16() / 100);
         self.durations
             .get_or_create(&Answered { route, class })

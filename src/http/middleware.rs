@@ -8,13 +8,12 @@ use std::{
     convert::Infallible,
     panic::{AssertUnwindSafe, catch_unwind},
     pin::Pin,
-    sync::{Arc, LazyLock},
     task::{Context, Poll},
     time::{Duration, Instant},
 };
 
 use axum::{
-    extract::{MatchedPath, Request},
+    extract::Request,
     http::{HeaderMap, HeaderName, HeaderValue, Method, StatusCode, header},
     response::{IntoResponse, Response},
 };
@@ -22,7 +21,7 @@ use pin_project_lite::pin_project;
 use tower::{Layer, Service};
 use uuid::Uuid;
 
-use super::{AppState, log, problem::Problem};
+use super::{AppState, log, metrics::Route, problem::Problem};
 use crate::document::Code;
 
 /// Longest path and query, bytes.
@@ -35,9 +34,6 @@ const TRACEPARENT: HeaderName = HeaderName::from_static("traceparent");
 
 /// An answer that is not a page needs nothing at all from a browser; pages bring their own policy.
 const NOTHING: HeaderValue = HeaderValue::from_static("default-src 'none'; frame-ancestors 'none'");
-
-/// Stands for the route of requests that match none.
-static UNMATCHED: LazyLock<Arc<str>> = LazyLock::new(|| "unmatched".into());
 
 /// Wraps every route in [`Observed`].
 #[derive(Clone)]
@@ -144,7 +140,7 @@ struct Record {
     state: AppState,
     id: Uuid,
     method: Method,
-    route: Arc<str>,
+    route: Route,
     trace: Option<HeaderValue>,
     started: Instant,
     running: i64,
@@ -153,11 +149,10 @@ struct Record {
 
 impl Record {
     fn start(state: &AppState, request: &Request) -> Record {
-        let route = request.extensions().get::<MatchedPath>();
         Record {
             id: Uuid::new_v4(),
             method: request.method().clone(),
-            route: route.map_or_else(|| UNMATCHED.clone(), |path| path.as_str().into()),
+            route: Route::of(request),
             trace: request
                 .headers()
                 .get(TRACEPARENT)
@@ -227,8 +222,8 @@ impl Record {
             .metrics
             .answered(self.route.clone(), status, time);
         log::access(&log::Access {
-            method: &self.method,
-            route: &self.route,
+            method: self.method.as_str(),
+            route: self.route.as_str(),
             status: status.as_u16(),
             time,
             id: self.id,

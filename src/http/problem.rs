@@ -86,6 +86,7 @@ impl Problem {
                 Code::MethodNotAllowed,
                 "This path does not answer this method; the Allow header lists those it answers.",
             ),
+            StatusCode::BAD_REQUEST => (Code::Syntax, "The request is not well-formed."),
             _ => (Code::Internal, "The service failed while it answered."),
         };
         Problem::new(code, detail)

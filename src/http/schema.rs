@@ -15,9 +15,11 @@ use utoipa::{IntoParams, ToSchema};
 pub struct Question {
     /// Electric field in `units.e`, on the axes of the reading; components may be null.
     #[serde(skip_serializing_if = "Option::is_none")]
+    #[schema(min_items = 3, max_items = 3)]
     pub e: Option<[Option<f64>; 3]>,
     /// Magnetic flux density in `units.b`, on the axes of the reading; components may be null.
     #[serde(skip_serializing_if = "Option::is_none")]
+    #[schema(min_items = 3, max_items = 3)]
     pub b: Option<[Option<f64>; 3]>,
     /// Units of the question, SI where left out.
     #[serde(skip_serializing_if = "Option::is_none")]
@@ -30,6 +32,7 @@ pub struct Question {
     pub steps: Option<Vec<Step>>,
     /// The way as one boost, by the velocity of the target frame as seen in the frame of the reading, in `units.velocity`.
     #[serde(skip_serializing_if = "Option::is_none")]
+    #[schema(min_items = 3, max_items = 3)]
     pub velocity: Option<[f64; 3]>,
     /// The way as one boost, in any of its forms.
     #[serde(skip_serializing_if = "Option::is_none")]
@@ -176,12 +179,15 @@ pub enum Step {
 pub struct Boost {
     /// Velocity of the next frame as seen in the current one, on the current axes, in `units.velocity`.
     #[serde(skip_serializing_if = "Option::is_none")]
+    #[schema(min_items = 3, max_items = 3)]
     pub velocity: Option<[f64; 3]>,
     /// The same over c.
     #[serde(skip_serializing_if = "Option::is_none")]
+    #[schema(min_items = 3, max_items = 3)]
     pub beta: Option<[f64; 3]>,
     /// Direction of motion, of any length but zero.
     #[serde(skip_serializing_if = "Option::is_none")]
+    #[schema(min_items = 3, max_items = 3)]
     pub direction: Option<[f64; 3]>,
     /// Lorentz factor, at least 1.
     #[serde(skip_serializing_if = "Option::is_none")]
@@ -199,9 +205,11 @@ pub struct Boost {
     pub particle: Option<Particle>,
     /// Angular velocity of a rigid body, in `units.angular_velocity`; the next frame moves with one of its points.
     #[serde(skip_serializing_if = "Option::is_none")]
+    #[schema(min_items = 3, max_items = 3)]
     pub angular_velocity: Option<[f64; 3]>,
     /// From a point on the axis to that point, in `units.length`.
     #[serde(skip_serializing_if = "Option::is_none")]
+    #[schema(min_items = 3, max_items = 3)]
     pub position: Option<[f64; 3]>,
     /// Undo this step: for a motion reported from the other side.
     #[serde(skip_serializing_if = "Option::is_none")]
@@ -246,6 +254,7 @@ pub struct OtherParticle {
 pub struct Rotate {
     /// Axis of the turn, of any length but zero.
     #[serde(skip_serializing_if = "Option::is_none")]
+    #[schema(min_items = 3, max_items = 3)]
     pub axis: Option<[f64; 3]>,
     /// Angle of the turn in `units.angle`.
     #[serde(skip_serializing_if = "Option::is_none")]
@@ -268,11 +277,14 @@ pub struct Rotate {
 #[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
 #[schema(as = AttitudeQuaternion, example = json!({"w": 1.0, "x": 0.0, "y": 0.0, "z": 0.0}))]
 #[serde(deny_unknown_fields)]
-#[allow(missing_docs, reason = "the names say it")]
 pub struct Quaternion {
+    /// Real part.
     pub w: f64,
+    /// First vector component.
     pub x: f64,
+    /// Second vector component.
     pub y: f64,
+    /// Third vector component.
     pub z: f64,
 }
 
@@ -285,6 +297,7 @@ pub struct Euler {
     #[schema(pattern = "^[xyz]{3}$")]
     pub axes: String,
     /// One angle for each axis, in `units.angle`.
+    #[schema(min_items = 3, max_items = 3)]
     pub angles: [f64; 3],
     /// `moving`: each turn is about an axis already turned; `fixed`: about the axes at the start.
     pub about: About,

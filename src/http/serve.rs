@@ -11,6 +11,7 @@ use hyper_util::{
 };
 use tokio::net::TcpListener;
 
+use super::log;
 use crate::config::Config;
 
 /// Serves `app` on `listener` until `stop` is done, then lets running requests finish.
@@ -47,7 +48,7 @@ pub async fn serve(
         let connection = connections.watch(connection);
         tokio::spawn(async move {
             if let Err(error) = connection.await {
-                tracing::debug!(%error, "connection ended early");
+                log::event("debug", "connection ended early", &error);
             }
         });
     }
@@ -56,7 +57,11 @@ pub async fn serve(
         .await
         .is_err()
     {
-        tracing::warn!("requests still running at the end of the grace were cut");
+        log::event(
+            "warn",
+            "stopped",
+            &"requests still running at the end of the grace were cut",
+        );
     }
 }
 
@@ -68,7 +73,7 @@ async fn pause_after(error: &io::Error) {
         error.kind(),
         ConnectionAborted | ConnectionRefused | ConnectionReset
     ) {
-        tracing::warn!(%error, "cannot accept connections");
+        log::event("warn", "cannot accept connections", &error);
         tokio::time::sleep(Duration::from_millis(100)).await;
     }
 }

@@ -3,7 +3,7 @@
 use std::fmt::Write;
 
 use axum::{
-    extract::Path,
+    extract::{Path, rejection::PathRejection},
     http::{HeaderMap, HeaderValue, header::VARY},
     response::Response,
 };
@@ -94,10 +94,12 @@ pub(crate) async fn list_problems(headers: HeaderMap) -> Result<Response, Proble
     ),
 )]
 pub(crate) async fn explain_problem(
-    Path(code): Path<String>,
+    code: Result<Path<String>, PathRejection>,
     headers: HeaderMap,
 ) -> Result<Response, Problem> {
-    let code = Code::by_name(&code).ok_or_else(|| {
+    // A path that is no text is no code either.
+    let code = code.ok().and_then(|Path(code)| Code::by_name(&code));
+    let code = code.ok_or_else(|| {
         Problem::new(
             Code::UnknownCode,
             "No problem has this code; GET /problems lists all of them.",

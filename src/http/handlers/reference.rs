@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use axum::{
-    extract::Path,
+    extract::{Path, rejection::PathRejection},
     http::header::{CACHE_CONTROL, CONTENT_TYPE},
     response::{IntoResponse, Response},
 };
@@ -39,8 +39,11 @@ pub(crate) async fn reference() -> Response {
         CommonProblems,
     ),
 )]
-pub(crate) async fn reference_asset(Path(file): Path<String>) -> Result<Response, Problem> {
+pub(crate) async fn reference_asset(
+    file: Result<Path<String>, PathRejection>,
+) -> Result<Response, Problem> {
     let missing = || Problem::new(Code::NotFound, "The reference has no file of this name.");
+    let Path(file) = file.map_err(|_| missing())?;
     if file == "start.js" {
         let kind = [(CONTENT_TYPE, "text/javascript")];
         return Ok((kind, include_str!("../../page/reference.js")).into_response());

@@ -1,0 +1,41 @@
+"""What all tests share: one running service, and the table of worst errors at the end."""
+
+import json
+
+import pytest
+
+from service import Service
+
+ERRORS = []
+
+
+@pytest.fixture(scope="session")
+def service(tmp_path_factory):
+    """The release binary, started once; its end must be a clean one."""
+    with Service(tmp_path_factory.mktemp("service") / "log.txt") as running:
+        yield running
+
+
+@pytest.fixture(scope="session")
+def openapi(service):
+    """The OpenAPI document as the service serves it."""
+    return json.loads(service.get("/openapi.json").body)
+
+
+@pytest.fixture(scope="session")
+def constants(service):
+    """`GET /v1/constants` as name → value, in SI units."""
+    return {entry["name"]: entry["value"] for entry in service.get("/v1/constants").json}
+
+
+@pytest.fixture
+def report_error():
+    """Notes a line for the table of worst errors: regime, number of vectors, worst in u."""
+    return lambda *line: ERRORS.append(line)
+
+
+def pytest_terminal_summary(terminalreporter):
+    if ERRORS:
+        terminalreporter.section("worst error per regime, u = 2^-53 of each vector's exact length")
+        for regime, vectors, worst in ERRORS:
+            terminalreporter.write_line(f"{regime:<44}{vectors:>7} vectors {worst:>9.4f} u")

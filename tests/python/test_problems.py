@@ -1,0 +1,188 @@
+"""Every problem that the service can report, provoked over HTTP, in the body and in the URL."""
+
+import json
+import socket
+
+import pytest
+
+from service import JSON, Service, by_url
+
+GOOD = {"e": [0, 1, 0], "b": [0, 0, 1], "velocity": [100, 0, 0]}
+
+
+def boost(**form):
+    return {"e": [0, 1, 0], "b": [0, 0, 1], "boost": form}
+
+
+def turn(**form):
+    return {"e": [0, 1, 0], "b": [0, 0, 1], "rotation": form}
+
+
+# Faults of a question: code, question, the place that is named (RFC 6901).
+FAULTS = [
+    ("number_out_of_range", b'{"e": [0, 1e999, 0], "b": [0, 0, 1], "velocity": [1, 0, 0]}', None),
+    ("unknown_field", GOOD | {"speed": 1}, "/speed"),
+    ("unknown_field", boost(beta=[0.1, 0, 0], inversed=True), "/boost/inversed"),
+    ("repeated_field", b'{"e": [0, 1, 0], "e": [0, 1, 0], "b": [0, 0, 1], "velocity": [1, 0, 0]}', "/e"),
+    ("wrong_type", json.dumps(GOOD | {"e": 1}).encode(), "/e"),  # by URL one number is a list of one
+    ("wrong_type", GOOD | {"b": [0, "north", 0]}, "/b/1"),
+    ("wrong_length", GOOD | {"e": [0, 1]}, "/e"),
+    ("wrong_length", turn(matrix=[[1, 0, 0], [0, 1, 0]]), "/rotation/matrix"),
+    ("missing_field", {"e": [0, 1, 0], "b": [0, 0, 1]}, ""),
+    ("missing_field", turn(axis=[0, 0, 1]), "/rotation"),
+    ("conflicting_fields", GOOD | {"rotation": {"axis": [0, 0, 1], "angle": 1}}, None),
+    ("conflicting_fields", boost(beta=[0.1, 0, 0], velocity=[1, 0, 0]), None),
+    ("unknown_unit", GOOD | {"units": {"e": "mv/m"}}, "/units/e"),
+    ("unknown_choice", GOOD | {"include": ["tensors"]}, "/include/0"),
+    ("unknown_choice", turn(euler={"axes": "zyx", "angles": [1, 2, 3], "about": "rolling"}), "/rotation/euler/about"),
+    ("unknown_choice", boost(direction=[1, 0, 0], kinetic_energy=1, particle="pion"), "/boost/particle"),
+    ("faster_than_light", GOOD | {"velocity": [299792458, 0, 0]}, "/velocity"),
+    ("faster_than_light", boost(beta=[0.6, 0.8, 0.1]), "/boost"),
+    ("no_direction", turn(axis=[0, 0, 0], angle=1), "/rotation"),
+    ("no_direction", boost(direction=[0, 0, 0], gamma=2), "/boost"),
+    ("below_rest", boost(direction=[1, 0, 0], gamma=0.5), "/boost"),
+    ("below_rest", boost(direction=[1, 0, 0], kinetic_energy=-1, particle="proton"), "/boost"),
+    ("not_a_rotation", turn(quaternion={"w": 1, "x": 1, "y": 0, "z": 0}), "/rotation"),
+    ("too_many_steps", {"e": [0, 1, 0], "b": [0, 0, 1], "steps": [{"boost": {"beta": [0, 0, 0]}}] * 1001}, "/steps"),
+    ("overflow", {"e": [0, 1e300, 0], "b": [0, 0, 1], "boost": {"direction": [1, 0, 0], "gamma": 1e20}}, None),
+    ("precision_exhausted", {"e": [0, 1, 0], "b": [0, 0, 1], "steps": [
+        {"boost": {"direction": [1, 0, 0], "rapidity": rapidity}} for rapidity in 10 * [700, -700]]}, None),
+]
+
+# Problems of a request: code, method, path, body, headers.
+REQUESTS = [
+    ("syntax", "POST", "/v1/transform", b'{"e": [0, 1, 0],}', JSON),
+    ("syntax", "POST", "/v1/transform", b"", JSON),
+    ("syntax", "POST", "/v1/transform", b'{"e": [NaN, 0, 0]}', JSON),
+    ("syntax", "POST", "/v1/transform", b'{"e": [Infinity, 0, 0]}', JSON),
+    ("syntax", "POST", "/v1/transform", b'{"e": "\xff"}', JSON),
+    ("syntax", "POST", "/v1/transform", b"[" * 100_000, JSON),
+    ("syntax", "POST", "/v1/transform", json.dumps(GOOD).encode() + b"{}", JSON),
+    ("syntax", "GET", "/v1/transform?e=%zz", None, {}),
+    ("syntax", "GET", "/v1/transform?e=0,1,0&b=0,0,1&steps=%5B%7B", None, {}),
+    ("not_found", "GET", "/v1/nothing", None, {}),
+    ("unknown_code", "GET", "/problems/nothing", None, {}),
+    ("method_not_allowed", "PUT", "/v1/transform", json.dumps(GOOD).encode(), JSON),
+    ("not_acceptable", "GET", by_url(GOOD), None, {"Accept": "application/pdf"}),
+    ("not_acceptable", "POST", "/v1/transform", json.dumps(GOOD).encode(), JSON | {"Accept": "image/png"}),
+    ("unsupported_media_type", "POST", "/v1/transform", json.dumps(GOOD).encode(), {"Content-Type": "text/plain"}),
+    ("unsupported_media_type", "POST", "/v1/transform", json.dumps(GOOD).encode(), {}),
+    ("body_too_large", "POST", "/v1/transform", b" " * (1 << 20) + b"{}", JSON),
+    ("uri_too_long", "GET", "/v1/transform?e=" + "1" * 20_000, None, {}),
+    ("headers_too_large", "GET", "/health/live", None, {"X-Long": "x" * 40_000}),
+]
+
+# Provoked by tests of their own, below.
+OTHERS = {"request_timeout", "overloaded"}
+
+# Codes that no request can bring about in this version, and why.
+OUT_OF_REACH = {
+    "internal": "only a fault of the service itself brings it about",
+    "too_many_requests": "no limit of requests for each client can be set",
+    "unauthorized": "tokens cannot be asked for",
+    "unknown_frame": "a question cannot name frames",
+    "not_a_covariance": "a question cannot state uncertainties",
+    "negative_uncertainty": "a question cannot state uncertainties",
+}
+
+
+def check_document(reply, code):
+    """An RFC 9457 problem document whose type explains itself at its own address."""
+    problem = reply.json
+    assert problem["type"] == f"/problems/{code}", reply.body.decode()
+    assert reply.headers["content-type"] == "application/problem+json"
+    assert problem["status"] == reply.status and problem["title"] and problem["detail"]
+    assert problem["instance"] == f"urn:uuid:{reply.headers['x-request-id']}"
+    return problem
+
+
+def test_no_code_is_left_out(service):
+    known = {entry["code"] for entry in service.get("/problems").json}
+    provoked = {row[0] for row in FAULTS + REQUESTS} | OTHERS
+    assert known - provoked == OUT_OF_REACH.keys()
+
+
+@pytest.mark.parametrize("code, question, place", FAULTS, ids=[f"{row[0]} {i}" for i, row in enumerate(FAULTS)])
+def test_a_fault_of_the_question(service, code, question, place):
+    (fault,) = check_document(service.post(question), code)["errors"]
+    assert fault["code"] == code and fault["detail"]
+    assert place is None or fault["pointer"] == place
+    if isinstance(question, dict) and len(by_url(question)) < 8192:
+        (by_parameter,) = check_document(service.get(by_url(question)), code)["errors"]
+        assert by_parameter["code"] == code and by_parameter["detail"]
+        assert by_parameter["parameter"] == fault["pointer"].strip("/").replace("/", ".")
+
+
+@pytest.mark.parametrize("code, method, path, body, headers", REQUESTS,
+                         ids=[f"{row[0]} {i}" for i, row in enumerate(REQUESTS)])
+def test_a_problem_of_the_request(service, code, method, path, body, headers):
+    reply = service.request(method, path, body, headers)
+    problem = check_document(reply, code)
+    explained = service.get(f"/problems/{code}", Accept="application/json").json
+    assert explained["status"] == problem["status"] == reply.status
+    assert explained["mend"] and explained["about"]
+    if code == "method_not_allowed":
+        assert {"GET", "POST"} <= {name.strip() for name in reply.headers["allow"].split(",")}
+
+
+def test_six_mistakes_get_one_answer_that_names_all_six(service):
+    reply = service.post({
+        "e": [1, 2],
+        "b": [0, "north", 0],
+        "colour": "red",
+        "units": {"velocity": "mph"},
+        "steps": [{"boost": {"beta": [0.8, 0.8, 0]}}, {"rotate": {"quaternion": {"w": 2, "x": 0, "y": 0, "z": 0}}}],
+    })
+    assert reply.status == 400
+    found = {(fault["code"], fault["pointer"]) for fault in reply.json["errors"]}
+    assert found == {
+        ("wrong_length", "/e"),
+        ("wrong_type", "/b/1"),
+        ("unknown_field", "/colour"),
+        ("unknown_unit", "/units/velocity"),
+        ("faster_than_light", "/steps/0/boost"),
+        ("not_a_rotation", "/steps/1/rotate"),
+    }
+    assert all(len(fault["detail"]) > 20 for fault in reply.json["errors"])
+
+
+def test_only_impossible_values_are_422(service):
+    """All faults are of physics: the question was understood."""
+    reply = service.post({"e": [1, 2, 3], "b": [1, 2, 3], "steps": [
+        {"boost": {"beta": [2, 0, 0]}}, {"rotate": {"axis": [0, 0, 0], "angle": 1}}]})
+    assert reply.status == 422
+    assert [fault["code"] for fault in reply.json["errors"]] == ["faster_than_light", "no_direction"]
+
+
+def test_a_repeated_parameter(service):
+    reply = service.get("/v1/transform?e=0,1,0&e=0,1,0&b=0,0,1&velocity=1,0,0")
+    (fault,) = check_document(reply, "repeated_field")["errors"]
+    assert fault["parameter"] == "e"
+
+
+@pytest.mark.parametrize("status, head", [
+    (414, b"GET /" + b"1" * 100_000 + b" HTTP/1.1\r\nHost: x\r\n\r\n"),
+    (431, b"GET / HTTP/1.1\r\nX: " + b"x" * 1_000_000)])
+def test_heads_past_the_limits_of_the_parser_are_refused_too(service, status, head):
+    """Too large to be read at all: refused with the same status, but nothing to write a document for."""
+    assert service.raw(head).status == status
+    assert service.get("/health/live").status == 200
+
+
+def test_a_request_that_does_not_arrive(tmp_path):
+    """A body that stays away for longer than --request-timeout."""
+    with Service(tmp_path / "log.txt", "--request-timeout", "300ms") as slow:
+        reply = slow.raw(b"POST /v1/transform HTTP/1.1\r\nHost: x\r\nContent-Type: application/json\r\n"
+                         b"Content-Length: 100\r\n\r\n{")
+    check_document(reply, "request_timeout")
+
+
+def test_more_requests_at_once_than_allowed(tmp_path):
+    """With --max-concurrent 1 the second is turned away while the body of the first is awaited."""
+    with Service(tmp_path / "log.txt", "--max-concurrent", "1") as small:
+        with socket.create_connection((small.host, small.port)) as first:
+            first.sendall(b"POST /v1/transform HTTP/1.1\r\nHost: x\r\nContent-Type: application/json\r\n"
+                          b"Content-Length: 100\r\n\r\n{")
+            reply = small.until(503, "GET", by_url(GOOD))
+    check_document(reply, "overloaded")
+    assert int(reply.headers["retry-after"]) >= 1
