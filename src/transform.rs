@@ -157,10 +157,9 @@ fn reduce(
     {
         let [_, b] = measured.vectors::<Dd>(());
         let b = round(&b);
-        let sine = b[*i].abs() / libm::hypot(libm::hypot(b[0], b[1]), b[2]);
-        let angle = libm::asin(sine.min(1.0));
-        // The comparison is false for NaN: without B there is no angle.
-        if !(angle >= assumed.min_angle) {
+        let (j, k) = ((i + 1) % 3, (i + 2) % 3);
+        let angle = libm::atan2(b[*i].abs(), libm::hypot(b[j], b[k]));
+        if angle < assumed.min_angle {
             return Err(Impossible::FieldInPlane {
                 degrees: angle.to_degrees(),
                 limit: assumed.min_angle.to_degrees(),

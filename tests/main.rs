@@ -4,6 +4,7 @@
 mod arithmetic;
 mod frames;
 mod http;
+mod incomplete;
 mod laws;
 mod layering;
 mod middleware;
@@ -12,3 +13,4 @@ mod problems;
 mod schema;
 mod start;
 mod support;
+mod times;

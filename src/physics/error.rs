@@ -77,7 +77,7 @@ pub enum Impossible {
          is {limit} degrees: there E.B = 0 says too little about the missing one"
     )]
     FieldInPlane {
-        /// Angle of B to the plane in degrees; NaN without B.
+        /// Angle of B to the plane in degrees; zero without B.
         degrees: f64,
         /// The least angle allowed.
         limit: f64,

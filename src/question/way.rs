@@ -4,8 +4,8 @@ use std::sync::Arc;
 
 use super::Deployment;
 use crate::chain::{self, step};
-use crate::document::{Code, Faults, Members, Node, Notice, Place};
-use crate::frames::{Catalogue, Sensor, Time, Walk};
+use crate::document::{Code, Faults, Members, Notice, Place};
+use crate::frames::{Sensor, Time, Walk};
 use crate::physics::lorentz::Step;
 use crate::physics::precise::Resolved;
 use crate::units::Units;
@@ -114,39 +114,22 @@ pub fn walk(
     faults: &mut Faults,
 ) -> Option<Arc<Walk>> {
     let root = Place::ROOT;
+    let Some(catalogue) = &deployment.frames else {
+        let detail = "this service was started without a catalogue of frames (--frames FILE)";
+        faults.note(&root.field("from"), Code::UnknownFrame, detail);
+        return None;
+    };
     let mut end = |name| {
         let node = faults.needed(members, &root, name)?;
-        frame(
-            node,
-            &root.field(name),
-            deployment.frames.as_deref(),
-            faults,
-        )
+        let place = root.field(name);
+        let found = catalogue.find(faults.text(node, &place)?);
+        found
+            .map_err(|fault| faults.note(&place, fault.code, fault.detail))
+            .ok()
     };
     let (from, to) = (end("from"), end("to"));
     let (from, to) = if inverse? { (to?, from?) } else { (from?, to?) };
-    let walk = deployment.frames.as_ref()?.walk(from, to);
+    let walk = catalogue.walk(from, to);
     walk.map_err(|fault| faults.note(&root.field("to"), fault.code, fault.detail))
-        .ok()
-}
-
-fn frame(
-    node: &Node,
-    place: &Place,
-    catalogue: Option<&Catalogue>,
-    faults: &mut Faults,
-) -> Option<usize> {
-    let name = faults.text(node, place)?;
-    let Some(catalogue) = catalogue else {
-        let detail = format!(
-            "{name:?} is not known: this service was started without a catalogue of frames \
-             (--frames FILE)"
-        );
-        faults.note(place, Code::UnknownFrame, detail);
-        return None;
-    };
-    let found = catalogue.find(name);
-    found
-        .map_err(|fault| faults.note(place, fault.code, fault.detail))
         .ok()
 }

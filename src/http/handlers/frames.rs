@@ -151,7 +151,7 @@ pub(crate) async fn list_frames(
 /// One frame: what it is, where it hangs and when its motion is known.
 #[utoipa::path(
     get, path = "/v1/frames/{name}", tag = "frames", operation_id = "show_frame",
-    params(("name" = String, Path, description = "Name of the frame")),
+    params(("name" = String, Path, description = "Name of the frame", example = "boom")),
     responses(
         (status = 200, description = "The frame", body = FrameRow, content_type = "application/json"),
         (status = 304, description = "The answer is the one the client holds"),
@@ -182,9 +182,9 @@ pub(crate) async fn show_frame(
 #[utoipa::path(
     get, path = "/v1/frames/{from}/to/{to}", tag = "frames", operation_id = "transformation",
     params(
-        ("from" = String, Path, description = "The frame where it begins"),
-        ("to" = String, Path, description = "The frame where it ends"),
-        ("time" = Option<String>, Query, description = "When, where it changes with time: RFC 3339 (a `+` is written %2B), or seconds from the epoch of the catalogue"),
+        ("from" = String, Path, description = "The frame where it begins", example = "boom"),
+        ("to" = String, Path, description = "The frame where it ends", example = "ground"),
+        ("time" = Option<String>, Query, description = "When, where it changes with time: RFC 3339 (a `+` is written %2B), or seconds from the epoch of the catalogue", example = "120.5"),
     ),
     responses(
         (status = 200, description = "The net transformation", body = Transformation, content_type = "application/json"),
