@@ -53,7 +53,8 @@ def test_attitudes_between_samples_are_those_of_scipys_slerp(start):
     rng = random.Random("slerp")
     times, attitudes = [0.0], [Rotation.random(rng=np.random.default_rng(1))]
     for _ in range(60):
-        turn = Rotation.from_rotvec(np.array([rng.gauss(0, 1) for _ in range(3)]) * 0.45)
+        axis = np.array([rng.gauss(0, 1) for _ in range(3)])
+        turn = Rotation.from_rotvec(axis / np.linalg.norm(axis) * rng.uniform(0, 1.57))  # up to 90 degrees
         attitudes.append(attitudes[-1] * turn)
         times.append(times[-1] + rng.uniform(0.2, 3))
     track = "time,qw,qx,qy,qz\n"
@@ -95,7 +96,7 @@ def test_a_line_integral_from_pole_to_equator_gives_the_corotation_voltage(start
     """
     omega, b0, radius = 7.2921159e-5, 3.12e-5, 6.371e6
     nodes, weights = np.polynomial.legendre.leggauss(12)
-    angles = (nodes + 1) * math.pi / 4
+    angles = ((nodes + 1) * math.pi / 4).tolist()
     text = f"{EPOCH}[frames.space]\n"
     for i, angle in enumerate(angles):
         text += (f'[frames.p{i}]\nparent = "space"\nposition = [{radius * math.sin(angle)!r}, 0, '
@@ -119,7 +120,7 @@ def test_a_radial_integral_over_a_turning_disc_gives_its_voltage(start):
     """Homopolar disc: ½BωR² = π/2 V at 1 T, 50 rev/s and 0.1 m (M. Faraday; any textbook, e.g.
     Jackson, Classical Electrodynamics, ch. 5, from memory)."""
     nodes, weights = np.polynomial.legendre.leggauss(4)
-    radii = (nodes + 1) * 0.05
+    radii = ((nodes + 1) * 0.05).tolist()
     text = f'{EPOCH}[units]\nangular_velocity = "circ/s"\nangle = "deg"\n[frames.lab]\n'
     for i, radius in enumerate(radii):
         text += (f'[frames.r{i}]\nparent = "lab"\nposition = [{radius!r}, 0, 0]\n'
@@ -166,9 +167,9 @@ def test_the_demonstration_agrees_with_an_independent_computation(demo):
             exact = [float(x) for x in exact]
             off = np.linalg.norm(np.subtract(answer[name], exact))
             assert off <= 1e-13 * np.linalg.norm(exact), f"{name} at {time}"
-        # What make.py put there, to the rounding of the telemetry.
+        # What make.py put there, to the rounding of the telemetry and the steps of the track.
         assert answer["e"] == pytest.approx([12, 20, 6], abs=0.01)
-        assert answer["b"] == pytest.approx([1500, 15000, -53000], abs=4)
+        assert answer["b"] == pytest.approx([1500, 15000, -53000], abs=8)
 
 
 def test_a_url_asks_the_same(demo):
