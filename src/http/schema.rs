@@ -226,11 +226,14 @@ pub struct Rotate {
 #[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
 #[schema(as = AttitudeQuaternion, example = json!({"w": 1.0, "x": 0.0, "y": 0.0, "z": 0.0}))]
 #[serde(deny_unknown_fields)]
-#[allow(missing_docs, reason = "the names say it")]
 pub struct Quaternion {
+    /// Cosine of half the angle.
     pub w: f64,
+    /// Sine of half the angle times the axis, x component.
     pub x: f64,
+    /// The same, y component.
     pub y: f64,
+    /// The same, z component.
     pub z: f64,
 }
 
