@@ -9,7 +9,7 @@ use super::big::Big;
 use super::constants::SPEED_OF_LIGHT;
 use super::double_double::Dd;
 use super::error::Impossible;
-use super::real::{Real, Vec3, cross, norm2, scale, vector};
+use super::real::{Real, Vec3, cross, exponent_spread, norm2, scale, vector};
 use super::scale::Scale;
 
 /// The motion of the next frame as seen in the current one, in the form it was given.
@@ -206,6 +206,40 @@ impl Motion {
                 let sane = |x: f64| (1e-60..1e60).contains(&x);
                 sane(rest) && (energy == 0.0 || sane(energy) && sane(energy / rest))
             }
+        }
+    }
+
+    /// About how many bits below one the smallest component of β, or of the direction and
+    /// γ − 1, lies.
+    pub fn depth(&self) -> i64 {
+        let below_one = |x: f64| {
+            if x == 0.0 {
+                0
+            } else {
+                i64::from(-libm::ilogb(x)).max(0)
+            }
+        };
+        let smallest = |v: &[f64; 3]| v.iter().map(|x| below_one(*x)).max().unwrap_or(0);
+        match self {
+            Motion::Velocity { value, beta } => smallest(value) + below_one(beta.to_f64()),
+            Motion::Turning {
+                angular_velocity,
+                position,
+                beta,
+            } => smallest(angular_velocity) + smallest(position) + below_one(beta.to_f64()),
+            Motion::Gamma { direction, gamma } => {
+                exponent_spread(*direction) + below_one(gamma - 1.0)
+            }
+            Motion::Rapidity {
+                direction,
+                rapidity,
+            } => exponent_spread(*direction) + below_one(*rapidity),
+            Motion::KineticEnergy {
+                direction,
+                energy,
+                rest,
+                ..
+            } => exponent_spread(*direction) + exponent_spread([*energy, *rest]),
         }
     }
 

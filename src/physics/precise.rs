@@ -11,7 +11,7 @@ use super::double_double::Dd;
 use super::error::Impossible;
 use super::field::{FieldUnits, Kernel, Measured};
 use super::lorentz::{Change, Net, Step};
-use super::real::{Real, Vec3, cross, round, vector};
+use super::real::{Real, Vec3, cross, exponent_spread, round, vector};
 use super::scale::Scale;
 
 /// Result over what was summed, below which two doubles no longer suffice.
@@ -103,18 +103,18 @@ impl Resolved {
                 resolved.slack = f64::from(moving) * libm::exp2(lost.max(0.0) / 2.0);
             }
         } else {
-            resolved.net = Net::<Big>::of(&resolved.steps, resolved.context(LEVELS[0])).to_dd();
+            let net = Net::<Big>::of(&resolved.steps, resolved.context(LEVELS[0]));
+            let gamma = net.boost.as_ref().and_then(|boost| boost.gamma.exponent());
+            if let Some(bits) = gamma.filter(|bits| *bits > 1023) {
+                return Err(Impossible::GammaOverflow { bits });
+            }
+            resolved.net = net.to_dd();
         }
         let gamma = resolved
             .net
             .boost
             .as_ref()
             .map_or(1.0, |boost| boost.gamma.hi);
-        if !gamma.is_finite() {
-            return Err(Impossible::Overflow {
-                what: "gamma of the net boost",
-            });
-        }
         resolved.fits_dd = gamma < 1e60;
         Ok(resolved)
     }
@@ -138,9 +138,10 @@ impl Resolved {
         Net::<Big>::of(&self.steps, context).matrix(context)
     }
 
-    /// The bits in which a result keeps `bits` of them.
+    /// The precision in which a result keeps `bits` of its bits: a chain spends as many as its
+    /// steps multiply up, and e^−η against e^η of the net boost takes two or three times that.
     fn context(&self, bits: usize) -> usize {
-        bits + 2 * self.growth as usize
+        bits + 4 * self.growth as usize
     }
 
     /// The field in the target frame, in the units `to`.
@@ -251,12 +252,11 @@ impl Resolved {
                 vanishes_by_itself = true;
                 break;
             };
-            if let Some(reached) = exponent(&result) {
-                // A chain has spent as many bits as its steps multiply up.
-                if size - reached <= (bits as f64 + self.growth) as i64 - GUARD {
-                    let (rounded, precise) = finish(&result, unit, target, context);
-                    return (rounded, precise, ((size - reached) as f64 - 3.0).max(0.0));
-                }
+            if let Some(reached) = exponent(&result)
+                && size - reached <= (bits as f64 + 3.0 * self.growth) as i64 - GUARD
+            {
+                let (rounded, precise) = finish(&result, unit, target, context);
+                return (rounded, precise, ((size - reached) as f64 - 3.0).max(0.0));
             }
             if bits >= self.bits_of_zero(field) {
                 break;
@@ -275,22 +275,24 @@ impl Resolved {
     }
 
     /// How many bits prove that a sum of products of these doubles vanishes: enough for all of
-    /// their digits side by side.
+    /// their digits side by side, three small numbers of the way multiplied together included.
     fn bits_of_zero(&self, field: &Measured) -> usize {
-        let direction = self
-            .net
-            .boost
-            .as_ref()
-            .map_or([0.0; 3], |boost| round(&boost.direction));
-        let spread = [field.e, field.b, direction]
-            .map(|v| {
-                let exponents = v.iter().filter(|x| **x != 0.0).map(|x| libm::ilogb(*x));
-                exponents.clone().max().unwrap_or(0) - exponents.min().unwrap_or(0)
-            })
+        let spread = [field.e, field.b]
+            .map(exponent_spread)
             .into_iter()
             .max()
             .unwrap_or(0);
-        if spread < 100 { LEVELS[1] } else { LEVELS[3] }
+        let depth = self
+            .steps
+            .iter()
+            .map(|step| step.change.depth())
+            .max()
+            .unwrap_or(0);
+        let needed = 400 + 2 * spread + 3 * depth;
+        LEVELS
+            .into_iter()
+            .find(|bits| *bits as i64 >= needed)
+            .unwrap_or(LEVELS[3])
     }
 }
 

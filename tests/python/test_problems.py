@@ -37,12 +37,12 @@ FAULTS = [
     ("unknown_choice", turn(euler={"axes": "zyx", "angles": [1, 2, 3], "about": "rolling"}), "/rotation/euler/about"),
     ("unknown_choice", boost(direction=[1, 0, 0], kinetic_energy=1, particle="pion"), "/boost/particle"),
     ("faster_than_light", GOOD | {"velocity": [299792458, 0, 0]}, "/velocity"),
-    ("faster_than_light", boost(beta=[0.6, 0.8, 0.1]), "/boost"),
-    ("no_direction", turn(axis=[0, 0, 0], angle=1), "/rotation"),
-    ("no_direction", boost(direction=[0, 0, 0], gamma=2), "/boost"),
-    ("below_rest", boost(direction=[1, 0, 0], gamma=0.5), "/boost"),
-    ("below_rest", boost(direction=[1, 0, 0], kinetic_energy=-1, particle="proton"), "/boost"),
-    ("not_a_rotation", turn(quaternion={"w": 1, "x": 1, "y": 0, "z": 0}), "/rotation"),
+    ("faster_than_light", boost(beta=[0.6, 0.8, 0.1]), "/boost/beta"),
+    ("no_direction", turn(axis=[0, 0, 0], angle=1), "/rotation/axis"),
+    ("no_direction", boost(direction=[0, 0, 0], gamma=2), "/boost/direction"),
+    ("below_rest", boost(direction=[1, 0, 0], gamma=0.5), "/boost/gamma"),
+    ("below_rest", boost(direction=[1, 0, 0], kinetic_energy=-1, particle="proton"), "/boost/kinetic_energy"),
+    ("not_a_rotation", turn(quaternion={"w": 1, "x": 1, "y": 0, "z": 0}), "/rotation/quaternion"),
     ("too_many_steps", {"e": [0, 1, 0], "b": [0, 0, 1], "steps": [{"boost": {"beta": [0, 0, 0]}}] * 1001}, "/steps"),
     ("overflow", {"e": [0, 1e300, 0], "b": [0, 0, 1], "boost": {"direction": [1, 0, 0], "gamma": 1e20}}, None),
     ("precision_exhausted", {"e": [0, 1, 0], "b": [0, 0, 1], "steps": [
@@ -140,8 +140,8 @@ def test_six_mistakes_get_one_answer_that_names_all_six(service):
         ("wrong_type", "/b/1"),
         ("unknown_field", "/colour"),
         ("unknown_unit", "/units/velocity"),
-        ("faster_than_light", "/steps/0/boost"),
-        ("not_a_rotation", "/steps/1/rotate"),
+        ("faster_than_light", "/steps/0/boost/beta"),
+        ("not_a_rotation", "/steps/1/rotate/quaternion"),
     }
     assert all(len(fault["detail"]) > 20 for fault in reply.json["errors"])
 
