@@ -73,6 +73,8 @@ pub struct Boost<R> {
 
 /// Bits that hold any sum of squares of doubles exactly.
 const EXACT_BITS: usize = 4608;
+/// Bits that tell γ of a speed next to c from another by more than enough.
+const GROWTH_BITS: usize = 256;
 /// Below this 1−β² is taken from more digits than two doubles have.
 const SMALL_W: f64 = 0.0625;
 
@@ -207,6 +209,15 @@ impl Motion {
                 sane(rest) && (energy == 0.0 || sane(energy) && sane(energy / rest))
             }
         }
+    }
+
+    /// log2 of γ(1+β), or a little more.
+    pub fn growth(&self) -> f64 {
+        if self.fits_dd() {
+            let gamma = self.boost::<Dd>(()).gamma.hi;
+            return libm::log2(gamma + ((gamma - 1.0) * (gamma + 1.0)).sqrt());
+        }
+        self.boost::<Big>(GROWTH_BITS).gamma.exponent().unwrap_or(0) as f64 + 2.0
     }
 
     /// About how many bits below one the smallest component of β, or of the direction and

@@ -31,6 +31,27 @@ pub enum Change {
 }
 
 impl Change {
+    /// Whether it changes the state of motion.
+    pub fn moves(&self) -> bool {
+        matches!(self, Change::Boost(_))
+    }
+
+    /// Whether two doubles hold the step to full precision.
+    pub fn fits_dd(&self) -> bool {
+        match self {
+            Change::Boost(motion) => motion.fits_dd(),
+            Change::Rotate(turn) => turn.fits_dd(),
+        }
+    }
+
+    /// log2 of γ(1+β), by which the step can multiply a field, or a little more.
+    pub fn growth(&self) -> f64 {
+        match self {
+            Change::Boost(motion) => motion.growth(),
+            Change::Rotate(_) => 0.0,
+        }
+    }
+
     /// About how many bits below one the smallest number of the step lies.
     pub fn depth(&self) -> i64 {
         match self {

@@ -10,7 +10,7 @@ use super::big::Big;
 use super::double_double::Dd;
 use super::error::Impossible;
 use super::field::{FieldUnits, Kernel, Measured};
-use super::lorentz::{Change, Net, Step};
+use super::lorentz::{Net, Step};
 use super::real::{Real, Vec3, cross, exponent_spread, round, vector};
 use super::scale::Scale;
 
@@ -21,9 +21,11 @@ const LEVELS: [usize; 4] = [256, 640, 1536, 4608];
 /// Bits below the size of what was summed that a result at least keeps.
 const GUARD: i64 = 120;
 /// Largest product of γ(1+β) over the steps of a way, as a power of two.
-const MAX_GROWTH: f64 = 4096.0;
+const MAX_GROWTH: f64 = 2048.0;
 /// Up to this growth a chain is composed in two doubles.
 const DD_GROWTH: f64 = 20.0;
+/// Below this net γ two doubles have room for its products.
+const DD_GAMMA: f64 = 1e60;
 
 /// A way whose net transformation is known, ready for any number of readings.
 #[derive(Clone, Debug)]
@@ -59,64 +61,48 @@ impl Resolved {
     /// The speeds of the steps multiply up beyond the precision kept, or the net γ is larger
     /// than a double can hold.
     pub fn new(steps: Vec<Step>) -> Result<Resolved, Impossible> {
-        let mut fits = true;
-        let mut moving = 0u32;
-        let mut growth = 0.0;
-        for step in &steps {
-            match &step.change {
-                Change::Boost(motion) => {
-                    moving += 1;
-                    let gamma = if motion.fits_dd() {
-                        let gamma = motion.boost::<Dd>(()).gamma.hi;
-                        libm::log2(gamma + ((gamma - 1.0) * (gamma + 1.0)).sqrt())
-                    } else {
-                        fits = false;
-                        motion.boost::<Big>(LEVELS[0]).gamma.exponent().unwrap_or(0) as f64 + 2.0
-                    };
-                    growth += gamma;
-                }
-                Change::Rotate(turn) => fits &= turn.fits_dd(),
-            }
+        let fits = steps.iter().all(|step| step.change.fits_dd());
+        let moving = steps.iter().filter(|step| step.change.moves()).count();
+        if fits && moving < 2 {
+            // By far the most usual way: nothing to lose in composing it.
+            let net = Net::of(&steps, ());
+            let growth = libm::log2(2.0 * gamma(&net));
+            return Ok(Resolved {
+                fits_dd: gamma(&net) < DD_GAMMA,
+                steps,
+                net,
+                growth,
+                slack: 1.0,
+            });
         }
+        let growth = steps.iter().map(|step| step.change.growth()).sum();
         if growth > MAX_GROWTH {
             return Err(Impossible::PrecisionExhausted {
                 growth,
                 limit: MAX_GROWTH,
             });
         }
-        let mut resolved = Resolved {
-            steps,
-            net: Net::IDENTITY,
-            growth,
-            slack: 1.0,
-            fits_dd: true,
-        };
-        if fits && (moving < 2 || growth <= DD_GROWTH) {
-            resolved.net = Net::of(&resolved.steps, ());
-            if moving > 1 {
-                let gamma = resolved
-                    .net
-                    .boost
-                    .as_ref()
-                    .map_or(1.0, |boost| boost.gamma.hi);
-                let lost = growth - libm::log2(2.0 * gamma);
-                resolved.slack = f64::from(moving) * libm::exp2(lost.max(0.0) / 2.0);
-            }
+        let mut slack = 1.0;
+        let net = if fits && growth <= DD_GROWTH {
+            let net = Net::of(&steps, ());
+            let lost = growth - libm::log2(2.0 * gamma(&net));
+            slack = moving as f64 * libm::exp2(lost.max(0.0) / 2.0);
+            net
         } else {
-            let net = Net::<Big>::of(&resolved.steps, resolved.context(LEVELS[0]));
-            let gamma = net.boost.as_ref().and_then(|boost| boost.gamma.exponent());
-            if let Some(bits) = gamma.filter(|bits| *bits > 1023) {
+            let net = Net::<Big>::of(&steps, LEVELS[0] + growth as usize);
+            let exponent = net.boost.as_ref().and_then(|boost| boost.gamma.exponent());
+            if let Some(bits) = exponent.filter(|bits| *bits > 1023) {
                 return Err(Impossible::GammaOverflow { bits });
             }
-            resolved.net = net.to_dd();
-        }
-        let gamma = resolved
-            .net
-            .boost
-            .as_ref()
-            .map_or(1.0, |boost| boost.gamma.hi);
-        resolved.fits_dd = gamma < 1e60;
-        Ok(resolved)
+            net.to_dd()
+        };
+        Ok(Resolved {
+            fits_dd: gamma(&net) < DD_GAMMA,
+            steps,
+            net,
+            growth,
+            slack,
+        })
     }
 
     /// The net transformation to the precision of two doubles.
@@ -139,9 +125,14 @@ impl Resolved {
     }
 
     /// The precision in which a result keeps `bits` of its bits: a chain spends as many as its
-    /// steps multiply up, and e^−η against e^η of the net boost takes two or three times that.
+    /// steps multiply up, and e^−η against e^η of the net boost takes its own.
     fn context(&self, bits: usize) -> usize {
-        bits + 4 * self.growth as usize
+        bits + self.growth as usize + self.net_bits()
+    }
+
+    /// Bits between e^η and e^−η of the net boost, and half as many to spare.
+    fn net_bits(&self) -> usize {
+        (3.0 * libm::log2(2.0 * gamma(&self.net))) as usize
     }
 
     /// The field in the target frame, in the units `to`.
@@ -253,7 +244,7 @@ impl Resolved {
                 break;
             };
             if let Some(reached) = exponent(&result)
-                && size - reached <= (bits as f64 + 3.0 * self.growth) as i64 - GUARD
+                && size - reached <= (bits + self.net_bits()) as i64 - GUARD
             {
                 let (rounded, precise) = finish(&result, unit, target, context);
                 return (rounded, precise, ((size - reached) as f64 - 3.0).max(0.0));
@@ -294,6 +285,11 @@ impl Resolved {
             .find(|bits| *bits as i64 >= needed)
             .unwrap_or(LEVELS[3])
     }
+}
+
+/// γ of a net transformation.
+fn gamma(net: &Net<Dd>) -> f64 {
+    net.boost.as_ref().map_or(1.0, |boost| boost.gamma.hi)
 }
 
 /// Whether products of these numbers stay well inside the range of two doubles.
