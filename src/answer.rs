@@ -3,6 +3,7 @@
 use serde::{Deserialize, Serialize};
 use utoipa::ToSchema;
 
+use crate::document;
 use crate::physics::double_double::Dd;
 use crate::physics::lorentz::{Change, Net};
 use crate::physics::precise::Resolved;
@@ -207,14 +208,8 @@ impl Answer {
     pub fn to(question: &Question) -> Result<Answer, Impossible> {
         let transformed = transform(&question.way, &question.reading, question.target_units())?;
         let asked = |part| question.include.contains(&part);
-        let mut notices: Vec<Notice> = transformed
-            .notices
-            .iter()
-            .map(|n| Notice {
-                code: n.code.into(),
-                detail: n.detail.clone(),
-            })
-            .collect();
+        let remarks = question.notices.iter().chain(&transformed.notices);
+        let mut notices: Vec<Notice> = remarks.map(Notice::from).collect();
         let energy = asked(Part::Energy).then(|| transformed.energy()).flatten();
         if asked(Part::Energy) && energy.is_none() && transformed.precise.is_some() {
             let detail = "energy, Poynting vector or stress is larger than the largest double";
@@ -251,17 +246,33 @@ impl Answer {
                 .then(|| parallel_frame(&transformed, question))
                 .flatten(),
             notices,
-            provenance: Provenance {
-                engine: ENGINE.into(),
-                constants: "CODATA 2022".into(),
-                frames: None,
-            },
+            provenance: Provenance::of(question.catalogue.as_deref()),
         })
     }
 }
 
+impl From<&document::Notice> for Notice {
+    fn from(notice: &document::Notice) -> Notice {
+        Notice {
+            code: notice.code.into(),
+            detail: notice.detail.clone(),
+        }
+    }
+}
+
+impl Provenance {
+    /// Of this program and a catalogue, by its hash.
+    pub fn of(catalogue: Option<&str>) -> Provenance {
+        Provenance {
+            engine: ENGINE.into(),
+            constants: "CODATA 2022".into(),
+            frames: catalogue.map(str::to_owned),
+        }
+    }
+}
+
 /// The net transformation in words of the trade; `unit` is that of velocities.
-fn net(way: &Resolved, unit: Scale) -> NetTransformation {
+pub(crate) fn net(way: &Resolved, unit: Scale) -> NetTransformation {
     let Net { boost, turn, .. } = way.net();
     let (velocity, beta, gamma, rapidity) = match boost {
         Some(boost) => {
@@ -284,11 +295,9 @@ fn net(way: &Resolved, unit: Scale) -> NetTransformation {
     let [w, x, y, z] = turn
         .as_ref()
         .map_or([1.0, 0.0, 0.0, 0.0], |turn| turn.rounded());
-    let boosts_alone = !way.steps().is_empty()
-        && way
-            .steps()
-            .iter()
-            .all(|step| matches!(step.change, Change::Boost(_)));
+    let mut steps = way.steps().peekable();
+    let boosts_alone =
+        steps.peek().is_some() && steps.all(|step| matches!(step.change, Change::Boost(_)));
     let angle = 2.0 * libm::atan2(libm::hypot(libm::hypot(x, y), z), w);
     NetTransformation {
         velocity,
@@ -336,7 +345,8 @@ fn parallel_frame(transformed: &Transformed, question: &Question) -> Option<Para
     }))
 }
 
-fn rows(matrix: nalgebra::Matrix4<f64>) -> [[f64; 4]; 4] {
+/// The rows of a matrix.
+pub(crate) fn rows(matrix: nalgebra::Matrix4<f64>) -> [[f64; 4]; 4] {
     // Adding zero turns −0 into 0.
     std::array::from_fn(|i| std::array::from_fn(|j| matrix[(i, j)] + 0.0))
 }

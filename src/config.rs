@@ -5,6 +5,7 @@
 use std::ffi::OsString;
 use std::fmt::Display;
 use std::net::SocketAddr;
+use std::path::PathBuf;
 use std::str::FromStr;
 use std::time::Duration;
 
@@ -16,7 +17,7 @@ use clap::{Args, CommandFactory, Parser, Subcommand, ValueEnum};
     name = "lodeframe",
     version,
     about = "Restates measured electric and magnetic fields in the frame where they are needed.",
-    after_help = "Exit codes: 0 stopped as asked, 1 could not start (address in use), 2 wrong settings.",
+    after_help = "Exit codes: 0 stopped as asked, 1 could not start (address in use), 2 wrong settings or catalogue.",
     args_conflicts_with_subcommands = true
 )]
 pub struct CommandLine {
@@ -33,6 +34,11 @@ pub struct CommandLine {
 pub enum Command {
     /// Answer requests until told to stop (the default).
     Serve(Box<Settings>),
+    /// Check a catalogue of frames and print its tree.
+    Check {
+        /// The catalogue (TOML).
+        file: PathBuf,
+    },
     /// Print the OpenAPI document and end.
     Openapi,
 }
@@ -69,6 +75,10 @@ pub struct Settings {
         value_delimiter = ','
     )]
     cors_origin: Vec<String>,
+
+    /// Catalogue of named frames (TOML); `lodeframe check FILE` tries one.
+    #[arg(long, env = "LODEFRAME_FRAMES", value_name = "FILE")]
+    frames: Option<PathBuf>,
 
     /// How the log is written to standard error: text, json or off.
     #[arg(
@@ -152,6 +162,8 @@ pub struct Config {
     pub listen: SocketAddr,
     /// Origins that browsers may ask from.
     pub cors_origins: Vec<String>,
+    /// The catalogue of named frames.
+    pub frames: Option<PathBuf>,
     /// How the log is written.
     pub log: LogForm,
     /// Largest body of a single question, bytes.
@@ -195,6 +207,7 @@ impl Settings {
             )
             .unwrap_or(SocketAddr::from(([127, 0, 0, 1], 7410))),
             cors_origins: self.cors_origin.clone(),
+            frames: self.frames.clone(),
             log: LogForm::from_str(&self.log, false).unwrap_or_else(|_| {
                 faults.push(format!(
                     "--log is {:?}; it must be text, json or off.",

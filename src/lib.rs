@@ -10,6 +10,7 @@
 //! | [`units`] | the table of UCUM codes |
 //! | [`document`] | a question as a tree of values, and the faults found in it |
 //! | [`chain`] | steps of a way, as written |
+//! | [`frames`] | the catalogue of named frames: file, tree, tracks over time |
 //! | [`transform`] | the meeting point: a reading and a resolved way give the answer |
 //! | [`question`] | what is asked, read from a tree |
 //! | [`answer`] | what is answered, as JSON |
@@ -20,6 +21,7 @@ pub mod answer;
 pub mod chain;
 pub mod config;
 pub mod document;
+pub mod frames;
 pub mod http;
 pub mod physics;
 pub mod question;

@@ -1,11 +1,13 @@
 //! The command line: start, and a graceful stop.
 
+use std::path::Path;
 use std::process::ExitCode;
 
 use clap::Parser;
 use lodeframe::{
     AppState,
     config::{Command, CommandLine, Config, Settings, unknown_variables},
+    frames::{self, Catalogue, LoadFault},
     http::{app, log, openapi, serve::serve},
 };
 use tokio::{
@@ -21,6 +23,7 @@ const WRONG_SETTINGS: u8 = 2;
 fn main() -> ExitCode {
     let line = CommandLine::parse();
     match line.command {
+        Some(Command::Check { file }) => check(&file),
         Some(Command::Openapi) => {
             print!("{}", openapi::text());
             ExitCode::SUCCESS
@@ -40,11 +43,18 @@ fn start(settings: &Settings) -> ExitCode {
         eprintln!("lodeframe cannot start:\n  {}", faults.join("\n  "));
         return ExitCode::from(WRONG_SETTINGS);
     }
+    let frames = match config.frames.as_deref().map(frames::load).transpose() {
+        Ok(frames) => frames,
+        Err(faults) => {
+            eprintln!("lodeframe cannot start:\n  {}", lines(&faults).join("\n  "));
+            return ExitCode::from(WRONG_SETTINGS);
+        }
+    };
     let _log = log::start(config.log, std::io::stderr());
     let runtime = tokio::runtime::Builder::new_multi_thread()
         .enable_all()
         .build();
-    match runtime.and_then(|runtime| runtime.block_on(run(config))) {
+    match runtime.and_then(|runtime| runtime.block_on(run(config, frames))) {
         Ok(()) => ExitCode::SUCCESS,
         Err(error) => {
             eprintln!("lodeframe cannot start: {error}");
@@ -53,7 +63,25 @@ fn start(settings: &Settings) -> ExitCode {
     }
 }
 
-async fn run(config: Config) -> std::io::Result<()> {
+/// Loads a catalogue as the service would, and prints its tree or its faults.
+fn check(file: &Path) -> ExitCode {
+    match frames::load(file) {
+        Ok(catalogue) => {
+            println!("{catalogue}");
+            ExitCode::SUCCESS
+        }
+        Err(faults) => {
+            eprintln!("{}", lines(&faults).join("\n"));
+            ExitCode::from(WRONG_SETTINGS)
+        }
+    }
+}
+
+fn lines(faults: &[LoadFault]) -> Vec<String> {
+    faults.iter().map(LoadFault::to_string).collect()
+}
+
+async fn run(config: Config, frames: Option<Catalogue>) -> std::io::Result<()> {
     let listener = TcpListener::bind(config.listen).await.map_err(|error| {
         std::io::Error::new(
             error.kind(),
@@ -74,7 +102,7 @@ async fn run(config: Config) -> std::io::Result<()> {
         }
     };
     let address = listener.local_addr()?;
-    let app = app(AppState::new(config.clone()));
+    let app = app(AppState::new(config.clone(), frames));
     println!(
         "Lodeframe {} listens on http://{address} (stop with Ctrl-C)",
         env!("CARGO_PKG_VERSION")

@@ -1,16 +1,21 @@
 //! One question: a reading, the way to the target frame, and what the answer should hold.
 
-use crate::chain::{self, step};
-use crate::document::{Code, Fault, Faults, Members, Node, Place};
+mod assume;
+pub mod way;
+
+use std::sync::Arc;
+
+use crate::chain;
+use crate::document::{Code, Fault, Faults, Members, Node, Notice, Place};
+use crate::frames::{Catalogue, Channel, Sensor};
 use crate::physics::field::FieldUnits;
-use crate::physics::lorentz::Step;
 use crate::physics::precise::Resolved;
 use crate::physics::tensor::Signature;
 use crate::transform::Reading;
 use crate::units::{Quantity, Units};
 
 /// The names a question may have at its top level.
-pub const KNOWN: [&str; 11] = [
+pub const KNOWN: [&str; 15] = [
     "e",
     "b",
     "units",
@@ -19,13 +24,14 @@ pub const KNOWN: [&str; 11] = [
     "boost",
     "velocity",
     "rotation",
+    "from",
+    "to",
+    "time",
     "inverse",
+    "assume",
     "include",
     "signature",
 ];
-
-/// The ways to name the target; exactly one is needed.
-const WAYS: [&str; 4] = ["steps", "velocity", "boost", "rotation"];
 
 /// What an answer holds on request.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -47,11 +53,13 @@ const PARTS: [(&str, Part); 4] = [
     ("parallel_frame", Part::ParallelFrame),
 ];
 
-/// What a deployment allows.
-#[derive(Clone, Copy, Debug)]
-pub struct Limits {
+/// What a deployment allows and knows.
+#[derive(Clone, Debug)]
+pub struct Deployment {
     /// Most steps a way may have.
     pub steps: usize,
+    /// The catalogue of named frames, if there is one.
+    pub frames: Option<Arc<Catalogue>>,
 }
 
 /// A question understood.
@@ -60,7 +68,7 @@ pub struct Question {
     /// The reading.
     pub reading: Reading,
     /// The way, resolved.
-    pub way: Resolved,
+    pub way: Arc<Resolved>,
     /// Units of the question.
     pub units: Units,
     /// Units of the answer.
@@ -69,6 +77,10 @@ pub struct Question {
     pub include: Vec<Part>,
     /// Convention of the tensor.
     pub signature: Signature,
+    /// What is to be said about the way.
+    pub notices: Vec<Notice>,
+    /// The hash of the catalogue that the service has, used or not.
+    pub catalogue: Option<Arc<str>>,
 }
 
 impl Question {
@@ -76,9 +88,9 @@ impl Question {
     ///
     /// # Errors
     /// Every fault found in it.
-    pub fn read(node: &Node, limits: &Limits) -> Result<Question, Vec<Fault>> {
+    pub fn read(node: &Node, deployment: &Deployment) -> Result<Question, Vec<Fault>> {
         let mut faults = Faults::default();
-        let question = read(node, limits, &mut faults);
+        let question = read(node, deployment, &mut faults);
         match question {
             Some(question) if faults.0.is_empty() => Ok(question),
             _ => Err(faults.0),
@@ -98,7 +110,7 @@ fn field_units(units: &Units) -> FieldUnits {
     }
 }
 
-fn read(node: &Node, limits: &Limits, faults: &mut Faults) -> Option<Question> {
+fn read(node: &Node, deployment: &Deployment, faults: &mut Faults) -> Option<Question> {
     let root = Place::ROOT;
     let members = faults.members(node, &root, &KNOWN)?;
     let units = match members.get("units") {
@@ -110,25 +122,36 @@ fn read(node: &Node, limits: &Limits, faults: &mut Faults) -> Option<Question> {
     };
     // With units unread, the rest is still checked: in SI, so that nothing else is blamed.
     let reading_units = units.unwrap_or_default();
+    let way = way::read(members, &reading_units, deployment, faults);
+    let (sensor, calibrated) = match way.as_ref().and_then(|way| way.sensor) {
+        Some((sensor, calibrated)) => (sensor, calibrated),
+        None => (Sensor::default(), reading_units),
+    };
+    // Raw numbers have no unit of ours: calibrated, they are in that of the catalogue.
+    let mut calibrated_units = reading_units;
+    let mut answer_base = reading_units;
+    for (quantity, channel) in [(Quantity::E, sensor.e), (Quantity::B, sensor.b)] {
+        if channel.is_some() {
+            calibrated_units.set(calibrated.get(quantity));
+            if !names_unit(members, quantity) {
+                answer_base.set(calibrated.get(quantity));
+            }
+        }
+    }
     let answer_units = match members.get("answer_units") {
         Some(node) => {
             let place = root.field("answer_units");
             let choices = [Quantity::E, Quantity::B];
-            chain::units(node, &place, &choices, reading_units, faults)
+            chain::units(node, &place, &choices, answer_base, faults)
         }
-        None => Some(reading_units),
+        None => Some(answer_base),
     };
-    let e = partial("e", members, faults);
-    let b = partial("b", members, faults);
-    let way = way(members, &reading_units, limits, faults).and_then(|steps| {
-        let resolved = Resolved::new(steps);
-        resolved
-            .map_err(|impossible| {
-                let detail = impossible.to_string();
-                faults.note(&root, chain::code(&impossible), detail);
-            })
-            .ok()
-    });
+    let e = partial("e", sensor.e, members, faults);
+    let b = partial("b", sensor.b, members, faults);
+    let assume = match members.get("assume") {
+        Some(node) => assume::read(node, &root.field("assume"), &reading_units, faults).map(Some),
+        None => Some(None),
+    };
     let include = match members.get("include") {
         Some(node) => parts(node, &root.field("include"), faults),
         None => Some(Vec::new()),
@@ -147,53 +170,58 @@ fn read(node: &Node, limits: &Limits, faults: &mut Faults) -> Option<Question> {
     let reading = Reading {
         e: e?,
         b: b?,
-        units: field_units(&units),
+        units: field_units(&calibrated_units),
+        calibration: [sensor.e, sensor.b].map(|channel| channel.map(|c| c.calibration)),
+        e_dot_b_zero: assume?,
     };
+    let way = way?;
     Some(Question {
         reading,
-        way: way?,
+        way: way.resolved,
         units,
         answer_units: answer_units?,
         include: include?,
         signature: signature?,
+        notices: way.notices,
+        catalogue: deployment.frames.as_ref().map(|frames| frames.hash.clone()),
     })
 }
 
-/// E or B. At least one of them must be named; one that is left out is missing, not zero.
-fn partial(name: &str, members: Members, faults: &mut Faults) -> Option<[Option<f64>; 3]> {
-    let place = Place::ROOT.field(name);
-    match members.given(name) {
-        Some(node) => faults.partial_vector(node, &place),
-        None => {
-            if name == "b" && members.given("e").is_none() {
-                let detail = "a reading needs \"e\", \"b\" or both; one left out is missing, \
-                              never zero";
-                faults.note(&Place::ROOT, Code::MissingField, detail);
-            }
-            Some([None; 3])
-        }
+/// Whether `units` names that of a quantity.
+fn names_unit(members: Members, quantity: Quantity) -> bool {
+    match members.get("units").map(Node::plain) {
+        Some(Node::Object(units)) => units.iter().any(|(name, _)| name == quantity.name()),
+        _ => false,
     }
 }
 
-fn way(members: Members, units: &Units, limits: &Limits, faults: &mut Faults) -> Option<Vec<Step>> {
-    let root = Place::ROOT;
-    let inverse = match members.get("inverse") {
-        Some(node) => faults.boolean(node, &root.field("inverse")),
-        None => Some(false),
+/// E or B. At least one of them must be named; one that is left out is missing, not zero. A sensor
+/// has no value on an axis that it does not measure.
+fn partial(
+    name: &str,
+    channel: Option<Channel>,
+    members: Members,
+    faults: &mut Faults,
+) -> Option<[Option<f64>; 3]> {
+    let place = Place::ROOT.field(name);
+    let Some(node) = members.given(name) else {
+        if name == "b" && members.given("e").is_none() {
+            let detail =
+                "a reading needs \"e\", \"b\" or both; one left out is missing, never zero";
+            faults.note(&Place::ROOT, Code::MissingField, detail);
+        }
+        return Some([None; 3]);
     };
-    let (form, node) = faults.exactly_one(members, &root, &WAYS)?;
-    let place = root.field(form);
-    let steps = match form {
-        "steps" => chain::steps(node, &place, units, limits.steps, faults)?,
-        "velocity" => vec![step::boost::velocity(node, &place, units, faults)?],
-        "boost" => vec![step::boost::read(node, &place, units, faults)?],
-        _ => vec![step::rotate::read(node, &place, units, faults)?],
-    };
-    Some(if inverse? {
-        chain::inverse(steps)
-    } else {
-        steps
-    })
+    let values = faults.partial_vector(node, &place)?;
+    let axes = channel.map_or([true; 3], |channel| channel.axes);
+    for i in (0..3).filter(|i| values[*i].is_some() && !axes[*i]) {
+        let detail = format!(
+            "the sensor does not measure {}; leave that component null",
+            ["x", "y", "z"][i]
+        );
+        faults.note(&place.index(i), Code::AxisNotMeasured, detail);
+    }
+    Some(values)
 }
 
 fn parts(node: &Node, place: &Place, faults: &mut Faults) -> Option<Vec<Part>> {

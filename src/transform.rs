@@ -1,15 +1,15 @@
 //! The meeting point: a reading and a resolved way give the same field in the target frame.
 
+use crate::document::Notice;
 use crate::physics::Impossible;
 use crate::physics::double_double::Dd;
 use crate::physics::energy::Energy;
 use crate::physics::field::{FieldUnits, Kernel, Measured};
 use crate::physics::invariants::Invariants;
-use crate::physics::lorentz::Change;
 use crate::physics::parallel::{ParallelFrame, parallel_frame};
 use crate::physics::precise::Resolved;
 use crate::physics::real::{Vec3, round, vector};
-use crate::physics::rotation::Turn;
+use crate::physics::reduction::{Calibration, Reduction};
 
 /// E and B at one event, any component of which may be missing.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -18,17 +18,19 @@ pub struct Reading {
     pub e: [Option<f64>; 3],
     /// B, in units of `units.b`.
     pub b: [Option<f64>; 3],
-    /// What a unit is.
+    /// What a unit is, once calibrated.
     pub units: FieldUnits,
+    /// Calibration of E and of B, for raw numbers of a sensor.
+    pub calibration: [Option<Calibration>; 2],
+    /// Whether a missing component of E may be taken from E·B = 0.
+    pub e_dot_b_zero: Option<EDotBZero>,
 }
 
-/// A remark that a careful colleague would make.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub struct Notice {
-    /// Stable name.
-    pub code: &'static str,
-    /// In words.
-    pub detail: String,
+/// The common practice with two-axis probes: one missing component of E from E·B = 0.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct EDotBZero {
+    /// The least angle in rad of B to the plane of the components measured.
+    pub min_angle: f64,
 }
 
 /// A reading restated in the target frame.
@@ -51,20 +53,16 @@ pub struct Transformed {
 /// Restates a reading; the answer is in the units `to`.
 ///
 /// # Errors
-/// A component of the answer is larger than the largest double.
+/// A component of the answer is larger than the largest double, or E·B = 0 was to be used with B
+/// too close to the measured plane.
 pub fn transform(
     way: &Resolved,
     reading: &Reading,
     to: FieldUnits,
 ) -> Result<Transformed, Impossible> {
-    let filled = |v: [Option<f64>; 3]| v.map(|x| x.unwrap_or(0.0));
-    let question = Measured {
-        e: filled(reading.e),
-        b: filled(reading.b),
-        units: reading.units,
-    };
-    let applied = way.apply(&question, to)?;
     let mut notices = Vec::new();
+    let (question, given) = reduce(reading, &mut notices)?;
+    let applied = way.apply(&question, to)?;
     note_mended_rotations(way, &mut notices);
     for (name, bits) in [
         ("e", applied.cancelled_bits[0]),
@@ -72,19 +70,11 @@ pub fn transform(
     ] {
         note_cancellation(name, bits, &mut notices);
     }
-    let known = known_components(way, reading);
-    let complete = known == [[true; 3]; 2]
-        && [reading.e, reading.b]
-            .as_flattened()
-            .iter()
-            .all(Option::is_some);
+    let known = known_components(way, reading.units, given);
+    let complete = given == [[true; 3]; 2];
     let hide = |v: [f64; 3], known: [bool; 3]| std::array::from_fn(|i| known[i].then_some(v[i]));
     let invariants = complete.then(|| {
-        let answer = Measured {
-            e: applied.e,
-            b: applied.b,
-            units: to,
-        };
+        let answer = Measured::new(applied.e, applied.b, to);
         Invariants::of(&question, &answer)
     });
     if !complete {
@@ -137,19 +127,68 @@ impl Transformed {
     }
 }
 
-/// Which components of E' and B' do not depend on a missing one.
-fn known_components(way: &Resolved, reading: &Reading) -> [[bool; 3]; 2] {
-    let mut known = [[true; 3]; 2];
-    if [reading.e, reading.b]
-        .as_flattened()
-        .iter()
-        .all(Option::is_some)
+/// The reading as a whole field, and which of its components are known; zeros stand for the others.
+///
+/// # Errors
+/// B is too close to the plane of the measured components for E·B = 0 to give the third.
+fn reduce(
+    reading: &Reading,
+    notices: &mut Vec<Notice>,
+) -> Result<(Measured, [[bool; 3]; 2]), Impossible> {
+    let raw = [reading.e, reading.b];
+    let [e, b] = raw.map(|v| v.map(|x| x.unwrap_or(0.0)));
+    let mut known: [[bool; 3]; 2] = std::array::from_fn(|which| {
+        let given = raw[which].map(|x| x.is_some());
+        reading.calibration[which].map_or(given, |calibration| calibration.known(given))
+    });
+    let [calibration_e, calibration_b] = reading.calibration;
+    let mut measured = Measured {
+        e,
+        b,
+        units: reading.units,
+        reduction: Reduction {
+            e: calibration_e,
+            b: calibration_b,
+            filled: None,
+        },
+    };
+    let missing: Vec<usize> = (0..3).filter(|i| !known[0][*i]).collect();
+    if let (Some(assumed), [i], [true, true, true]) = (reading.e_dot_b_zero, &missing[..], known[1])
     {
+        let [_, b] = measured.vectors::<Dd>(());
+        let b = round(&b);
+        let (j, k) = ((i + 1) % 3, (i + 2) % 3);
+        let angle = libm::atan2(b[*i].abs(), libm::hypot(b[j], b[k]));
+        if angle < assumed.min_angle {
+            return Err(Impossible::FieldInPlane {
+                degrees: angle.to_degrees(),
+                limit: assumed.min_angle.to_degrees(),
+            });
+        }
+        measured.reduction.filled = Some(*i);
+        known[0] = [true; 3];
+        notices.push(Notice {
+            code: "e_dot_b_assumed",
+            detail: format!(
+                "component {} of E was not measured and is taken from E.B = 0; B stands {:.1} \
+                 degrees out of the plane of the other two",
+                ["x", "y", "z"][*i],
+                angle.to_degrees()
+            ),
+        });
+    }
+    Ok((measured, known))
+}
+
+/// Which components of E' and B' do not depend on an unknown one.
+fn known_components(way: &Resolved, units: FieldUnits, given: [[bool; 3]; 2]) -> [[bool; 3]; 2] {
+    let mut known = [[true; 3]; 2];
+    if given == known {
         return known;
     }
-    let kernel = Kernel::new(way.net(), reading.units, ());
-    for (which, v) in [reading.e, reading.b].iter().enumerate() {
-        for i in (0..3).filter(|i| v[*i].is_none()) {
+    let kernel = Kernel::new(way.net(), units, ());
+    for (which, given) in given.iter().enumerate() {
+        for i in (0..3).filter(|i| !given[*i]) {
             let mut unit = [[0.0; 3]; 2];
             unit[which][i] = 1.0;
             let (e, b) = kernel.apply(&vector(unit[0], ()), &vector(unit[1], ()));
@@ -174,14 +213,7 @@ const STRONG_E: f64 = 3e6;
 const STRONG_B: f64 = 5e-4;
 
 fn note_mended_rotations(way: &Resolved, notices: &mut Vec<Notice>) {
-    let departure = way
-        .steps()
-        .iter()
-        .filter_map(|step| match &step.change {
-            Change::Rotate(turn @ (Turn::Quaternion(_) | Turn::Matrix(_))) => turn.check().ok(),
-            _ => None,
-        })
-        .fold(0.0, f64::max);
+    let departure = way.mended();
     if departure > WORTH_SAYING {
         let detail = format!(
             "a quaternion or matrix was off by {departure:.1e} and was taken to the nearest \
@@ -214,9 +246,10 @@ fn note_cancellation(name: &str, bits: f64, notices: &mut Vec<Notice>) {
 }
 
 fn note_strength(question: &Measured, notices: &mut Vec<Notice>) {
-    let largest = |v: [f64; 3]| v.iter().fold(0.0f64, |m, x| m.max(x.abs()));
-    let e = largest(question.e) * question.units.e.to_f64();
-    let b = largest(question.b) * question.units.b.to_f64();
+    let largest = |v: &Vec3<Dd>| v.iter().fold(0.0f64, |m, x| m.max(x.hi.abs()));
+    let [e, b] = question.vectors::<Dd>(());
+    let e = largest(&e) * question.units.e.to_f64();
+    let b = largest(&b) * question.units.b.to_f64();
     if e >= STRONG_E || b >= STRONG_B {
         let detail = "the reading is strong enough that the usual care is due (3 MV/m: air may \
                       break down; 0.5 mT: implants may be disturbed); follow local codes and \

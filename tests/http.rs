@@ -137,7 +137,7 @@ async fn only_named_origins_may_ask_from_a_browser() {
         cors_origins: vec!["https://lab.example".to_owned()],
         ..Config::default()
     };
-    let app = app(AppState::new(config));
+    let app = app(AppState::new(config, None));
     let ask = |origin: &str| {
         let request = Request::get("/health/live").header("origin", origin);
         send(app.clone(), request.body(Body::empty()).expect("a request"))

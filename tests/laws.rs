@@ -18,11 +18,7 @@ fn vector(size: f64) -> impl Strategy<Value = [f64; 3]> {
 
 fn reading() -> impl Strategy<Value = Measured> {
     // E and cB of like size, so that both parts of each formula count.
-    (vector(1e3), vector(1e3 / C)).prop_map(|(e, b)| Measured {
-        e,
-        b,
-        units: FieldUnits::SI,
-    })
+    (vector(1e3), vector(1e3 / C)).prop_map(|(e, b)| Measured::new(e, b, FieldUnits::SI))
 }
 
 fn boost(value: [f64; 3]) -> Step {
@@ -67,11 +63,7 @@ fn resolved(steps: Vec<Step>) -> Resolved {
 
 fn go(way: &Resolved, reading: &Measured) -> Measured {
     let applied = way.apply(reading, reading.units).expect("no overflow");
-    Measured {
-        e: applied.e,
-        b: applied.b,
-        units: reading.units,
-    }
+    Measured::new(applied.e, applied.b, reading.units)
 }
 
 fn length(v: [f64; 3]) -> f64 {
@@ -131,7 +123,7 @@ proptest! {
         let direct = go(&way, &reading);
         let tensor = FieldTensor::new(reading.e.map(|x| x / C), reading.b, Signature::MostlyMinus);
         let (e, b) = tensor.transformed(&way.matrix()).electric_and_magnetic();
-        let by_tensor = Measured { e, b, units: FieldUnits::SI };
+        let by_tensor = Measured::new(e, b, FieldUnits::SI);
         let bound = 32.0 * f64::EPSILON * stretch(&way).powi(2) * size(&reading);
         prop_assert!(distance(&direct, &by_tensor) <= bound);
     }
@@ -160,11 +152,11 @@ proptest! {
             [a[1] * b[2] - a[2] * b[1], a[2] * b[0] - a[0] * b[2], a[0] * b[1] - a[1] * b[0]]
         };
         let (vb, ve) = (cross(v, reading.b), cross(v, reading.e));
-        let first_order = Measured {
-            e: std::array::from_fn(|i| reading.e[i] + vb[i]),
-            b: std::array::from_fn(|i| reading.b[i] - ve[i] / C / C),
-            units: FieldUnits::SI,
-        };
+        let first_order = Measured::new(
+            std::array::from_fn(|i| reading.e[i] + vb[i]),
+            std::array::from_fn(|i| reading.b[i] - ve[i] / C / C),
+            FieldUnits::SI,
+        );
         let second = (length(v) / C).powi(2) + 4.0 * f64::EPSILON;
         prop_assert!(distance(&answer, &first_order) <= second * size(&reading));
     }

@@ -2,7 +2,9 @@
 //! named after what it tests.
 
 mod arithmetic;
+mod frames;
 mod http;
+mod incomplete;
 mod laws;
 mod layering;
 mod middleware;
@@ -11,3 +13,4 @@ mod problems;
 mod schema;
 mod start;
 mod support;
+mod times;

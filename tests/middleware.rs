@@ -48,7 +48,7 @@ async fn kept(headers: HeaderMap) -> Result<Response, Problem> {
 }
 
 fn service(config: Config) -> Router {
-    let state = AppState::new(config);
+    let state = AppState::new(config, None);
     Router::new()
         .route("/panic", get(panics))
         .route("/never", get(std::future::pending::<Response>))

@@ -99,7 +99,7 @@ mod faults {
     /// The answer to a question with these faults.
     async fn answer(faults: Vec<Fault>, source: Source) -> Answer {
         let handler = async move || Problem::from_faults(faults.clone(), source).into_response();
-        let observe = Observe(AppState::new(Config::default()));
+        let observe = Observe(AppState::new(Config::default(), None));
         let app = Router::new().route("/", get(handler)).layer(observe);
         send(
             app,

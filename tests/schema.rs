@@ -1,8 +1,13 @@
 //! The types that describe a question and the reader that understands it name the same members.
 
 use lodeframe::document::{Code, Node};
-use lodeframe::question::{Limits, Question};
+use lodeframe::question::{Deployment, Question};
 use serde_json::{Value, json};
+
+const DEPLOYMENT: Deployment = Deployment {
+    steps: 10,
+    frames: None,
+};
 
 fn document() -> Value {
     serde_json::from_str(&lodeframe::http::openapi::text()).expect("the document is JSON")
@@ -26,7 +31,7 @@ fn described(schema: &str) -> Vec<String> {
 fn understood(question: Value) -> Vec<String> {
     let text = question.to_string();
     let node = Node::from_json(text.as_bytes()).expect("well-formed");
-    let faults = Question::read(&node, &Limits { steps: 10 }).expect_err("a slip");
+    let faults = Question::read(&node, &DEPLOYMENT).expect_err("a slip");
     let fault = faults
         .iter()
         .find(|fault| fault.code == Code::UnknownField)
@@ -45,6 +50,8 @@ fn schema_and_reader_know_the_same_members() {
         ("Question", slip.clone()),
         ("Units", json!({"units": slip})),
         ("UnitsOfAnswer", json!({"answer_units": slip})),
+        ("Assume", json!({"assume": slip})),
+        ("EDotBZero", json!({"assume": {"e_dot_b_zero": slip}})),
         ("Boost", json!({"boost": slip})),
         ("Rotate", json!({"rotation": slip})),
         (
@@ -80,11 +87,7 @@ fn every_unit_of_the_table_is_described_and_understood() {
             })
             .to_string();
             let node = Node::from_json(text.as_bytes()).expect("well-formed");
-            assert!(
-                Question::read(&node, &Limits { steps: 10 }).is_ok(),
-                "{}",
-                unit.code
-            );
+            assert!(Question::read(&node, &DEPLOYMENT).is_ok(), "{}", unit.code);
         }
     }
 }

@@ -1,12 +1,14 @@
 //! How the tests ask the service.
 
+use std::path::Path;
+
 use axum::{
     Router,
     body::Body,
     http::{HeaderMap, Request, StatusCode},
 };
 use http_body_util::BodyExt;
-use lodeframe::{AppState, app, config::Config};
+use lodeframe::{AppState, app, config::Config, frames};
 use serde_json::Value;
 use tower::ServiceExt;
 
@@ -52,9 +54,11 @@ impl Answer {
     }
 }
 
-/// The service with its default settings.
+/// The service with its default settings and the demonstration's catalogue.
 pub(crate) fn service() -> Router {
-    app(AppState::new(Config::default()))
+    let file = concat!(env!("CARGO_MANIFEST_DIR"), "/deploy/demo/frames.toml");
+    let catalogue = frames::load(Path::new(file)).expect("the demonstration is right");
+    app(AppState::new(Config::default(), Some(catalogue)))
 }
 
 /// Sends a request to a router of its own.

@@ -35,11 +35,7 @@ pub fn steps(
 
 /// The steps that undo these.
 pub fn inverse(steps: Vec<Step>) -> Vec<Step> {
-    let undo = |step: Step| Step {
-        inverse: !step.inverse,
-        ..step
-    };
-    steps.into_iter().rev().map(undo).collect()
+    steps.into_iter().rev().map(Step::undone).collect()
 }
 
 /// The problem code of what physics refuses.
@@ -53,5 +49,6 @@ pub fn code(impossible: &Impossible) -> Code {
         Impossible::GammaOverflow { .. } | Impossible::PrecisionExhausted { .. } => {
             Code::PrecisionExhausted
         }
+        Impossible::FieldInPlane { .. } => Code::FieldInPlane,
     }
 }

@@ -71,15 +71,63 @@ codes! {
     NotARotation "not_a_rotation" 422 "Not a rotation",
         "A quaternion is not of length 1, or a matrix is not orthogonal with determinant +1, by more than the rounding of six decimals.",
         "Give more digits; check that rows and columns are not mixed up and that no axis is mirrored.";
+    AngleOutOfRange "angle_out_of_range" 422 "An angle out of its range",
+        "The angle makes no sense where it stands.",
+        "Give one in the range that the detail names, in units.angle (rad when left out).";
     NotACovariance "not_a_covariance" 422 "Not a covariance matrix",
         "A covariance matrix is symmetric and positive semi-definite.",
         "Check signs and the order of components: ex ey ez bx by bz.";
     NegativeUncertainty "negative_uncertainty" 422 "A negative uncertainty",
         "A standard uncertainty is zero or positive.",
         "Give the standard deviation itself.";
+    WrongTime "wrong_time" 400 "Not a time of this catalogue",
+        "A catalogue of frames writes its times as RFC 3339 throughout, or as seconds from its epoch throughout.",
+        "GET /v1/frames says which. RFC 3339 looks like 2031-03-02T05:10:00.25Z; the fraction may have any number of digits.";
     UnknownFrame "unknown_frame" 422 "A frame that is not in the catalogue",
         "The name is not among the frames this service was started with.",
         "GET /v1/frames lists them.";
+    TimeNeeded "time_needed" 422 "A way that changes with time",
+        "A frame between the two named ones moves along a track or turns, so that the way is known only for a given time.",
+        "Add time, in the notation of the catalogue.";
+    TimeOutsideTrack "time_outside_track" 422 "A time outside the track",
+        "The time is before the first or after the last row of a track on the way, and the frame does not allow its motion to be extrapolated.",
+        "Ask for a time between those that the detail names.";
+    AxisNotMeasured "axis_not_measured" 422 "A component that the sensor does not have",
+        "The catalogue declares the sensor with one or two axes, and the reading has a value on another one.",
+        "Leave that component null. assume.e_dot_b_zero can fill one missing component of E.";
+    FieldInPlane "field_in_plane" 422 "B too close to the measured plane",
+        "E·B = 0 gives the missing component of E from the two measured ones only where B stands well out of their plane: near it, a small error becomes a large one.",
+        "Choose readings whose B is farther from the plane, or a smaller min_angle if the uncertainty may grow so much.";
+    UnknownParent "unknown_parent" 422 "A parent that is not in the catalogue",
+        "A frame of the catalogue names a parent that the file does not describe. The service does not start.",
+        "Compare the spelling with the names of the frames.";
+    FrameCycle "frame_cycle" 422 "Frames that hang from each other",
+        "Following parents leads back to the same frame, so that nothing says where these frames are. The service does not start.",
+        "Give one of the frames in the circle another parent.";
+    SeveralRoots "several_roots" 422 "Trees that never meet",
+        "More than one frame of the catalogue has no parent, so that no way leads from one tree to the other. The service does not start.",
+        "Leave one frame without a parent and hang the others from it or from its children.";
+    SensorNotLeaf "sensor_not_leaf" 422 "A frame hung from a sensor",
+        "Sensors are leaves of the tree of frames. The service does not start.",
+        "Hang the frame and the sensor from the same parent.";
+    SingularMatrix "singular_matrix" 422 "A matrix without an inverse",
+        "The matrix of a sensor maps different fields to the same numbers. The service does not start.",
+        "Check for a row or column that is zero or a multiple of another.";
+    UnsortedTimes "unsorted_times" 422 "Times out of order",
+        "The rows of a track are not in the order of their times. The service does not start.",
+        "Sort the rows.";
+    RepeatedTime "repeated_time" 422 "A time given twice",
+        "Two rows of a track have the same time. The service does not start.",
+        "Leave out one of them.";
+    GapTooLong "gap_too_long" 422 "A gap in a track",
+        "Neighbouring rows of a track are farther apart than max_gap allows. The service does not start.",
+        "Fill the gap, or allow a longer one.";
+    AttitudeJump "attitude_jump" 422 "Attitudes too far apart",
+        "Neighbouring attitudes of a track are more than 90 degrees apart, so that the way between them is a guess. The service does not start.",
+        "Give more rows, or describe a steady spin by turning.";
+    UnreadableFile "unreadable_file" 422 "A file that cannot be read",
+        "The catalogue or a track it names is missing or cannot be read. The service does not start.",
+        "Check the path, which is relative to the catalogue, and the right to read it.";
     UnknownCode "unknown_code" 404 "No such problem",
         "There is no problem with this code.",
         "GET /problems lists all of them.";

@@ -184,6 +184,19 @@ impl Faults {
         Some(Members(members))
     }
 
+    /// The members of an object that may have any names.
+    pub fn any_members<'n, 'a>(
+        &mut self,
+        node: &'n Node<'a>,
+        place: &Place,
+        expected: &str,
+    ) -> Option<Members<'n, 'a>> {
+        match node.plain() {
+            Node::Object(members) => Some(Members(members)),
+            _ => self.wrong_type(node, place, expected),
+        }
+    }
+
     /// The only one of `names` that is present.
     pub fn exactly_one<'n, 'a>(
         &mut self,

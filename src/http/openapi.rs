@@ -17,6 +17,7 @@ use super::{router, schema::examples};
     servers((url = "/", description = "The service that this document came from")),
     tags(
         (name = "fields", description = "Fields restated in another frame"),
+        (name = "frames", description = "Named frames and the transformations between them"),
         (name = "tables", description = "Units and constants"),
         (name = "service", description = "The page, the reference and the state of the service"),
         (name = "problems", description = "What each problem means and how to mend it"),

@@ -6,8 +6,8 @@ use utoipa::{IntoParams, ToSchema};
 
 /// A reading, the way to the target frame, and what the answer should hold.
 ///
-/// Exactly one of `steps`, `velocity`, `boost` and `rotation` names the way, and at least one of
-/// `e` and `b` is given. Unknown and repeated names are refused. A null or left-out number is
+/// Exactly one of `steps`, `velocity`, `boost`, `rotation` and `from` (with `to`) names the way,
+/// and at least one of `e` and `b` is given. Unknown and repeated names are refused. A null or left-out number is
 /// missing, never zero.
 #[derive(Clone, Debug, Default, Serialize, Deserialize, ToSchema)]
 #[schema(as = Question, example = json!(examples::orbiting_probe()))]
@@ -40,15 +40,57 @@ pub struct Question {
     /// The way as one rotation.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub rotation: Option<Rotate>,
+    /// The way by names of the catalogue (`GET /v1/frames`): the frame of the reading. From a sensor, `e` and `b` are its raw numbers.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub from: Option<String>,
+    /// The target frame, with `from`.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub to: Option<String>,
+    /// When the reading was taken, where the way from `from` to `to` changes with time: RFC 3339, or seconds from the epoch of the catalogue.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub time: Option<Time>,
     /// Take the whole way backwards.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub inverse: Option<bool>,
+    /// What may be assumed about what was not measured.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub assume: Option<Assume>,
     /// Further parts of the answer.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub include: Option<Vec<Part>>,
     /// Convention of the tensor; `mostly_minus` where left out.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub signature: Option<Signature>,
+}
+
+/// A time in the notation of the catalogue.
+#[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[serde(untagged)]
+pub enum Time {
+    /// RFC 3339, with any number of digits after the seconds.
+    #[schema(example = "2031-03-02T05:10:00.25Z")]
+    Calendar(String),
+    /// Seconds from the epoch of the catalogue.
+    Seconds(f64),
+}
+
+/// What may be assumed about what was not measured.
+#[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[serde(deny_unknown_fields)]
+pub struct Assume {
+    /// E·B = 0 gives one missing component of E, the common practice with two-axis probes.
+    pub e_dot_b_zero: EDotBZero,
+}
+
+/// How far E·B = 0 may be trusted.
+#[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[schema(example = json!({"min_angle": 15.0}))]
+#[serde(deny_unknown_fields)]
+pub struct EDotBZero {
+    /// The least angle of B to the plane of the measured components, in `units.angle`; 15 degrees when left out.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    #[schema(exclusive_minimum = 0)]
+    pub min_angle: Option<f64>,
 }
 
 /// A part of the answer given on request.
@@ -310,6 +352,18 @@ pub struct Query {
     /// The Lorentz factor of that boost.
     #[param(required = false, rename = "boost.gamma")]
     boost_gamma: String,
+    /// The way by names of the catalogue: the frame of the reading.
+    #[param(required = false)]
+    from: String,
+    /// The target frame, with `from`.
+    #[param(required = false)]
+    to: String,
+    /// When the reading was taken: RFC 3339 (a `+` is written %2B), or seconds from the epoch of the catalogue.
+    #[param(required = false)]
+    time: String,
+    /// Fill a missing component of E from E·B = 0; the least angle of B to the measured plane.
+    #[param(required = false, rename = "assume.e_dot_b_zero.min_angle")]
+    assume_e_dot_b_zero_min_angle: String,
     /// Take the whole way backwards.
     #[param(required = false)]
     inverse: String,
@@ -334,7 +388,7 @@ pub mod examples {
     use crate::{
         answer::Answer,
         document::Node,
-        question::{Limits, Question},
+        question::{Deployment, Question},
     };
 
     /// A probe pair on a satellite, restated for an observer at rest below it.
@@ -386,7 +440,11 @@ pub mod examples {
     pub fn answer_to(question: Value) -> Answer {
         let text = question.to_string();
         let node = Node::from_json(text.as_bytes()).expect("an example is JSON");
-        let question = Question::read(&node, &Limits { steps: 10 }).expect("an example is right");
+        let deployment = Deployment {
+            steps: 10,
+            frames: None,
+        };
+        let question = Question::read(&node, &deployment).expect("an example is right");
         Answer::to(&question).expect("an example has an answer")
     }
 }

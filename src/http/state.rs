@@ -5,7 +5,7 @@ use std::sync::Arc;
 use bytes::Bytes;
 
 use super::{metrics::Metrics, openapi};
-use crate::config::Config;
+use crate::{config::Config, frames::Catalogue, question::Deployment};
 
 /// What all requests share; a clone is one more handle to the same.
 #[derive(Clone)]
@@ -15,6 +15,8 @@ pub struct AppState(Arc<Shared>);
 pub struct Shared {
     /// The settings the service was started with.
     pub config: Config,
+    /// What questions may ask for.
+    pub deployment: Deployment,
     /// What is counted.
     pub metrics: Metrics,
     /// The OpenAPI document, as served.
@@ -23,8 +25,12 @@ pub struct Shared {
 
 impl AppState {
     /// Prepares everything that is made once and never changes.
-    pub fn new(config: Config) -> AppState {
+    pub fn new(config: Config, frames: Option<Catalogue>) -> AppState {
         AppState(Arc::new(Shared {
+            deployment: Deployment {
+                steps: config.max_steps,
+                frames: frames.map(Arc::new),
+            },
             config,
             metrics: Metrics::new(),
             openapi: openapi::text().into(),

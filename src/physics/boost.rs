@@ -9,7 +9,7 @@ use super::big::Big;
 use super::constants::SPEED_OF_LIGHT;
 use super::double_double::Dd;
 use super::error::Impossible;
-use super::real::{Real, Vec3, cross, exponent_spread, norm2, scale, vector};
+use super::real::{Real, Vec3, cross, exponent_spread, norm2, round, scale, vector};
 use super::scale::Scale;
 
 /// The motion of the next frame as seen in the current one, in the form it was given.
@@ -213,11 +213,25 @@ impl Motion {
 
     /// log2 of γ(1+β), or a little more.
     pub fn growth(&self) -> f64 {
-        if self.fits_dd() {
-            let gamma = self.boost::<Dd>(()).gamma.hi;
-            return libm::log2(gamma + ((gamma - 1.0) * (gamma + 1.0)).sqrt());
+        if !self.fits_dd() {
+            return self.boost::<Big>(GROWTH_BITS).gamma.exponent().unwrap_or(0) as f64 + 2.0;
         }
-        self.boost::<Big>(GROWTH_BITS).gamma.exponent().unwrap_or(0) as f64 + 2.0
+        let of_gamma = |less_one: f64| less_one + 1.0 + (less_one * (less_one + 2.0)).sqrt();
+        match self {
+            Motion::Velocity { .. } | Motion::Turning { .. } => {
+                let v = round(&self.velocity::<Dd>(()));
+                let beta = libm::hypot(libm::hypot(v[0], v[1]), v[2]) * self.beta().to_f64();
+                0.5 * libm::log2((1.0 + beta) / (1.0 - beta))
+            }
+            Motion::Gamma { gamma, .. } => libm::log2(of_gamma(gamma - 1.0)),
+            Motion::Rapidity { rapidity, .. } => rapidity.abs() * std::f64::consts::LOG2_E,
+            Motion::KineticEnergy {
+                energy,
+                rest,
+                ratio,
+                ..
+            } => libm::log2(of_gamma(energy / rest * ratio.to_f64())),
+        }
     }
 
     /// About how many bits below one the smallest component of β, or of the direction and

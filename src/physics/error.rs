@@ -80,4 +80,15 @@ pub enum Impossible {
         /// The largest accepted.
         limit: f64,
     },
+    /// B too close to the plane of the measured components of E.
+    #[error(
+        "B is {degrees:.2} degrees from the plane of the measured components of E, and min_angle \
+         is {limit} degrees: there E.B = 0 says too little about the missing one"
+    )]
+    FieldInPlane {
+        /// Angle of B to the plane in degrees; zero without B.
+        degrees: f64,
+        /// The least angle allowed.
+        limit: f64,
+    },
 }

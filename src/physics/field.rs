@@ -3,17 +3,20 @@
 use super::constants::SPEED_OF_LIGHT;
 use super::lorentz::Net;
 use super::real::{Real, Vec3, add, cross, dot, scale, vector};
+use super::reduction::Reduction;
 use super::scale::Scale;
 
 /// Electric and magnetic field of one event as doubles, with the exact scale of their units.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Measured {
-    /// E, in units of `units.e`.
+    /// E as read; once reduced, in units of `units.e`.
     pub e: [f64; 3],
-    /// B, in units of `units.b`.
+    /// B as read; once reduced, in units of `units.b`.
     pub b: [f64; 3],
     /// What a unit is.
     pub units: FieldUnits,
+    /// How E and B follow from what was read.
+    pub reduction: Reduction,
 }
 
 /// The units of E in V/m and of B in T.
@@ -48,6 +51,29 @@ pub struct Field<R> {
 }
 
 impl Measured {
+    /// E and B that need no reduction.
+    pub fn new(e: [f64; 3], b: [f64; 3], units: FieldUnits) -> Measured {
+        Measured {
+            e,
+            b,
+            units,
+            reduction: Reduction::default(),
+        }
+    }
+
+    /// E and B in their own units.
+    pub fn vectors<R: Real>(&self, context: R::Context) -> [Vec3<R>; 2] {
+        if self.reduction.is_none() {
+            return [vector(self.e, context), vector(self.b, context)];
+        }
+        self.reduction.apply([self.e, self.b], context)
+    }
+
+    /// The size of what is summed for each component of E and B, in their own units.
+    pub fn magnitudes(&self) -> [[f64; 3]; 2] {
+        self.reduction.magnitudes([self.e, self.b])
+    }
+
     /// E and cB in V/m divided by 2ⁿ.
     pub fn field<R: Real>(&self, n: i32, context: R::Context) -> Field<R> {
         let e = self.units.e.value::<R>(context);
@@ -57,11 +83,11 @@ impl Measured {
         }
         .cb_over_e()
         .value::<R>(context);
-        let part =
-            |x: [f64; 3], unit: &R| vector::<R>(x, context).map(|x| x.scale2(-n) * unit.clone());
+        let part = |x: Vec3<R>, unit: &R| x.map(|x| x.scale2(-n) * unit.clone());
+        let [e_own, b_own] = self.vectors::<R>(context);
         Field {
-            e: part(self.e, &e),
-            cb: part(self.b, &cb),
+            e: part(e_own, &e),
+            cb: part(b_own, &cb),
         }
     }
 
@@ -73,10 +99,11 @@ impl Measured {
         }
         .cb_over_e();
         let part = |x: &[f64; 3], unit: Scale| {
-            let largest = x.iter().fold(0.0f64, |m, x| m.max(x.abs()));
+            let largest = x.iter().fold(0.0f64, |m, x| m.max(*x));
             (largest > 0.0).then(|| libm::ilogb(largest) + libm::ilogb(unit.to_f64()))
         };
-        part(&self.e, self.units.e).max(part(&self.b, cb))
+        let [e_size, b_size] = self.magnitudes();
+        part(&e_size, self.units.e).max(part(&b_size, cb))
     }
 }
 

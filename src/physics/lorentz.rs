@@ -21,6 +21,16 @@ pub struct Step {
     pub inverse: bool,
 }
 
+impl Step {
+    /// The step taken the other way.
+    pub fn undone(self) -> Step {
+        Step {
+            inverse: !self.inverse,
+            ..self
+        }
+    }
+}
+
 /// What a step changes: the state of motion or the axes.
 #[derive(Clone, Debug, PartialEq)]
 pub enum Change {
@@ -31,27 +41,6 @@ pub enum Change {
 }
 
 impl Change {
-    /// Whether it changes the state of motion.
-    pub fn moves(&self) -> bool {
-        matches!(self, Change::Boost(_))
-    }
-
-    /// Whether two doubles hold the step to full precision.
-    pub fn fits_dd(&self) -> bool {
-        match self {
-            Change::Boost(motion) => motion.fits_dd(),
-            Change::Rotate(turn) => turn.fits_dd(),
-        }
-    }
-
-    /// log2 of γ(1+β), by which the step can multiply a field, or a little more.
-    pub fn growth(&self) -> f64 {
-        match self {
-            Change::Boost(motion) => motion.growth(),
-            Change::Rotate(_) => 0.0,
-        }
-    }
-
     /// About how many bits below one the smallest number of the step lies.
     pub fn depth(&self) -> i64 {
         match self {
@@ -83,7 +72,7 @@ impl Net<Dd> {
 
 impl<R: Real> Net<R> {
     /// Composes steps that passed their checks.
-    pub fn of(steps: &[Step], context: R::Context) -> Net<R> {
+    pub fn of<'s>(steps: impl IntoIterator<Item = &'s Step>, context: R::Context) -> Net<R> {
         let mut net = Net {
             boost: None,
             turn: None,
@@ -102,6 +91,21 @@ impl<R: Real> Net<R> {
             };
         }
         net
+    }
+
+    /// This transformation, then another.
+    pub fn then(self, next: &Net<R>) -> Net<R> {
+        if self.boost.is_none() && self.turn.is_none() {
+            return next.clone();
+        }
+        let moved = match &next.boost {
+            Some(boost) => self.then_boost(boost.clone()),
+            None => self,
+        };
+        match &next.turn {
+            Some(turn) => moved.then_turn(turn.clone()),
+            None => moved,
+        }
     }
 
     fn then_turn(self, turn: Quaternion<R>) -> Net<R> {

@@ -12,6 +12,7 @@ pub mod lorentz;
 pub mod parallel;
 pub mod precise;
 pub mod real;
+pub mod reduction;
 pub mod rotation;
 pub mod scale;
 pub mod tensor;

@@ -4,13 +4,15 @@
 //! not smaller than 2⁻⁴⁰ of that. Where it is, or where an exponent leaves their range, the way
 //! and the reading are computed again with as many bits as it takes.
 
+use std::sync::Arc;
+
 use nalgebra::Matrix4;
 
 use super::big::Big;
 use super::double_double::Dd;
 use super::error::Impossible;
 use super::field::{FieldUnits, Kernel, Measured};
-use super::lorentz::{Net, Step};
+use super::lorentz::{Change, Net, Step};
 use super::real::{Real, Vec3, cross, exponent_spread, round, vector};
 use super::scale::Scale;
 
@@ -30,14 +32,29 @@ const DD_GAMMA: f64 = 1e60;
 /// A way whose net transformation is known, ready for any number of readings.
 #[derive(Clone, Debug)]
 pub struct Resolved {
-    steps: Vec<Step>,
+    /// The steps, in pieces that ways share.
+    steps: Vec<Arc<[Step]>>,
+    tally: Tally,
     net: Net<Dd>,
-    /// log2 Π γ(1+β) over the steps.
-    growth: f64,
     /// By how much the error of the net transformation exceeds that of one step.
     slack: f64,
     /// Whether two doubles have room for products of the net γ.
     fits_dd: bool,
+}
+
+/// What counts when steps are composed.
+#[derive(Clone, Copy, Debug)]
+struct Tally {
+    /// How many steps move.
+    moving: u32,
+    /// log2 Π γ(1+β) over the steps.
+    growth: f64,
+    /// Whether two doubles hold every step.
+    fits: bool,
+    /// By how much the error of the worst turn exceeds that of two doubles.
+    turned: f64,
+    /// The largest departure of a quaternion or matrix that was mended.
+    mended: f64,
 }
 
 /// A transformed field.
@@ -61,48 +78,68 @@ impl Resolved {
     /// The speeds of the steps multiply up beyond the precision kept, or the net γ is larger
     /// than a double can hold.
     pub fn new(steps: Vec<Step>) -> Result<Resolved, Impossible> {
-        let fits = steps.iter().all(|step| step.change.fits_dd());
-        let moving = steps.iter().filter(|step| step.change.moves()).count();
-        if fits && moving < 2 {
-            // By far the most usual way: nothing to lose in composing it.
-            let net = Net::of(&steps, ());
-            let growth = libm::log2(2.0 * gamma(&net));
-            return Ok(Resolved {
-                fits_dd: gamma(&net) < DD_GAMMA,
-                steps,
-                net,
-                growth,
-                slack: 1.0,
-            });
-        }
-        let growth = steps.iter().map(|step| step.change.growth()).sum();
+        let tally = steps.iter().map(Tally::of).fold(Tally::NOTHING, Tally::and);
+        let steps: Arc<[Step]> = steps.into();
+        Resolved::compose(vec![steps.clone()], tally, || Net::of(&*steps, ()))
+    }
+
+    /// Joins ways, one after the other, without resolving any of them again.
+    ///
+    /// # Errors
+    /// As for [`new`](Self::new).
+    pub fn join<'r>(
+        parts: impl IntoIterator<Item = &'r Resolved> + Clone,
+    ) -> Result<Resolved, Impossible> {
+        let all = || parts.clone().into_iter();
+        let steps = all().flat_map(|part| part.steps.iter().cloned()).collect();
+        let tally = all()
+            .map(|part| part.tally)
+            .fold(Tally::NOTHING, Tally::and);
+        Resolved::compose(steps, tally, || {
+            all().fold(Net::IDENTITY, |net, part| net.then(&part.net))
+        })
+    }
+
+    fn compose(
+        steps: Vec<Arc<[Step]>>,
+        tally: Tally,
+        in_dd: impl FnOnce() -> Net<Dd>,
+    ) -> Result<Resolved, Impossible> {
+        let Tally { moving, growth, .. } = tally;
         if growth > MAX_GROWTH {
             return Err(Impossible::PrecisionExhausted {
                 growth,
                 limit: MAX_GROWTH,
             });
         }
-        let mut slack = 1.0;
-        let net = if fits && growth <= DD_GROWTH {
-            let net = Net::of(&steps, ());
-            let lost = growth - libm::log2(2.0 * gamma(&net));
-            slack = moving as f64 * libm::exp2(lost.max(0.0) / 2.0);
-            net
+        let mut resolved = Resolved {
+            steps,
+            tally,
+            net: Net::IDENTITY,
+            slack: tally.turned,
+            fits_dd: true,
+        };
+        if tally.fits && (moving < 2 || growth <= DD_GROWTH) {
+            resolved.net = in_dd();
+            if moving > 1 {
+                let lost = growth - libm::log2(2.0 * gamma(&resolved.net));
+                resolved.slack *= f64::from(moving) * libm::exp2(lost.max(0.0) / 2.0);
+            }
         } else {
-            let net = Net::<Big>::of(&steps, LEVELS[0] + growth as usize);
+            let net = resolved.big(LEVELS[0] + growth as usize);
             let exponent = net.boost.as_ref().and_then(|boost| boost.gamma.exponent());
             if let Some(bits) = exponent.filter(|bits| *bits > 1023) {
                 return Err(Impossible::GammaOverflow { bits });
             }
-            net.to_dd()
-        };
-        Ok(Resolved {
-            fits_dd: gamma(&net) < DD_GAMMA,
-            steps,
-            net,
-            growth,
-            slack,
-        })
+            resolved.net = net.to_dd();
+        }
+        resolved.fits_dd = gamma(&resolved.net) < DD_GAMMA;
+        Ok(resolved)
+    }
+
+    /// The net transformation in as many bits as asked for.
+    fn big(&self, context: usize) -> Net<Big> {
+        Net::of(self.steps(), context)
     }
 
     /// The net transformation to the precision of two doubles.
@@ -111,8 +148,13 @@ impl Resolved {
     }
 
     /// The steps as given.
-    pub fn steps(&self) -> &[Step] {
-        &self.steps
+    pub fn steps(&self) -> impl Iterator<Item = &Step> {
+        self.steps.iter().flat_map(|piece| piece.iter())
+    }
+
+    /// How far the worst quaternion or matrix was from a rotation.
+    pub fn mended(&self) -> f64 {
+        self.tally.mended
     }
 
     /// Λ of the net transformation, rounded to doubles.
@@ -121,13 +163,13 @@ impl Resolved {
             return self.net.matrix(());
         }
         let context = self.context(LEVELS[0]);
-        Net::<Big>::of(&self.steps, context).matrix(context)
+        self.big(context).matrix(context)
     }
 
     /// The precision in which a result keeps `bits` of its bits: a chain spends as many as its
     /// steps multiply up, and e^−η against e^η of the net boost takes its own.
     fn context(&self, bits: usize) -> usize {
-        bits + self.growth as usize + self.net_bits()
+        bits + self.tally.growth as usize + self.net_bits()
     }
 
     /// Bits between e^η and e^−η of the net boost, and half as many to spare.
@@ -142,7 +184,8 @@ impl Resolved {
     pub fn apply(&self, field: &Measured, to: FieldUnits) -> Result<Applied, Impossible> {
         let fast = (self.fits_dd && in_range(field)).then(|| {
             let kernel = Kernel::new(&self.net, field.units, ());
-            let (e, b) = kernel.apply(&vector(field.e, ()), &vector(field.b, ()));
+            let [e, b] = field.vectors(());
+            let (e, b) = kernel.apply(&e, &b);
             (
                 [e, b],
                 sizes(&kernel, field),
@@ -194,7 +237,9 @@ impl Resolved {
         else {
             return [0.0; 2];
         };
-        let [e, b] = [field.e, field.b].map(|x| libm::hypot(libm::hypot(x[0], x[1]), x[2]));
+        let [e, b] = field
+            .magnitudes()
+            .map(|x| libm::hypot(libm::hypot(x[0], x[1]), x[2]));
         let factor = 2.0 * boost.gamma.hi * self.slack;
         [
             factor * (e + kernel.cb_over_e * b),
@@ -214,9 +259,9 @@ impl Resolved {
         let mut vanishes_by_itself = false;
         for bits in LEVELS {
             let context = self.context(bits);
-            let net = Net::<Big>::of(&self.steps, context);
+            let net = self.big(context);
             let kernel = Kernel::new(&net, field.units, context);
-            let (e, b) = (vector(field.e, context), vector(field.b, context));
+            let [e, b] = field.vectors(context);
             let (e2, b2) = kernel.apply(&e, &b);
             let result = if which == 0 { e2 } else { b2 };
             // |E| + c|B| times 2γ bounds every term of the sum.
@@ -226,20 +271,19 @@ impl Resolved {
                 .value::<Big>(context)
                 .exponent()
                 .unwrap_or(0);
+            let sizes = field.magnitudes().map(largest_exponent);
             let (own, other, ratio) = if which == 0 {
-                (&e, &b, ratio)
+                (sizes[0], sizes[1], ratio)
             } else {
-                (&b, &e, -ratio)
+                (sizes[1], sizes[0], -ratio)
             };
             let gamma = net
                 .boost
                 .as_ref()
                 .and_then(|boost| boost.gamma.exponent())
                 .unwrap_or(0);
-            let moved = exponent(other)
-                .filter(|_| net.boost.is_some())
-                .map(|x| x + ratio);
-            let Some(size) = exponent(own).max(moved).map(|size| size + gamma + 3) else {
+            let moved = other.filter(|_| net.boost.is_some()).map(|x| x + ratio);
+            let Some(size) = own.max(moved).map(|size| size + gamma + 3) else {
                 vanishes_by_itself = true;
                 break;
             };
@@ -268,14 +312,16 @@ impl Resolved {
     /// How many bits prove that a sum of products of these doubles vanishes: enough for all of
     /// their digits side by side, three small numbers of the way multiplied together included.
     fn bits_of_zero(&self, field: &Measured) -> usize {
+        if !field.reduction.is_none() {
+            return LEVELS[2];
+        }
         let spread = [field.e, field.b]
             .map(exponent_spread)
             .into_iter()
             .max()
             .unwrap_or(0);
         let depth = self
-            .steps
-            .iter()
+            .steps()
             .map(|step| step.change.depth())
             .max()
             .unwrap_or(0);
@@ -292,13 +338,53 @@ fn gamma(net: &Net<Dd>) -> f64 {
     net.boost.as_ref().map_or(1.0, |boost| boost.gamma.hi)
 }
 
+impl Tally {
+    const NOTHING: Tally = Tally {
+        moving: 0,
+        growth: 0.0,
+        fits: true,
+        turned: 1.0,
+        mended: 0.0,
+    };
+
+    fn of(step: &Step) -> Tally {
+        match &step.change {
+            Change::Boost(motion) => Tally {
+                moving: 1,
+                growth: motion.growth(),
+                fits: motion.fits_dd(),
+                ..Tally::NOTHING
+            },
+            Change::Rotate(turn) => Tally {
+                fits: turn.fits_dd(),
+                turned: turn.slack(),
+                mended: turn.check().unwrap_or(0.0),
+                ..Tally::NOTHING
+            },
+        }
+    }
+
+    fn and(self, next: Tally) -> Tally {
+        Tally {
+            moving: self.moving + next.moving,
+            growth: self.growth + next.growth,
+            fits: self.fits && next.fits,
+            turned: self.turned.max(next.turned),
+            mended: self.mended.max(next.mended),
+        }
+    }
+}
+
 /// Whether products of these numbers stay well inside the range of two doubles.
 fn in_range(field: &Measured) -> bool {
-    field
-        .e
-        .iter()
-        .chain(&field.b)
-        .all(|x| *x == 0.0 || (1e-60..1e60).contains(&x.abs()))
+    let sane = |x: f64| x == 0.0 || (1e-60..1e60).contains(&x.abs());
+    let mut read = field.e.into_iter().chain(field.b);
+    read.all(sane) && field.reduction.numbers().all(sane)
+}
+
+fn largest_exponent(v: [f64; 3]) -> Option<i64> {
+    let largest = v.into_iter().fold(0.0f64, f64::max).min(f64::MAX);
+    (largest > 0.0).then(|| i64::from(libm::ilogb(largest)))
 }
 
 fn length(v: &Vec3<Dd>) -> f64 {
@@ -331,28 +417,30 @@ fn finish<R: Real>(
 
 /// The size of what is summed for E' and B', in the units of the reading.
 fn sizes(kernel: &Kernel<Dd>, field: &Measured) -> [f64; 2] {
+    let own = field.magnitudes();
     let Some((d, k, p, q)) = &kernel.motion else {
-        return [0.0; 2];
+        return if field.reduction.is_none() {
+            [0.0; 2]
+        } else {
+            own.map(|x| libm::hypot(libm::hypot(x[0], x[1]), x[2]))
+        };
     };
-    let d = round(d);
-    let crossed = |x: &[f64; 3]| -> [f64; 3] {
-        let exact = cross(&vector::<Dd>(d, ()), &vector::<Dd>(*x, ()));
+    let (exact_d, d) = (vector::<Dd>(round(d), ()), round(d));
+    let exact = field.vectors::<Dd>(());
+    let [xe, xb]: [[f64; 3]; 2] = std::array::from_fn(|which| {
+        let (exact, x) = (cross(&exact_d, &exact[which]), own[which]);
         std::array::from_fn(|i| {
             let (j, k) = ((i + 1) % 3, (i + 2) % 3);
-            let size = (d[j] * x[k]).abs() + (d[k] * x[j]).abs();
+            let size = d[j].abs() * x[k] + d[k].abs() * x[j];
             if exact[i].is_zero() { 0.0 } else { size }
         })
-    };
-    let (xe, xb) = (crossed(&field.e), crossed(&field.b));
+    });
     let size = |own: &[f64; 3], x: &[f64; 3], other: &[f64; 3], factor: f64| {
         (0..3).fold(0.0f64, |sum, i| {
             let (j, l) = ((i + 1) % 3, (i + 2) % 3);
             let across = k.hi * (x[j] * d[l].abs() + x[l] * d[j].abs());
-            libm::hypot(sum, own[i].abs() + across + factor.abs() * other[i])
+            libm::hypot(sum, own[i] + across + factor.abs() * other[i])
         })
     };
-    [
-        size(&field.e, &xe, &xb, p.hi),
-        size(&field.b, &xb, &xe, q.hi),
-    ]
+    [size(&own[0], &xe, &xb, p.hi), size(&own[1], &xb, &xe, q.hi)]
 }

@@ -43,6 +43,10 @@ FAULTS = [
     ("below_rest", boost(direction=[1, 0, 0], gamma=0.5), "/boost/gamma"),
     ("below_rest", boost(direction=[1, 0, 0], kinetic_energy=-1, particle="proton"), "/boost/kinetic_energy"),
     ("not_a_rotation", turn(quaternion={"w": 1, "x": 1, "y": 0, "z": 0}), "/rotation/quaternion"),
+    ("unknown_frame", {"e": [0, 1, 0], "from": "probe", "to": "ground"}, "/from"),
+    ("angle_out_of_range", GOOD | {"assume": {"e_dot_b_zero": {"min_angle": 15}}}, "/assume/e_dot_b_zero/min_angle"),
+    ("field_in_plane", {"e": [1, 2, None], "b": [1, 1, 0], "velocity": [0, 0, 0],
+                        "assume": {"e_dot_b_zero": {"min_angle": 0.2}}}, "/assume"),
     ("too_many_steps", {"e": [0, 1, 0], "b": [0, 0, 1], "steps": [{"boost": {"beta": [0, 0, 0]}}] * 1001}, "/steps"),
     ("overflow", {"e": [0, 1e300, 0], "b": [0, 0, 1], "boost": {"direction": [1, 0, 0], "gamma": 1e20}}, None),
     ("precision_exhausted", {"e": [0, 1, 0], "b": [0, 0, 1], "steps": [
@@ -72,18 +76,21 @@ REQUESTS = [
     ("headers_too_large", "GET", "/health/live", None, {"X-Long": "x" * 40_000}),
 ]
 
-# Provoked by tests of their own, below.
-OTHERS = {"request_timeout", "overloaded"}
+# Provoked by tests of their own, below and in test_frames.py.
+OTHERS = {"request_timeout", "overloaded", "wrong_time", "time_needed", "time_outside_track", "axis_not_measured"}
 
 # Codes that no request can bring about in this version, and why.
 OUT_OF_REACH = {
     "internal": "only a fault of the service itself brings it about",
     "too_many_requests": "no limit of requests for each client can be set",
     "unauthorized": "tokens cannot be asked for",
-    "unknown_frame": "a question cannot name frames",
     "not_a_covariance": "a question cannot state uncertainties",
     "negative_uncertainty": "a question cannot state uncertainties",
-}
+} | dict.fromkeys(
+    ("unknown_parent", "frame_cycle", "several_roots", "sensor_not_leaf", "singular_matrix", "unsorted_times",
+     "repeated_time", "gap_too_long", "attitude_jump", "unreadable_file"),
+    "found when a catalogue is loaded; tests/frames.rs provokes it",
+)
 
 
 def check_document(reply, code):

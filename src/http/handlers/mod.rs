@@ -1,6 +1,7 @@
 //! One file for each resource.
 
 pub(super) mod constants;
+pub(super) mod frames;
 pub(super) mod health;
 pub(super) mod metrics;
 pub(super) mod openapi;

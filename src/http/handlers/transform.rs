@@ -20,7 +20,7 @@ use crate::{
         schema::{self, Query},
     },
     physics::Impossible,
-    question::{Limits, Question},
+    question::Question,
 };
 
 /// How long an answer may be kept: it never changes for one version of the service.
@@ -28,7 +28,8 @@ const CACHE: &str = "public, max-age=86400";
 
 /// Restate one reading in another frame.
 ///
-/// The way to the target frame is exactly one of `steps`, `velocity`, `boost` and `rotation`.
+/// The way to the target frame is exactly one of `steps`, `velocity`, `boost`, `rotation`, and
+/// `from` with `to`.
 /// Everything wrong with a question is answered at once.
 #[utoipa::path(
     post, path = "/v1/transform", tag = "fields", operation_id = "transform",
@@ -72,7 +73,7 @@ pub(crate) async fn transform(
     negotiate(&headers, &[JSON])?;
     let refuse = |faults| Problem::from_faults(faults, Source::Body);
     let node = Node::from_json(&body).map_err(|fault| refuse(vec![fault]))?;
-    let question = Question::read(&node, &limits(&state)).map_err(refuse)?;
+    let question = Question::read(&node, &state.deployment).map_err(refuse)?;
     answer(&question).map_err(refuse)
 }
 
@@ -105,7 +106,7 @@ pub(crate) async fn transform_by_url(
     let representation = negotiate(&headers, &[JSON])?;
     let refuse = |faults| Problem::from_faults(faults, Source::Query);
     let node = from_query(&query.unwrap_or_default()).map_err(refuse)?;
-    let question = Question::read(&node, &limits(&state)).map_err(refuse)?;
+    let question = Question::read(&node, &state.deployment).map_err(refuse)?;
     // The question as understood, whatever the order and spelling of its parameters.
     let canonical = format!("{question:?}");
     let tag = etag(&[
@@ -116,22 +117,21 @@ pub(crate) async fn transform_by_url(
     cached(&headers, tag, CACHE, || answer(&question).map_err(refuse))
 }
 
-fn limits(state: &AppState) -> Limits {
-    Limits {
-        steps: state.config.max_steps,
-    }
-}
-
 fn answer(question: &Question) -> Result<Response, Vec<Fault>> {
     match Answer::to(question) {
         Ok(answer) => Ok(json(&answer)),
-        Err(impossible) => Err(vec![overflow(&impossible)]),
+        Err(impossible) => Err(vec![unanswerable(&impossible)]),
     }
 }
 
-/// An answer that no double holds is mended where its unit is chosen.
-fn overflow(impossible: &Impossible) -> Fault {
-    let place = Path(vec![Segment::Field("answer_units".into())]);
+/// An answer that no double holds is mended where its unit is chosen; one that rests on too weak
+/// an assumption, where that is made.
+fn unanswerable(impossible: &Impossible) -> Fault {
     let code: Code = chain::code(impossible);
+    let name = match code {
+        Code::FieldInPlane => "assume",
+        _ => "answer_units",
+    };
+    let place = Path(vec![Segment::Field(name.into())]);
     Fault::at(&place, code, impossible.to_string())
 }
