@@ -137,13 +137,11 @@ fn the_log_has_a_line_a_request_and_no_secret() {
     for (form, expected) in [
         (
             "text",
-            format!(" method=GET route=/health/live status=200 microseconds="),
+            " method=GET route=/health/live status=200 microseconds=",
         ),
         (
             "json",
-            format!(
-                "\"method\":\"GET\",\"route\":\"/health/live\",\"status\":200,\"microseconds\":"
-            ),
+            "\"method\":\"GET\",\"route\":\"/health/live\",\"status\":200,\"microseconds\":",
         ),
     ] {
         let running = Running::start(&["--log", form]);
@@ -161,7 +159,7 @@ fn the_log_has_a_line_a_request_and_no_secret() {
         running.terminate();
         let (_, log) = running.end();
         assert_eq!(log.lines().count(), 1, "{log}");
-        assert!(log.contains(&expected), "{log}");
+        assert!(log.contains(expected), "{log}");
         assert!(
             log.contains(id.expect("an id")) && log.contains(trace),
             "{log}"

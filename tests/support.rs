@@ -13,30 +13,30 @@ use serde_json::Value;
 use tower::ServiceExt;
 
 /// A whole answer.
-pub struct Answer {
-    pub status: StatusCode,
-    pub headers: HeaderMap,
-    pub body: Vec<u8>,
+pub(crate) struct Answer {
+    pub(crate) status: StatusCode,
+    pub(crate) headers: HeaderMap,
+    pub(crate) body: Vec<u8>,
 }
 
 impl Answer {
-    pub fn text(&self) -> &str {
+    pub(crate) fn text(&self) -> &str {
         std::str::from_utf8(&self.body).expect("UTF-8")
     }
 
-    pub fn json(&self) -> Value {
+    pub(crate) fn json(&self) -> Value {
         serde_json::from_slice(&self.body)
             .unwrap_or_else(|error| panic!("{error}: {}", self.text()))
     }
 
-    pub fn header(&self, name: &str) -> &str {
+    pub(crate) fn header(&self, name: &str) -> &str {
         let value = self.headers.get(name);
         value.map_or("", |value| value.to_str().expect("visible ASCII"))
     }
 
     /// Checks that this is a problem document of the code, whole and consistent, and gives it.
     #[track_caller]
-    pub fn problem(&self, code: &str) -> Value {
+    pub(crate) fn problem(&self, code: &str) -> Value {
         assert_eq!(
             self.header("content-type"),
             "application/problem+json",
@@ -55,14 +55,14 @@ impl Answer {
 }
 
 /// The service with its default settings and the demonstration's catalogue.
-pub fn service() -> Router {
+pub(crate) fn service() -> Router {
     let file = concat!(env!("CARGO_MANIFEST_DIR"), "/deploy/demo/frames.toml");
     let catalogue = frames::load(Path::new(file)).expect("the demonstration is right");
     app(AppState::new(Config::default(), Some(catalogue)))
 }
 
 /// Sends a request to a router of its own.
-pub async fn send(app: Router, request: Request<Body>) -> Answer {
+pub(crate) async fn send(app: Router, request: Request<Body>) -> Answer {
     let response = app.oneshot(request).await.expect("a router does not fail");
     let (head, body) = response.into_parts();
     Answer {
@@ -78,7 +78,7 @@ pub async fn send(app: Router, request: Request<Body>) -> Answer {
 }
 
 /// `GET` with headers.
-pub async fn get(path: &str, headers: &[(&str, &str)]) -> Answer {
+pub(crate) async fn get(path: &str, headers: &[(&str, &str)]) -> Answer {
     let mut request = Request::get(path);
     for (name, value) in headers {
         request = request.header(*name, *value);

@@ -46,7 +46,9 @@ pub fn code(impossible: &Impossible) -> Code {
         Impossible::BelowRest { .. } => Code::BelowRest,
         Impossible::NotARotation { .. } | Impossible::Mirror { .. } => Code::NotARotation,
         Impossible::Overflow { .. } => Code::Overflow,
-        Impossible::PrecisionExhausted { .. } => Code::PrecisionExhausted,
+        Impossible::GammaOverflow { .. } | Impossible::PrecisionExhausted { .. } => {
+            Code::PrecisionExhausted
+        }
         Impossible::FieldInPlane { .. } => Code::FieldInPlane,
     }
 }

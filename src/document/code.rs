@@ -138,7 +138,7 @@ codes! {
         "A component of the answer is larger than the largest double.",
         "Choose an answer unit in which it is smaller (answer_units).";
     PrecisionExhausted "precision_exhausted" 422 "Beyond the precision kept",
-        "The way passes through speeds so extreme that its net effect would take more digits than the service keeps.",
+        "The way passes through speeds so extreme that its net effect would take more digits than the service keeps, or ends at a gamma that no double holds.",
         "Shorten the way: leave out steps that undo each other.";
     Unauthorized "unauthorized" 401 "A token is needed",
         "This service answers only requests that carry one of its bearer tokens.",

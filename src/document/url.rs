@@ -14,6 +14,10 @@ use super::node::Node;
 /// Deepest path a parameter may have.
 const MAX_DEPTH: usize = 16;
 
+/// What is wrong with a text that cannot be decoded.
+const UNDECODABLE: &str = "holds a % that two hex digits do not follow, or is not UTF-8 once \
+                           decoded; a literal % is written %25";
+
 /// Reads a query (without the question mark) into a tree.
 ///
 /// # Errors
@@ -24,7 +28,7 @@ pub fn from_query(query: &str) -> Result<Node<'static>, Vec<Fault>> {
     for pair in query.split('&').filter(|pair| !pair.is_empty()) {
         let (name, value) = pair.split_once('=').unwrap_or((pair, ""));
         let Some(name) = decoded(name) else {
-            let detail = format!("the name of the parameter {name:?} is not UTF-8 once decoded");
+            let detail = format!("the name of the parameter {name:?} {UNDECODABLE}");
             faults.push(Fault::whole(Code::Syntax, detail));
             continue;
         };
@@ -41,7 +45,7 @@ pub fn from_query(query: &str) -> Result<Node<'static>, Vec<Fault>> {
             continue;
         }
         let value = decoded(value)
-            .ok_or_else(|| Fault::at(&path, Code::Syntax, "the value is not UTF-8 once decoded"));
+            .ok_or_else(|| Fault::at(&path, Code::Syntax, format!("the value {UNDECODABLE}")));
         match value.and_then(|value| leaf(value, &path)) {
             Ok(node) => insert(&mut root, &segments, node),
             Err(fault) => faults.push(fault),
@@ -56,6 +60,11 @@ pub fn from_query(query: &str) -> Result<Node<'static>, Vec<Fault>> {
 
 /// Form decoding: + is a space, %xx a byte.
 fn decoded(text: &str) -> Option<String> {
+    let mut escapes = text.split('%').skip(1);
+    let hex = |rest: &str| rest.bytes().take(2).filter(u8::is_ascii_hexdigit).count() == 2;
+    if !escapes.all(hex) {
+        return None;
+    }
     let spaced = text.replace('+', " ");
     percent_decode(spaced.as_bytes())
         .decode_utf8()

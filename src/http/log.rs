@@ -3,8 +3,7 @@
 //! It holds route templates, never paths or queries; no token and no field value reaches it.
 
 use std::{
-    fmt::{self, Write as _},
-    io,
+    fmt, io,
     sync::OnceLock,
     time::{Duration, SystemTime},
 };
@@ -45,11 +44,11 @@ pub fn start(form: LogForm, out: impl io::Write + Send + 'static) -> Option<Guar
 }
 
 /// Logs an event of the service itself.
-pub(super) fn event(level: &'static str, event: &str, detail: &dyn fmt::Display) {
+pub(super) fn event(level: &'static str, event: &'static str, detail: &dyn fmt::Display) {
     write(|line| {
-        line.word("level", level)?;
-        line.word("event", event)?;
-        line.text("detail", detail)
+        line.word("level", level);
+        line.text("event", event);
+        line.text("detail", &detail.to_string());
     });
 }
 
@@ -66,29 +65,29 @@ pub(super) struct Access<'a> {
 /// Logs one answered request.
 pub(super) fn access(access: &Access<'_>) {
     write(|line| {
-        line.word("level", "info")?;
-        line.word("event", "request")?;
-        line.text("method", &access.method)?;
-        line.word("route", access.route)?;
-        line.number("status", access.status.into())?;
-        line.number("microseconds", access.time.as_micros())?;
+        line.word("level", "info");
+        line.word("event", "request");
+        line.word("method", access.method);
+        line.word("route", access.route);
+        line.number("status", access.status.into());
+        line.number("microseconds", access.time.as_micros() as u64);
         let mut id = Uuid::encode_buffer();
-        line.word("request", access.id.as_hyphenated().encode_lower(&mut id))?;
-        access
-            .trace
-            .map_or(Ok(()), |trace| line.word("trace", trace))
+        line.word("request", access.id.as_hyphenated().encode_lower(&mut id));
+        if let Some(trace) = access.trace {
+            line.word("trace", trace);
+        }
     });
 }
 
-fn write(fields: impl FnOnce(&mut Line) -> fmt::Result) {
+fn write(fields: impl FnOnce(&mut Line)) {
     let Some(log) = LOG.get() else { return };
     let mut line = Line {
         json: log.json,
         text: String::with_capacity(256),
     };
     let time = humantime::format_rfc3339_micros(SystemTime::now());
-    // Writing into a String cannot fail.
-    let _ = line.text("time", &time).and_then(|()| fields(&mut line));
+    line.word("time", &time.to_string());
+    fields(&mut line);
     line.text.push_str(if log.json { "}\n" } else { "\n" });
     log.lines.line(line.text.as_bytes());
 }
@@ -115,30 +114,24 @@ impl Line {
         }
     }
 
-    /// A value that holds neither quotes nor control characters.
-    fn word(&mut self, name: &'static str, value: &str) -> fmt::Result {
+    /// A value that needs no escapes; JSON has it in quotes.
+    fn word(&mut self, name: &'static str, value: &str) {
         self.name(name);
         let quote = if self.json { "\"" } else { "" };
         self.text.push_str(quote);
         self.text.push_str(value);
         self.text.push_str(quote);
-        Ok(())
     }
 
-    fn number(&mut self, name: &'static str, value: u128) -> fmt::Result {
+    fn number(&mut self, name: &'static str, value: u64) {
         self.name(name);
-        write!(self.text, "{value}")
+        self.text.push_str(&value.to_string());
     }
 
-    /// Any value; quoted where the form asks for it.
-    fn text(&mut self, name: &'static str, value: &dyn fmt::Display) -> fmt::Result {
+    /// Any text, in quotes and escaped.
+    fn text(&mut self, name: &'static str, value: &str) {
         self.name(name);
-        let value = value.to_string();
-        if self.json || value.contains([' ', '"', '=', '\n']) {
-            self.text += &serde_json::to_string(&value).map_err(|_| fmt::Error)?;
-        } else {
-            self.text += &value;
-        }
-        Ok(())
+        let quoted = serde_json::to_string(value).expect("a text has a JSON form");
+        self.text.push_str(&quoted);
     }
 }

@@ -135,11 +135,11 @@ impl IntoResponse for Problem {
     "type": "/problems/wrong_length",
     "title": "A list of the wrong length",
     "status": 400,
-    "detail": "2 faults, all listed in errors. e has 2 components; it must have 3.",
+    "detail": "2 faults, all listed in errors. expected three numbers [x, y, z], got 2 of them",
     "instance": "urn:uuid:7d3c1a52-0f6b-4f0e-9a55-5b6e1c0f2d11",
     "errors": [
-        {"code": "wrong_length", "detail": "e has 2 components; it must have 3.", "pointer": "/e"},
-        {"code": "faster_than_light", "detail": "The speed is 3e8 m/s; it must be below 299792458 m/s.", "pointer": "/velocity"},
+        {"code": "wrong_length", "detail": "expected three numbers [x, y, z], got 2 of them", "pointer": "/e"},
+        {"code": "faster_than_light", "detail": "the speed is 1.0006922855944562 c; a frame moves slower than c = 299792458 m/s. Check the value and its unit; very close to c give a direction with gamma, rapidity or kinetic_energy", "pointer": "/velocity"},
     ],
 }))]
 pub struct ProblemDocument {
@@ -163,6 +163,11 @@ pub struct ProblemDocument {
 
 /// One fault of a question, and where it stands: at most one of pointer, parameter and column.
 #[derive(Clone, Debug, Serialize, ToSchema)]
+#[schema(example = json!({
+    "code": "wrong_length",
+    "detail": "expected three numbers [x, y, z], got 2 of them",
+    "pointer": "/e",
+}))]
 pub struct ProblemPart {
     /// The code of the fault, explained at /problems/{code}.
     #[schema(pattern = "^[a-z_]+$")]

@@ -128,7 +128,7 @@ pub struct Units {
     /// Magnetic flux density: T, mT, uT, nT, pT or G.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub b: Option<String>,
-    /// Velocity: m/s, km/s or [kn_i].
+    /// Velocity: m/s, km/s or `[kn_i]`.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub velocity: Option<String>,
     /// Angle: rad or deg.
@@ -240,6 +240,7 @@ pub enum ParticleName {
 
 /// A particle by its rest energy.
 #[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[schema(example = json!({"rest_energy": 938.27208943}))]
 #[serde(deny_unknown_fields)]
 pub struct OtherParticle {
     /// Rest energy in `units.energy`, above 0.
@@ -278,13 +279,13 @@ pub struct Rotate {
 #[schema(as = AttitudeQuaternion, example = json!({"w": 1.0, "x": 0.0, "y": 0.0, "z": 0.0}))]
 #[serde(deny_unknown_fields)]
 pub struct Quaternion {
-    /// Real part.
+    /// Cosine of half the angle.
     pub w: f64,
-    /// First vector component.
+    /// Sine of half the angle times the axis, x component.
     pub x: f64,
-    /// Second vector component.
+    /// The same, y component.
     pub y: f64,
-    /// Third vector component.
+    /// The same, z component.
     pub z: f64,
 }
 
@@ -422,6 +423,16 @@ pub mod examples {
             "b": [0.0, 0.0, 1.0],
             "units": {"e": "kV/m", "b": "G", "energy": "GeV"},
             "boost": {"direction": [1.0, 0.0, 0.0], "kinetic_energy": 26.0, "particle": "proton"},
+        })
+    }
+
+    /// A plane wave on an observer who moves along with it, in strong light.
+    pub fn plane_wave() -> Value {
+        json!({
+            "e": [0.0, 299_792_458.0, 0.0],
+            "b": [0.0, 0.0, 1.0],
+            "boost": {"beta": [0.6, 0.0, 0.0]},
+            "include": ["parallel_frame"],
         })
     }
 

@@ -9,7 +9,7 @@ use super::big::Big;
 use super::constants::SPEED_OF_LIGHT;
 use super::double_double::Dd;
 use super::error::Impossible;
-use super::real::{Real, Vec3, cross, norm2, scale, vector};
+use super::real::{Real, Vec3, cross, exponent_spread, norm2, round, scale, vector};
 use super::scale::Scale;
 
 /// The motion of the next frame as seen in the current one, in the form it was given.
@@ -73,6 +73,8 @@ pub struct Boost<R> {
 
 /// Bits that hold any sum of squares of doubles exactly.
 const EXACT_BITS: usize = 4608;
+/// Bits that tell γ of a speed next to c from another by more than enough.
+const GROWTH_BITS: usize = 256;
 /// Below this 1−β² is taken from more digits than two doubles have.
 const SMALL_W: f64 = 0.0625;
 
@@ -206,6 +208,63 @@ impl Motion {
                 let sane = |x: f64| (1e-60..1e60).contains(&x);
                 sane(rest) && (energy == 0.0 || sane(energy) && sane(energy / rest))
             }
+        }
+    }
+
+    /// log2 of γ(1+β), or a little more.
+    pub fn growth(&self) -> f64 {
+        if !self.fits_dd() {
+            return self.boost::<Big>(GROWTH_BITS).gamma.exponent().unwrap_or(0) as f64 + 2.0;
+        }
+        let of_gamma = |less_one: f64| less_one + 1.0 + (less_one * (less_one + 2.0)).sqrt();
+        match self {
+            Motion::Velocity { .. } | Motion::Turning { .. } => {
+                let v = round(&self.velocity::<Dd>(()));
+                let beta = libm::hypot(libm::hypot(v[0], v[1]), v[2]) * self.beta().to_f64();
+                0.5 * libm::log2((1.0 + beta) / (1.0 - beta))
+            }
+            Motion::Gamma { gamma, .. } => libm::log2(of_gamma(gamma - 1.0)),
+            Motion::Rapidity { rapidity, .. } => rapidity.abs() * std::f64::consts::LOG2_E,
+            Motion::KineticEnergy {
+                energy,
+                rest,
+                ratio,
+                ..
+            } => libm::log2(of_gamma(energy / rest * ratio.to_f64())),
+        }
+    }
+
+    /// About how many bits below one the smallest component of β, or of the direction and
+    /// γ − 1, lies.
+    pub fn depth(&self) -> i64 {
+        let below_one = |x: f64| {
+            if x == 0.0 {
+                0
+            } else {
+                i64::from(-libm::ilogb(x)).max(0)
+            }
+        };
+        let smallest = |v: &[f64; 3]| v.iter().map(|x| below_one(*x)).max().unwrap_or(0);
+        match self {
+            Motion::Velocity { value, beta } => smallest(value) + below_one(beta.to_f64()),
+            Motion::Turning {
+                angular_velocity,
+                position,
+                beta,
+            } => smallest(angular_velocity) + smallest(position) + below_one(beta.to_f64()),
+            Motion::Gamma { direction, gamma } => {
+                exponent_spread(*direction) + below_one(gamma - 1.0)
+            }
+            Motion::Rapidity {
+                direction,
+                rapidity,
+            } => exponent_spread(*direction) + below_one(*rapidity),
+            Motion::KineticEnergy {
+                direction,
+                energy,
+                rest,
+                ..
+            } => exponent_spread(*direction) + exponent_spread([*energy, *rest]),
         }
     }
 

@@ -60,6 +60,15 @@ pub enum Impossible {
         /// What overflows.
         what: &'static str,
     },
+    /// A net γ past the largest double.
+    #[error(
+        "the net boost has gamma 2^{bits}, and no double holds more than 2^1024; leave out steps \
+         that speed up further"
+    )]
+    GammaOverflow {
+        /// log2 of the net γ.
+        bits: i64,
+    },
     /// A way whose speeds need more bits than are kept.
     #[error(
         "the steps multiply up to a factor of 2^{growth:.0} in the field, and the service keeps \

@@ -40,6 +40,16 @@ pub enum Change {
     Rotate(Turn),
 }
 
+impl Change {
+    /// About how many bits below one the smallest number of the step lies.
+    pub fn depth(&self) -> i64 {
+        match self {
+            Change::Boost(motion) => motion.depth(),
+            Change::Rotate(turn) => turn.depth(),
+        }
+    }
+}
+
 /// A net transformation in the arithmetic R.
 #[derive(Clone, Debug)]
 pub struct Net<R> {

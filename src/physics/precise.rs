@@ -13,7 +13,7 @@ use super::double_double::Dd;
 use super::error::Impossible;
 use super::field::{FieldUnits, Kernel, Measured};
 use super::lorentz::{Change, Net, Step};
-use super::real::{Real, Vec3, cross, round, vector};
+use super::real::{Real, Vec3, cross, exponent_spread, round, vector};
 use super::scale::Scale;
 
 /// Result over what was summed, below which two doubles no longer suffice.
@@ -23,9 +23,11 @@ const LEVELS: [usize; 4] = [256, 640, 1536, 4608];
 /// Bits below the size of what was summed that a result at least keeps.
 const GUARD: i64 = 120;
 /// Largest product of γ(1+β) over the steps of a way, as a power of two.
-const MAX_GROWTH: f64 = 4096.0;
+const MAX_GROWTH: f64 = 2048.0;
 /// Up to this growth a chain is composed in two doubles.
 const DD_GROWTH: f64 = 20.0;
+/// Below this net γ two doubles have room for its products.
+const DD_GAMMA: f64 = 1e60;
 
 /// A way whose net transformation is known, ready for any number of readings.
 #[derive(Clone, Debug)]
@@ -117,7 +119,6 @@ impl Resolved {
             slack: tally.turned,
             fits_dd: true,
         };
-        let gamma = |net: &Net<Dd>| net.boost.as_ref().map_or(1.0, |boost| boost.gamma.hi);
         if tally.fits && (moving < 2 || growth <= DD_GROWTH) {
             resolved.net = in_dd();
             if moving > 1 {
@@ -125,15 +126,14 @@ impl Resolved {
                 resolved.slack *= f64::from(moving) * libm::exp2(lost.max(0.0) / 2.0);
             }
         } else {
-            resolved.net = resolved.big(resolved.context(LEVELS[0])).to_dd();
+            let net = resolved.big(LEVELS[0] + growth as usize);
+            let exponent = net.boost.as_ref().and_then(|boost| boost.gamma.exponent());
+            if let Some(bits) = exponent.filter(|bits| *bits > 1023) {
+                return Err(Impossible::GammaOverflow { bits });
+            }
+            resolved.net = net.to_dd();
         }
-        let gamma = gamma(&resolved.net);
-        if !gamma.is_finite() {
-            return Err(Impossible::Overflow {
-                what: "gamma of the net boost",
-            });
-        }
-        resolved.fits_dd = gamma < 1e60;
+        resolved.fits_dd = gamma(&resolved.net) < DD_GAMMA;
         Ok(resolved)
     }
 
@@ -166,9 +166,15 @@ impl Resolved {
         self.big(context).matrix(context)
     }
 
-    /// The bits in which a result keeps `bits` of them.
+    /// The precision in which a result keeps `bits` of its bits: a chain spends as many as its
+    /// steps multiply up, and e^−η against e^η of the net boost takes its own.
     fn context(&self, bits: usize) -> usize {
-        bits + 2 * self.tally.growth as usize
+        bits + self.tally.growth as usize + self.net_bits()
+    }
+
+    /// Bits between e^η and e^−η of the net boost, and half as many to spare.
+    fn net_bits(&self) -> usize {
+        (3.0 * libm::log2(2.0 * gamma(&self.net))) as usize
     }
 
     /// The field in the target frame, in the units `to`.
@@ -281,12 +287,11 @@ impl Resolved {
                 vanishes_by_itself = true;
                 break;
             };
-            if let Some(reached) = exponent(&result) {
-                // A chain has spent as many bits as its steps multiply up.
-                if size - reached <= (bits as f64 + self.tally.growth) as i64 - GUARD {
-                    let (rounded, precise) = finish(&result, unit, target, context);
-                    return (rounded, precise, ((size - reached) as f64 - 3.0).max(0.0));
-                }
+            if let Some(reached) = exponent(&result)
+                && size - reached <= (bits + self.net_bits()) as i64 - GUARD
+            {
+                let (rounded, precise) = finish(&result, unit, target, context);
+                return (rounded, precise, ((size - reached) as f64 - 3.0).max(0.0));
             }
             if bits >= self.bits_of_zero(field) {
                 break;
@@ -305,26 +310,32 @@ impl Resolved {
     }
 
     /// How many bits prove that a sum of products of these doubles vanishes: enough for all of
-    /// their digits side by side.
+    /// their digits side by side, three small numbers of the way multiplied together included.
     fn bits_of_zero(&self, field: &Measured) -> usize {
         if !field.reduction.is_none() {
             return LEVELS[2];
         }
-        let direction = self
-            .net
-            .boost
-            .as_ref()
-            .map_or([0.0; 3], |boost| round(&boost.direction));
-        let spread = [field.e, field.b, direction]
-            .map(|v| {
-                let exponents = v.iter().filter(|x| **x != 0.0).map(|x| libm::ilogb(*x));
-                exponents.clone().max().unwrap_or(0) - exponents.min().unwrap_or(0)
-            })
+        let spread = [field.e, field.b]
+            .map(exponent_spread)
             .into_iter()
             .max()
             .unwrap_or(0);
-        if spread < 100 { LEVELS[1] } else { LEVELS[3] }
+        let depth = self
+            .steps()
+            .map(|step| step.change.depth())
+            .max()
+            .unwrap_or(0);
+        let needed = 400 + 2 * spread + 3 * depth;
+        LEVELS
+            .into_iter()
+            .find(|bits| *bits as i64 >= needed)
+            .unwrap_or(LEVELS[3])
     }
+}
+
+/// γ of a net transformation.
+fn gamma(net: &Net<Dd>) -> f64 {
+    net.boost.as_ref().map_or(1.0, |boost| boost.gamma.hi)
 }
 
 impl Tally {
@@ -338,21 +349,12 @@ impl Tally {
 
     fn of(step: &Step) -> Tally {
         match &step.change {
-            Change::Boost(motion) => {
-                let fits = motion.fits_dd();
-                let growth = if fits {
-                    let gamma = motion.boost::<Dd>(()).gamma.hi;
-                    libm::log2(gamma + ((gamma - 1.0) * (gamma + 1.0)).sqrt())
-                } else {
-                    motion.boost::<Big>(LEVELS[0]).gamma.exponent().unwrap_or(0) as f64 + 2.0
-                };
-                Tally {
-                    moving: 1,
-                    growth,
-                    fits,
-                    ..Tally::NOTHING
-                }
-            }
+            Change::Boost(motion) => Tally {
+                moving: 1,
+                growth: motion.growth(),
+                fits: motion.fits_dd(),
+                ..Tally::NOTHING
+            },
             Change::Rotate(turn) => Tally {
                 fits: turn.fits_dd(),
                 turned: turn.slack(),

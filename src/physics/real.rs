@@ -106,3 +106,10 @@ pub fn vector<R: Real>(a: [f64; 3], context: R::Context) -> Vec3<R> {
 pub fn round<R: Real>(a: &Vec3<R>) -> [f64; 3] {
     std::array::from_fn(|i| a[i].to_f64())
 }
+
+/// How many powers of two lie between the largest and the smallest of these numbers, zeros aside.
+pub fn exponent_spread<const N: usize>(numbers: [f64; N]) -> i64 {
+    let exponents = numbers.into_iter().filter(|x| *x != 0.0).map(libm::ilogb);
+    let largest = exponents.clone().max().unwrap_or(0);
+    i64::from(largest) - i64::from(exponents.min().unwrap_or(0))
+}

@@ -5,7 +5,7 @@
 
 use super::double_double::Dd;
 use super::error::Impossible;
-use super::real::{Real, Vec3, dot, norm2, vector};
+use super::real::{Real, Vec3, dot, exponent_spread, norm2, vector};
 use super::scale::Scale;
 
 /// The turn of the axes, in the form it was given.
@@ -143,6 +143,32 @@ impl Turn {
                 angular_velocity.iter().all(sane) && self.slack() < MANY_QUARTERS
             }
             Turn::Quaternion(_) | Turn::Matrix(_) => true,
+        }
+    }
+
+    /// About how many bits below one the smallest number of the turn lies.
+    pub fn depth(&self) -> i64 {
+        match self {
+            Turn::AxisAngle {
+                axis,
+                angle,
+                radians,
+            } => exponent_spread(*axis) + exponent_spread([1.0, angle * radians.to_f64()]),
+            Turn::Quaternion(q) => exponent_spread(*q),
+            Turn::Matrix([a, b, c]) => [a, b, c]
+                .map(|row| exponent_spread(*row))
+                .into_iter()
+                .max()
+                .unwrap_or(0),
+            Turn::Euler {
+                angles, radians, ..
+            } => {
+                let [a, b, c] = angles.map(|angle| angle * radians.to_f64());
+                exponent_spread([1.0, a, b, c])
+            }
+            Turn::Spinning {
+                angular_velocity, ..
+            } => exponent_spread(*angular_velocity),
         }
     }
 

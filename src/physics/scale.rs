@@ -2,7 +2,7 @@
 
 use super::real::Real;
 
-/// num/den · π^pi. Every factor between units is one, so that no digit is lost to units.
+/// num/den · π^pi, not always in lowest terms. Every factor between units is one, so that no digit is lost to units.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
 pub struct Scale {
     /// Numerator.
@@ -27,20 +27,30 @@ impl Scale {
         Scale { num, den, pi: 1 }
     }
 
-    /// The scale by which numbers in unit `self` are restated in unit `other`, in lowest terms.
+    /// The scale by which numbers in unit `self` are restated in unit `other`.
     pub fn over(self, other: Scale) -> Scale {
-        let cross = |a: u128, b: u128| {
+        if self == other {
+            return Scale::ONE;
+        }
+        let pi = self.pi - other.pi;
+        // Lowest terms cost a hundred divisions, and are needed only where a product overflows.
+        let products = (
+            self.num.checked_mul(other.den),
+            self.den.checked_mul(other.num),
+        );
+        if let (Some(num), Some(den)) = products {
+            return Scale { num, den, pi };
+        }
+        let reduced = |a: u128, b: u128| {
             let common = gcd(a, b);
             (a / common, b / common)
         };
-        let (a, d) = cross(self.num, self.den);
-        let (e, f) = cross(other.den, other.num);
-        let (a, f) = cross(a, f);
-        let (e, d) = cross(e, d);
+        let (num, other_num) = reduced(self.num, other.num);
+        let (other_den, den) = reduced(other.den, self.den);
         Scale {
-            num: a * e,
-            den: d * f,
-            pi: self.pi - other.pi,
+            num: num * other_den,
+            den: den * other_num,
+            pi,
         }
     }
 
@@ -73,13 +83,27 @@ impl Scale {
 
     /// The nearest double.
     pub fn to_f64(self) -> f64 {
+        const EXACT: u128 = 1 << 53;
+        if self.pi == 0 && self.num <= EXACT && self.den <= EXACT {
+            return self.num as f64 / self.den as f64;
+        }
         self.value::<super::Dd>(()).to_f64()
+    }
+
+    /// The same scale in lowest terms.
+    pub fn reduced(self) -> Scale {
+        let common = gcd(self.num, self.den);
+        Scale {
+            num: self.num / common,
+            den: self.den / common,
+            pi: self.pi,
+        }
     }
 }
 
 impl std::fmt::Display for Scale {
     fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
-        let reduced = self.over(Scale::ONE);
+        let reduced = self.reduced();
         write!(f, "{}", reduced.num)?;
         match self.pi {
             0 => {}

@@ -2,6 +2,7 @@
 
 use crate::chain::code;
 use crate::document::{Code, Faults, Members, Node, Place};
+use crate::physics::Impossible;
 use crate::physics::boost::Motion;
 use crate::physics::constants::PARTICLES;
 use crate::physics::lorentz::{Change, Step};
@@ -29,11 +30,30 @@ pub fn read(node: &Node, place: &Place, units: &Units, faults: &mut Faults) -> O
     let motion = form(members, place, units, faults).and_then(|motion| {
         let checked = motion.check();
         if let Err(impossible) = &checked {
-            faults.note(place, code(impossible), impossible.to_string());
+            let place = place.field(blamed(members, impossible));
+            faults.note(&place, code(impossible), impossible.to_string());
         }
         checked.ok().map(|()| Change::Boost(motion))
     });
     super::with_inverse(motion, members.get("inverse"), place, faults)
+}
+
+/// The member that an impossible motion is the fault of.
+fn blamed(members: Members, impossible: &Impossible) -> &'static str {
+    let given = |names: &[&'static str]| {
+        names
+            .iter()
+            .copied()
+            .find(|name| members.get(name).is_some())
+    };
+    match impossible {
+        Impossible::BelowRest {
+            what: "rest_energy",
+            ..
+        } => "particle",
+        Impossible::BelowRest { .. } => given(&SPEEDS).unwrap_or("direction"),
+        _ => given(&FORMS).unwrap_or("velocity"),
+    }
 }
 
 /// Reads a velocity that stands alone, as `velocity` does in a question.

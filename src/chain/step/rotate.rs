@@ -15,7 +15,9 @@ pub fn read(node: &Node, place: &Place, units: &Units, faults: &mut Faults) -> O
     let turn = form(members, place, units, faults).and_then(|turn| {
         let checked = turn.check();
         if let Err(impossible) = &checked {
-            faults.note(place, code(impossible), impossible.to_string());
+            let given = FORMS.iter().find(|name| members.get(name).is_some());
+            let place = place.field(given.unwrap_or(&"axis"));
+            faults.note(&place, code(impossible), impossible.to_string());
         }
         checked.ok().map(|_| Change::Rotate(turn))
     });

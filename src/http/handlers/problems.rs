@@ -134,11 +134,11 @@ fn page(codes: &[Code]) -> String {
         );
         let status = code.status();
         // Writing into a String cannot fail.
-        let _ = write!(
+        let _ = writeln!(
             body,
             "<section id=\"{code}\"><h2>{title}</h2>\
              <p><a href=\"/problems/{code}\"><code>{code}</code></a>, status {status}</p>\
-             <p>{about}</p><p><strong>How to mend it:</strong> {mend}</p></section>\n"
+             <p>{about}</p><p><strong>How to mend it:</strong> {mend}</p></section>"
         );
     }
     include_str!("../../page/problems.html").replace("{{problems}}", &body)
