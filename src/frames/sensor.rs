@@ -107,8 +107,8 @@ impl Channel {
             .map(|r| libm::hypot(libm::hypot(r[0], r[1]), r[2]))
             .product();
         let determinant = dot(&rows[0], &cross(&rows[1], &rows[2])).to_f64();
-        // The comparison is false for NaN, which an overflow may have left.
-        if !(determinant.abs() > SINGULAR * size) {
+        // An overflow may have left NaN.
+        if determinant.is_nan() || determinant.abs() <= SINGULAR * size {
             let detail = format!(
                 "the matrix has determinant {determinant:e}: different fields would read the \
                  same; check for a row or column given twice or left zero"

@@ -147,19 +147,19 @@ impl Track {
 
     /// The steps from the parent to the frame: a boost, then a turn.
     pub fn steps(&self, sample: &Sample) -> Vec<Step> {
-        let boost = self.moves.then(|| {
-            Change::Boost(Motion::Velocity {
-                value: sample.velocity,
-                beta: self.beta,
-            })
+        let boost = Change::Boost(Motion::Velocity {
+            value: sample.velocity,
+            beta: self.beta,
         });
-        let turn = self
-            .turns
-            .then(|| Change::Rotate(Turn::Quaternion(sample.attitude)));
+        let turn = Change::Rotate(Turn::Quaternion(sample.attitude));
+        let has = [(self.moves, boost), (self.turns, turn)];
         let step = |change| Step {
             change,
             inverse: false,
         };
-        boost.into_iter().chain(turn).map(step).collect()
+        has.into_iter()
+            .filter(|(has, _)| *has)
+            .map(|(_, change)| step(change))
+            .collect()
     }
 }

@@ -17,6 +17,7 @@
 pub mod accept;
 pub mod body;
 pub mod cache;
+mod frames;
 mod gather;
 mod handlers;
 pub mod log;

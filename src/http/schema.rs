@@ -76,6 +76,7 @@ pub enum Time {
 
 /// What may be assumed about what was not measured.
 #[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[schema(example = json!({"e_dot_b_zero": {"min_angle": 15.0}}))]
 #[serde(deny_unknown_fields)]
 pub struct Assume {
     /// E·B = 0 gives one missing component of E, the common practice with two-axis probes.

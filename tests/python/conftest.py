@@ -4,7 +4,7 @@ import json
 
 import pytest
 
-from service import Service
+from service import ROOT, Service
 
 ERRORS = []
 
@@ -13,6 +13,14 @@ ERRORS = []
 def service(tmp_path_factory):
     """The release binary, started once; its end must be a clean one."""
     with Service(tmp_path_factory.mktemp("service") / "log.txt") as running:
+        yield running
+
+
+@pytest.fixture(scope="session")
+def demo(tmp_path_factory):
+    """The same with the demonstration's catalogue of frames."""
+    catalogue = ROOT / "deploy" / "demo" / "frames.toml"
+    with Service(tmp_path_factory.mktemp("demo") / "log.txt", "--frames", catalogue) as running:
         yield running
 
 

@@ -33,13 +33,6 @@ def start(tmp_path):
     assert [service.stop() for service in running] == [0] * len(running)
 
 
-@pytest.fixture(scope="module")
-def demo(tmp_path_factory):
-    """The service with the demonstration."""
-    with Service(tmp_path_factory.mktemp("demo") / "log.txt", "--frames", DEMO / "frames.toml") as running:
-        yield running
-
-
 def rotation(net):
     return Rotation.from_quat([net["rotation"][name] for name in "xyzw"])
 
@@ -256,4 +249,4 @@ def test_a_wrong_catalogue_is_never_served(tmp_path):
         done = run(*arguments)
         assert (done.returncode, done.stdout) == (2, "")
         assert f'{wrong}:3: frame "b": ' in done.stderr and "[unknown_parent]" in done.stderr
-        assert f'{wrong}:4: frame "b": steps.0.boost: ' in done.stderr and "[faster_than_light]" in done.stderr
+        assert f'{wrong}:4: frame "b": steps.0.boost.beta: ' in done.stderr and "[faster_than_light]" in done.stderr

@@ -5,112 +5,24 @@ use axum::{
     http::HeaderMap,
     response::Response,
 };
-use serde::Serialize;
-use utoipa::ToSchema;
 
 use super::json;
 use crate::{
-    answer::{ENGINE, NetTransformation, Notice, Provenance, net, rows},
+    answer::{ENGINE, Notice, Provenance, net, rows},
     document::{Code, Fault, Faults, Place, from_query},
-    frames::{Catalogue, Channel, Frame, Link, Time},
+    frames::{Catalogue, Time},
     http::{
         AppState,
         accept::{JSON, negotiate},
         cache::{cached, etag},
+        frames::{FrameList, FrameRow, Transformation, row, shown, units},
         problem::{CommonProblems, Problem, ProblemDocument, Source},
-        schema,
     },
     physics::scale::Scale,
-    units::Quantity,
 };
 
 /// How long an answer may be kept: it changes only when the service is started anew.
 const CACHE: &str = "public, max-age=60";
-
-/// The catalogue of frames.
-#[derive(Serialize, ToSchema)]
-pub(crate) struct FrameList {
-    /// What the catalogue is.
-    about: Option<String>,
-    /// What times in seconds are counted from; null when times are written as RFC 3339.
-    epoch: Option<String>,
-    /// Units of the catalogue; readings of sensors are calibrated to its units of E and B.
-    units: schema::Units,
-    /// Every frame, in the order of the file.
-    frames: Vec<FrameRow>,
-    /// What the answer was made with; `frames` is the hash of the catalogue.
-    provenance: Provenance,
-}
-
-/// A named frame.
-#[derive(Serialize, ToSchema)]
-pub(crate) struct FrameRow {
-    /// Its name.
-    name: String,
-    /// What it is.
-    about: Option<String>,
-    /// The frame that it is described from; null for the root.
-    parent: Option<String>,
-    /// Frames described from this one.
-    children: Vec<String>,
-    /// How it moves as seen from its parent: `fixed` (the same at all times), `turning` or `track`.
-    #[schema(example = "track")]
-    motion: String,
-    /// The times at which that motion is known; null when it is at all times.
-    valid: Option<Interval>,
-    /// Whether times outside are answered, with a notice.
-    extrapolate: bool,
-    /// What it reads, for a sensor.
-    sensor: Option<SensorRow>,
-}
-
-/// From one time to another.
-#[derive(Serialize, ToSchema)]
-pub(crate) struct Interval {
-    /// The first.
-    from: schema::Time,
-    /// The last.
-    to: schema::Time,
-}
-
-/// What a sensor reads.
-#[derive(Serialize, ToSchema)]
-pub(crate) struct SensorRow {
-    /// Its reading of E; null when its E is the field itself.
-    e: Option<ChannelRow>,
-    /// Its reading of B.
-    b: Option<ChannelRow>,
-}
-
-/// How raw numbers become a field: matrix · (raw − offset).
-#[derive(Serialize, ToSchema)]
-pub(crate) struct ChannelRow {
-    /// Which of x, y, z it measures.
-    axes: Vec<String>,
-    /// The matrix, from raw numbers to the unit of the catalogue.
-    matrix: [[f64; 3]; 3],
-    /// The offset, in raw numbers.
-    offset: [f64; 3],
-}
-
-/// The transformation between two frames.
-#[derive(Serialize, ToSchema)]
-pub(crate) struct Transformation {
-    /// The frame where it begins.
-    from: String,
-    /// The frame where it ends.
-    to: String,
-    /// The time it is for; null where it is the same at all times and none was given.
-    time: Option<schema::Time>,
-    /// The whole way as one boost and the turn after it; velocities in m/s.
-    net: NetTransformation,
-    /// Λ of the whole way, v' = Λv for v = (ct, x, y, z).
-    matrix: [[f64; 4]; 4],
-    /// Remarks that a careful colleague would make.
-    notices: Vec<Notice>,
-    /// What the answer was made with.
-    provenance: Provenance,
-}
 
 /// Every frame of the catalogue.
 #[utoipa::path(
@@ -268,64 +180,5 @@ fn find<'s>(state: &'s AppState, name: &str) -> Result<(&'s Catalogue, usize), P
     match catalogue.find(name) {
         Ok(frame) => Ok((catalogue, frame)),
         Err(fault) => Err(Problem::new(Code::NotFound, fault.detail)),
-    }
-}
-
-fn shown(time: Time, catalogue: &Catalogue) -> schema::Time {
-    match catalogue.epoch {
-        Some(_) => schema::Time::Seconds(time.seconds()),
-        None => schema::Time::Calendar(time.display(catalogue.clock)),
-    }
-}
-
-fn row(catalogue: &Catalogue, i: usize) -> FrameRow {
-    let frame: &Frame = &catalogue.frames()[i];
-    let name = |i: usize| catalogue.frames()[i].name.clone();
-    let (motion, valid, extrapolate) = match &frame.link {
-        Link::Steps(_) => ("fixed", None, false),
-        Link::Turning(_) => ("turning", None, false),
-        Link::Track(track) => {
-            let [from, to] = track.valid().map(|time| shown(time, catalogue));
-            ("track", Some(Interval { from, to }), track.extrapolate)
-        }
-    };
-    FrameRow {
-        name: frame.name.clone(),
-        about: frame.about.clone(),
-        parent: frame.parent.map(name),
-        children: catalogue.children(Some(i)).map(name).collect(),
-        motion: motion.into(),
-        valid,
-        extrapolate,
-        sensor: frame.sensor.map(|sensor| SensorRow {
-            e: sensor.e.map(channel),
-            b: sensor.b.map(channel),
-        }),
-    }
-}
-
-fn channel(channel: Channel) -> ChannelRow {
-    let names = ["x", "y", "z"].into_iter().zip(channel.axes);
-    ChannelRow {
-        axes: names
-            .filter(|(_, has)| *has)
-            .map(|(name, _)| name.to_owned())
-            .collect(),
-        matrix: channel.calibration.matrix,
-        offset: channel.calibration.offset,
-    }
-}
-
-fn units(catalogue: &Catalogue) -> schema::Units {
-    let code = |quantity| Some(catalogue.units.get(quantity).code.to_owned());
-    schema::Units {
-        e: code(Quantity::E),
-        b: code(Quantity::B),
-        velocity: code(Quantity::Velocity),
-        angle: code(Quantity::Angle),
-        angular_velocity: code(Quantity::AngularVelocity),
-        energy: code(Quantity::Energy),
-        length: code(Quantity::Length),
-        time: code(Quantity::Time),
     }
 }
