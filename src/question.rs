@@ -9,7 +9,7 @@ use crate::chain;
 use crate::document::{Code, Fault, Faults, Members, Node, Notice, Place};
 use crate::frames::{Catalogue, Channel, Sensor};
 use crate::physics::field::FieldUnits;
-use crate::physics::precise::Resolved;
+use crate::physics::resolved::Resolved;
 use crate::physics::tensor::Signature;
 use crate::transform::Reading;
 use crate::units::{Quantity, Units};

@@ -7,9 +7,9 @@ use crate::physics::energy::Energy;
 use crate::physics::field::{FieldUnits, Kernel, Measured};
 use crate::physics::invariants::Invariants;
 use crate::physics::parallel::{ParallelFrame, parallel_frame};
-use crate::physics::precise::Resolved;
 use crate::physics::real::{Vec3, round, vector};
 use crate::physics::reduction::{Calibration, Reduction};
+use crate::physics::resolved::Resolved;
 
 /// E and B at one event, any component of which may be missing.
 #[derive(Clone, Copy, Debug, PartialEq)]

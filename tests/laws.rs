@@ -5,7 +5,7 @@ use lodeframe::physics::constants::C;
 use lodeframe::physics::field::{FieldUnits, Measured};
 use lodeframe::physics::invariants::Invariants;
 use lodeframe::physics::lorentz::{Change, Step};
-use lodeframe::physics::precise::Resolved;
+use lodeframe::physics::resolved::Resolved;
 use lodeframe::physics::rotation::Turn;
 use lodeframe::physics::scale::Scale;
 use lodeframe::physics::tensor::{FieldTensor, Signature};

@@ -7,7 +7,7 @@ use crate::chain;
 use crate::document::{Code, Faults, Members, Node, Place};
 use crate::physics::boost::Motion;
 use crate::physics::lorentz::Step;
-use crate::physics::precise::Resolved;
+use crate::physics::resolved::Resolved;
 use crate::units::{Quantity, Units};
 
 /// A frame as written, its parent still a name and its track still a file.

@@ -6,6 +6,7 @@ use crate::physics::boost::Motion;
 use crate::physics::lorentz::{Change, Step};
 use crate::physics::rotation::Turn;
 use crate::physics::scale::Scale;
+use crate::physics::spin::Spin;
 
 /// A steady turn about ω: by phase + |ω|(t − epoch). A point of the turning body moves with ω×r.
 #[derive(Clone, Debug, PartialEq)]
@@ -49,13 +50,13 @@ impl Turning {
     }
 
     fn turn(&self, time: Time) -> Turn {
-        Turn::Spinning {
+        Turn::Spinning(Spin {
             angular_velocity: self.angular_velocity,
             rate: self.rate,
             phase: self.phase,
             radians: self.radians,
             elapsed: time.since(self.epoch),
-        }
+        })
     }
 
     fn motion(&self) -> Option<Motion> {

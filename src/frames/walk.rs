@@ -10,7 +10,7 @@ use crate::chain;
 use crate::document::{Code, Fault, Notice};
 use crate::physics::Impossible;
 use crate::physics::lorentz::{Change, Step};
-use crate::physics::precise::Resolved;
+use crate::physics::resolved::Resolved;
 
 /// The way from one frame to another; what does not change is already resolved.
 #[derive(Debug)]

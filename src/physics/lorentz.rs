@@ -41,6 +41,27 @@ pub enum Change {
 }
 
 impl Change {
+    /// Whether it changes the state of motion.
+    pub fn moves(&self) -> bool {
+        matches!(self, Change::Boost(_))
+    }
+
+    /// Whether two doubles hold the step to full precision.
+    pub fn fits_dd(&self) -> bool {
+        match self {
+            Change::Boost(motion) => motion.fits_dd(),
+            Change::Rotate(turn) => turn.fits_dd(),
+        }
+    }
+
+    /// log2 of γ(1+β), by which the step can multiply a field, or a little more.
+    pub fn growth(&self) -> f64 {
+        match self {
+            Change::Boost(motion) => motion.growth(),
+            Change::Rotate(_) => 0.0,
+        }
+    }
+
     /// About how many bits below one the smallest number of the step lies.
     pub fn depth(&self) -> i64 {
         match self {
@@ -124,6 +145,19 @@ impl<R: Real> Net<R> {
         if self.boost.is_none() && self.turn.is_none() {
             return Net {
                 boost: Some(boost),
+                ..self
+            };
+        }
+        if let (None, Some(turn)) = (&self.boost, &self.turn) {
+            // Seen on the axes before the turn, it is the same boost along a direction turned back.
+            let m = turn.matrix();
+            let direction = std::array::from_fn(|i| {
+                let term = |k: usize| m[k][i].clone() * boost.direction[k].clone();
+                term(0) + term(1) + term(2)
+            });
+            return Net {
+                boost: Some(Boost { direction, ..boost }),
+                direction_as_given: false,
                 ..self
             };
         }

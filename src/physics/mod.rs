@@ -13,8 +13,10 @@ pub mod parallel;
 pub mod precise;
 pub mod real;
 pub mod reduction;
+pub mod resolved;
 pub mod rotation;
 pub mod scale;
+pub mod spin;
 pub mod tensor;
 
 pub use big::Big;

@@ -4,16 +4,12 @@
 //! not smaller than 2⁻⁴⁰ of that. Where it is, or where an exponent leaves their range, the way
 //! and the reading are computed again with as many bits as it takes.
 
-use std::sync::Arc;
-
-use nalgebra::Matrix4;
-
 use super::big::Big;
 use super::double_double::Dd;
 use super::error::Impossible;
 use super::field::{FieldUnits, Kernel, Measured};
-use super::lorentz::{Change, Net, Step};
 use super::real::{Real, Vec3, exponent_spread, round};
+use super::resolved::Resolved;
 use super::scale::Scale;
 
 /// Result over what was summed, below which two doubles no longer suffice.
@@ -22,40 +18,6 @@ const KEPT: f64 = 1.0 / (1u64 << 40) as f64;
 const LEVELS: [usize; 4] = [256, 640, 1536, 4608];
 /// Bits below the size of what was summed that a result at least keeps.
 const GUARD: i64 = 120;
-/// Largest product of γ(1+β) over the steps of a way, as a power of two.
-const MAX_GROWTH: f64 = 2048.0;
-/// Up to this growth a chain is composed in two doubles.
-const DD_GROWTH: f64 = 20.0;
-/// Below this net γ two doubles have room for its products.
-const DD_GAMMA: f64 = 1e60;
-
-/// A way whose net transformation is known, ready for any number of readings.
-#[derive(Clone, Debug)]
-pub struct Resolved {
-    /// The steps, in pieces that ways share.
-    steps: Vec<Arc<[Step]>>,
-    tally: Tally,
-    net: Net<Dd>,
-    /// By how much the error of the net transformation exceeds that of one step.
-    slack: f64,
-    /// Whether two doubles have room for products of the net γ.
-    fits_dd: bool,
-}
-
-/// What counts when steps are composed.
-#[derive(Clone, Copy, Debug)]
-struct Tally {
-    /// How many steps move.
-    moving: u32,
-    /// log2 Π γ(1+β) over the steps.
-    growth: f64,
-    /// Whether two doubles hold every step.
-    fits: bool,
-    /// By how much the error of the worst turn exceeds that of two doubles.
-    turned: f64,
-    /// The largest departure of a quaternion or matrix that was mended.
-    mended: f64,
-}
 
 /// A transformed field.
 #[derive(Clone, Debug)]
@@ -72,118 +34,13 @@ pub struct Applied {
 }
 
 impl Resolved {
-    /// Composes steps that passed their checks.
-    ///
-    /// # Errors
-    /// The speeds of the steps multiply up beyond the precision kept, or the net γ is larger
-    /// than a double can hold.
-    pub fn new(steps: Vec<Step>) -> Result<Resolved, Impossible> {
-        let tally = steps.iter().map(Tally::of).fold(Tally::NOTHING, Tally::and);
-        let steps: Arc<[Step]> = steps.into();
-        Resolved::compose(vec![steps.clone()], tally, || Net::of(&*steps, ()))
-    }
-
-    /// Joins ways, one after the other, without resolving any of them again.
-    ///
-    /// # Errors
-    /// As for [`new`](Self::new).
-    pub fn join<'r>(
-        parts: impl IntoIterator<Item = &'r Resolved> + Clone,
-    ) -> Result<Resolved, Impossible> {
-        let all = || parts.clone().into_iter();
-        let steps = all().flat_map(|part| part.steps.iter().cloned()).collect();
-        let tally = all()
-            .map(|part| part.tally)
-            .fold(Tally::NOTHING, Tally::and);
-        Resolved::compose(steps, tally, || {
-            all().fold(Net::IDENTITY, |net, part| net.then(&part.net))
-        })
-    }
-
-    fn compose(
-        steps: Vec<Arc<[Step]>>,
-        tally: Tally,
-        in_dd: impl FnOnce() -> Net<Dd>,
-    ) -> Result<Resolved, Impossible> {
-        let Tally { moving, growth, .. } = tally;
-        if growth > MAX_GROWTH {
-            return Err(Impossible::PrecisionExhausted {
-                growth,
-                limit: MAX_GROWTH,
-            });
-        }
-        let mut resolved = Resolved {
-            steps,
-            tally,
-            net: Net::IDENTITY,
-            slack: tally.turned,
-            fits_dd: true,
-        };
-        if tally.fits && (moving < 2 || growth <= DD_GROWTH) {
-            resolved.net = in_dd();
-            if moving > 1 {
-                let lost = growth - libm::log2(2.0 * gamma(&resolved.net));
-                resolved.slack *= f64::from(moving) * libm::exp2(lost.max(0.0) / 2.0);
-            }
-        } else {
-            let net = resolved.big(LEVELS[0] + growth as usize);
-            let exponent = net.boost.as_ref().and_then(|boost| boost.gamma.exponent());
-            if let Some(bits) = exponent.filter(|bits| *bits > 1023) {
-                return Err(Impossible::GammaOverflow { bits });
-            }
-            resolved.net = net.to_dd();
-        }
-        resolved.fits_dd = gamma(&resolved.net) < DD_GAMMA;
-        Ok(resolved)
-    }
-
-    /// The net transformation in as many bits as asked for.
-    fn big(&self, context: usize) -> Net<Big> {
-        Net::of(self.steps(), context)
-    }
-
-    /// The net transformation to the precision of two doubles.
-    pub fn net(&self) -> &Net<Dd> {
-        &self.net
-    }
-
-    /// The steps as given.
-    pub fn steps(&self) -> impl Iterator<Item = &Step> {
-        self.steps.iter().flat_map(|piece| piece.iter())
-    }
-
-    /// How far the worst quaternion or matrix was from a rotation.
-    pub fn mended(&self) -> f64 {
-        self.tally.mended
-    }
-
-    /// Λ of the net transformation, rounded to doubles.
-    pub fn matrix(&self) -> Matrix4<f64> {
-        if self.fits_dd {
-            return self.net.matrix(());
-        }
-        let context = self.context(LEVELS[0]);
-        self.big(context).matrix(context)
-    }
-
-    /// The precision in which a result keeps `bits` of its bits: a chain spends as many as its
-    /// steps multiply up, and e^−η against e^η of the net boost takes its own.
-    fn context(&self, bits: usize) -> usize {
-        bits + self.tally.growth as usize + self.net_bits()
-    }
-
-    /// Bits between e^η and e^−η of the net boost, and half as many to spare.
-    fn net_bits(&self) -> usize {
-        (3.0 * libm::log2(2.0 * gamma(&self.net))) as usize
-    }
-
     /// The field in the target frame, in the units `to`.
     ///
     /// # Errors
     /// A component is larger than the largest double.
     pub fn apply(&self, field: &Measured, to: FieldUnits) -> Result<Applied, Impossible> {
-        let fast = (self.fits_dd && in_range(field)).then(|| {
-            let kernel = Kernel::new(&self.net, field.units, ());
+        let fast = (self.fits_dd() && in_range(field)).then(|| {
+            let kernel = Kernel::new(self.net(), field.units, ());
             let [e, b] = field.vectors(());
             let (e, b) = kernel.apply(&e, &b);
             (
@@ -230,17 +87,17 @@ impl Resolved {
     /// net transformation: no product of its rounded direction vanishes exactly.
     fn chain_sizes(&self, kernel: &Kernel<Dd>, field: &Measured) -> [f64; 2] {
         let Some(boost) = self
-            .net
+            .net()
             .boost
             .as_ref()
-            .filter(|_| !self.net.direction_as_given)
+            .filter(|_| !self.net().direction_as_given)
         else {
             return [0.0; 2];
         };
         let [e, b] = field
             .magnitudes()
             .map(|x| libm::hypot(libm::hypot(x[0], x[1]), x[2]));
-        let factor = 2.0 * boost.gamma.hi * self.slack;
+        let factor = 2.0 * boost.gamma.hi * self.slack();
         [
             factor * (e + kernel.cb_over_e * b),
             factor * (b + e / kernel.cb_over_e),
@@ -315,63 +172,13 @@ impl Resolved {
         if !field.reduction.is_none() {
             return LEVELS[2];
         }
-        let spread = [field.e, field.b]
-            .map(exponent_spread)
-            .into_iter()
-            .max()
-            .unwrap_or(0);
-        let depth = self
-            .steps()
-            .map(|step| step.change.depth())
-            .max()
-            .unwrap_or(0);
-        let needed = 400 + 2 * spread + 3 * depth;
+        let spread = [field.e, field.b].map(exponent_spread).into_iter().max();
+        let depth = self.steps().map(|step| step.change.depth()).max();
+        let needed = 400 + 2 * spread.unwrap_or(0) + 3 * depth.unwrap_or(0);
         LEVELS
             .into_iter()
             .find(|bits| *bits as i64 >= needed)
             .unwrap_or(LEVELS[3])
-    }
-}
-
-/// γ of a net transformation.
-fn gamma(net: &Net<Dd>) -> f64 {
-    net.boost.as_ref().map_or(1.0, |boost| boost.gamma.hi)
-}
-
-impl Tally {
-    const NOTHING: Tally = Tally {
-        moving: 0,
-        growth: 0.0,
-        fits: true,
-        turned: 1.0,
-        mended: 0.0,
-    };
-
-    fn of(step: &Step) -> Tally {
-        match &step.change {
-            Change::Boost(motion) => Tally {
-                moving: 1,
-                growth: motion.growth(),
-                fits: motion.fits_dd(),
-                ..Tally::NOTHING
-            },
-            Change::Rotate(turn) => Tally {
-                fits: turn.fits_dd(),
-                turned: turn.slack(),
-                mended: turn.check().unwrap_or(0.0),
-                ..Tally::NOTHING
-            },
-        }
-    }
-
-    fn and(self, next: Tally) -> Tally {
-        Tally {
-            moving: self.moving + next.moving,
-            growth: self.growth + next.growth,
-            fits: self.fits && next.fits,
-            turned: self.turned.max(next.turned),
-            mended: self.mended.max(next.mended),
-        }
     }
 }
 

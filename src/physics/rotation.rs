@@ -7,6 +7,7 @@ use super::double_double::Dd;
 use super::error::Impossible;
 use super::real::{Real, Vec3, dot, exponent_spread, norm2, vector};
 use super::scale::Scale;
+use super::spin::Spin;
 
 /// The turn of the axes, in the form it was given.
 #[derive(Clone, Debug, PartialEq)]
@@ -35,25 +36,12 @@ pub enum Turn {
         /// About the axes as turned so far, or about those at the start.
         moving: bool,
     },
-    /// A turn that has gone on at a constant rate: phase + |ω|·elapsed about ω.
-    Spinning {
-        /// ω, in the unit of `rate`.
-        angular_velocity: [f64; 3],
-        /// What turns ω into rad/s.
-        rate: Scale,
-        /// The angle at the start, in the unit of `radians`.
-        phase: f64,
-        /// What turns the phase into radians.
-        radians: Scale,
-        /// Seconds since the start.
-        elapsed: Dd,
-    },
+    /// A turn that has gone on at a constant rate.
+    Spinning(Spin),
 }
 
 /// Largest departure of |q|² and MMᵀ from one that is taken as rounding and mended.
 pub const ROUNDING_LIMIT: f64 = 2e-6;
-/// Up to this many quarter turns two doubles keep the digits that count.
-const MANY_QUARTERS: f64 = 1e12;
 
 /// w + xi + yj + zk, of any length but zero.
 #[derive(Clone, Debug)]
@@ -86,12 +74,8 @@ impl Turn {
             Turn::AxisAngle { axis, .. } if *axis == [0.0; 3] => {
                 Err(Impossible::NoDirection { what: "axis" })
             }
-            Turn::Spinning {
-                angular_velocity, ..
-            } if *angular_velocity == [0.0; 3] => Err(Impossible::NoDirection {
-                what: "angular_velocity",
-            }),
-            Turn::AxisAngle { .. } | Turn::Euler { .. } | Turn::Spinning { .. } => Ok(0.0),
+            Turn::Spinning(spin) => spin.check().map(|()| 0.0),
+            Turn::AxisAngle { .. } | Turn::Euler { .. } => Ok(0.0),
             Turn::Quaternion(q) => {
                 if *q == [0.0; 4] {
                     return Err(Impossible::NoDirection { what: "quaternion" });
@@ -136,12 +120,7 @@ impl Turn {
             Turn::Euler {
                 angles, radians, ..
             } => angles.iter().all(|a| small(*a, *radians)),
-            Turn::Spinning {
-                angular_velocity, ..
-            } => {
-                let sane = |x: &f64| *x == 0.0 || (1e-60..1e60).contains(&x.abs());
-                angular_velocity.iter().all(sane) && self.slack() < MANY_QUARTERS
-            }
+            Turn::Spinning(spin) => spin.fits_dd(),
             Turn::Quaternion(_) | Turn::Matrix(_) => true,
         }
     }
@@ -166,38 +145,16 @@ impl Turn {
                 let [a, b, c] = angles.map(|angle| angle * radians.to_f64());
                 exponent_spread([1.0, a, b, c])
             }
-            Turn::Spinning {
-                angular_velocity, ..
-            } => exponent_spread(*angular_velocity),
+            Turn::Spinning(spin) => spin.depth(),
         }
     }
 
-    /// By how much the error of [`quaternion`](Self::quaternion) exceeds that of its arithmetic:
-    /// the quarter turns of a spin are counted off after they were multiplied up.
+    /// By how much the error of [`quaternion`](Self::quaternion) exceeds that of its arithmetic.
     pub fn slack(&self) -> f64 {
         match self {
-            Turn::Spinning { .. } => self.quarters::<Dd>(()).hi.abs().max(1.0),
+            Turn::Spinning(spin) => spin.slack(),
             _ => 1.0,
         }
-    }
-
-    /// The angle of a spin in quarter turns; zero for the other forms.
-    fn quarters<R: Real>(&self, context: R::Context) -> R {
-        let Turn::Spinning {
-            angular_velocity,
-            rate,
-            phase,
-            radians,
-            elapsed,
-        } = self
-        else {
-            return R::new(0.0, context);
-        };
-        let quarter = Scale::pi(1, 2);
-        let omega = norm2(&vector::<R>(*angular_velocity, context)).sqrt();
-        let elapsed = R::new(elapsed.hi, context) + R::new(elapsed.lo, context);
-        let turned = omega * rate.over(quarter).value(context) * elapsed;
-        turned + R::new(*phase, context) * radians.over(quarter).value(context)
     }
 
     /// The turn as a quaternion, of a form that passed [`check`](Self::check).
@@ -208,15 +165,7 @@ impl Turn {
                 angle,
                 radians,
             } => about_axis(*axis, half_angle::<R>(*angle, *radians, context), context),
-            Turn::Spinning {
-                angular_velocity, ..
-            } => {
-                let quarters = self.quarters::<R>(context);
-                let whole = quarters.to_f64().round();
-                let rest = (quarters - R::new(whole, context)) * R::pi(context).scale2(-1);
-                let half = half_of_quarters(rest, (whole % 4.0) as i32);
-                about_axis(*angular_velocity, half, context)
-            }
+            Turn::Spinning(spin) => spin.quaternion(context),
             Turn::Quaternion([w, x, y, z]) => Quaternion {
                 w: R::new(*w, context),
                 v: vector([*x, *y, *z], context),
@@ -250,7 +199,11 @@ fn finite(x: f64) -> f64 {
 }
 
 /// The turn about an axis of any length, from cosine and sine of half its angle.
-fn about_axis<R: Real>(axis: [f64; 3], (w, s): (R, R), context: R::Context) -> Quaternion<R> {
+pub(super) fn about_axis<R: Real>(
+    axis: [f64; 3],
+    (w, s): (R, R),
+    context: R::Context,
+) -> Quaternion<R> {
     let axis = vector::<R>(super::boost::unit_exponent(axis), context);
     let length = norm2(&axis).sqrt();
     Quaternion {
@@ -271,7 +224,7 @@ fn half_angle<R: Real>(angle: f64, radians: Scale, context: R::Context) -> (R, R
 }
 
 /// Cosine and sine of half of an angle and some quarter turns, up to a common factor.
-fn half_of_quarters<R: Real>(angle: R, quarters: i32) -> (R, R) {
+pub(super) fn half_of_quarters<R: Real>(angle: R, quarters: i32) -> (R, R) {
     let (sin, cos) = angle.scale2(-1).sin_cos();
     match quarters.rem_euclid(4) {
         0 => (cos, sin),

@@ -7,7 +7,7 @@ use crate::chain::{self, step};
 use crate::document::{Code, Faults, Members, Notice, Place};
 use crate::frames::{Sensor, Time, Walk};
 use crate::physics::lorentz::Step;
-use crate::physics::precise::Resolved;
+use crate::physics::resolved::Resolved;
 use crate::units::Units;
 
 /// The ways to name the target; exactly one is needed.
