@@ -183,6 +183,10 @@ impl Real for Dd {
         Dd::from_f64(value)
     }
     fn integer(value: u128, (): ()) -> Dd {
+        // Conversions of 128 bits are slow library calls.
+        if value < 1 << 53 {
+            return Dd::from_f64(value as u64 as f64);
+        }
         // The conversion rounds to nearest; what it leaves out is below 2¹²⁸⁻⁵³ and is kept.
         let hi = value as f64;
         let rest = value.wrapping_sub(hi as u128) as i128;

@@ -8,7 +8,7 @@ use super::big::Big;
 use super::double_double::Dd;
 use super::error::Impossible;
 use super::field::{FieldUnits, Kernel, Measured};
-use super::real::{Real, Vec3, cross, exponent_spread, round, vector};
+use super::real::{Real, Vec3, exponent_spread, round};
 use super::resolved::Resolved;
 use super::scale::Scale;
 
@@ -232,22 +232,29 @@ fn sizes(kernel: &Kernel<Dd>, field: &Measured) -> [f64; 2] {
             own.map(|x| libm::hypot(libm::hypot(x[0], x[1]), x[2]))
         };
     };
-    let (exact_d, d) = (vector::<Dd>(round(d), ()), round(d));
+    let d = round(d);
     let exact = field.vectors::<Dd>(());
     let [xe, xb]: [[f64; 3]; 2] = std::array::from_fn(|which| {
-        let (exact, x) = (cross(&exact_d, &exact[which]), own[which]);
+        let (exact, x) = (&exact[which], own[which]);
         std::array::from_fn(|i| {
             let (j, k) = ((i + 1) % 3, (i + 2) % 3);
-            let size = d[j].abs() * x[k] + d[k].abs() * x[j];
-            if exact[i].is_zero() { 0.0 } else { size }
+            // A component that vanishes exactly has no size, whatever its terms.
+            let vanishes = d[j] * exact[k].hi == d[k] * exact[j].hi
+                && (exact[k].times(d[j]) - exact[j].times(d[k])).is_zero();
+            if vanishes {
+                0.0
+            } else {
+                d[j].abs() * x[k] + d[k].abs() * x[j]
+            }
         })
     });
     let size = |own: &[f64; 3], x: &[f64; 3], other: &[f64; 3], factor: f64| {
-        (0..3).fold(0.0f64, |sum, i| {
+        let component = |i: usize| {
             let (j, l) = ((i + 1) % 3, (i + 2) % 3);
             let across = k.hi * (x[j] * d[l].abs() + x[l] * d[j].abs());
-            libm::hypot(sum, own[i] + across + factor.abs() * other[i])
-        })
+            own[i] + across + factor.abs() * other[i]
+        };
+        component(0) + component(1) + component(2)
     };
     [size(&own[0], &xe, &xb, p.hi), size(&own[1], &xb, &xe, q.hi)]
 }
