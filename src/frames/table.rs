@@ -52,7 +52,8 @@ pub(super) fn read(
                       time,vx,vy,vz,qw,qx,qy,qz";
         return Err(vec![(Some(1), Reason::new(Code::MissingField, detail))]);
     }
-    let columns = Columns::of(&record)?;
+    let mut columns = Columns::of(&record)?;
+    columns.slow = 0.5 / track.beta.to_f64();
     track.moves = columns.has(1);
     track.turns = columns.has(2);
     let mut faults = Faults::default();
@@ -120,6 +121,8 @@ impl Faults {
 struct Columns {
     places: [Option<Vec<usize>>; 5],
     width: usize,
+    /// Half of c: three components no larger are below it together.
+    slow: f64,
 }
 
 impl Columns {
@@ -173,7 +176,11 @@ impl Columns {
         }
         if faults.is_empty() {
             let width = names.len();
-            Ok(Columns { places, width })
+            Ok(Columns {
+                places,
+                width,
+                slow: 0.0,
+            })
         } else {
             Err(faults)
         }
@@ -203,7 +210,7 @@ impl Columns {
         let velocity = self.numbers::<3>(record, 1, &mut faults);
         let attitude = self.numbers::<4>(record, 2, &mut faults);
         let mut departure = 0.0;
-        if let (true, Some(value)) = (track.moves, velocity) {
+        if let Some(value) = velocity.filter(|v| v.iter().any(|x| x.abs() > self.slow)) {
             let motion = Motion::Velocity {
                 value,
                 beta: track.beta,

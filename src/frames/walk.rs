@@ -208,7 +208,13 @@ fn steps_at(
             let sample = track.sample(time, hint);
             let steps = track.steps(&sample);
             if sample.beyond != 0.0 {
-                outside(track, &frame.name, time, sample.beyond, &steps, notices)?;
+                outside(track, &frame.name, time, sample.beyond, notices)?;
+            }
+            // An extrapolated speed may pass c, and next to c an interpolated one by rounding.
+            for step in &steps {
+                if let Change::Boost(motion) = &step.change {
+                    motion.check().map_err(refuse)?;
+                }
             }
             Ok(steps)
         }
@@ -221,7 +227,6 @@ fn outside(
     name: &str,
     time: Time,
     beyond: f64,
-    steps: &[Step],
     notices: &mut Vec<Notice>,
 ) -> Result<(), Fault> {
     let [first, last] = track.valid().map(|time| time.display(track.clock));
@@ -236,12 +241,6 @@ fn outside(
             time.display(track.clock)
         );
         return Err(Fault::whole(Code::TimeOutsideTrack, detail));
-    }
-    // Between two speeds below c lies no other; beyond them one may.
-    for step in steps {
-        if let Change::Boost(motion) = &step.change {
-            motion.check().map_err(refuse)?;
-        }
     }
     notices.push(Notice {
         code: "extrapolated_time",

@@ -150,13 +150,14 @@ impl<R: Real> Net<R> {
         }
         if let (None, Some(turn)) = (&self.boost, &self.turn) {
             // Seen on the axes before the turn, it is the same boost along a direction turned back.
-            let m = turn.matrix();
-            let direction = std::array::from_fn(|i| {
-                let term = |k: usize| m[k][i].clone() * boost.direction[k].clone();
-                term(0) + term(1) + term(2)
-            });
+            let direction = turn.carry(&boost.direction);
+            let stretch = boost.stretch / turn.norm2();
             return Net {
-                boost: Some(Boost { direction, ..boost }),
+                boost: Some(Boost {
+                    direction,
+                    stretch,
+                    ..boost
+                }),
                 direction_as_given: false,
                 ..self
             };

@@ -260,6 +260,19 @@ impl<R: Real> Quaternion<R> {
         self.w.square() + norm2(&self.v)
     }
 
+    /// |q|² R v: the vector carried along by the turn, and stretched.
+    pub fn carry(&self, v: &Vec3<R>) -> Vec3<R> {
+        let across = super::real::cross(&self.v, v);
+        let along = dot(&self.v, v).scale2(1);
+        let own = self.w.square() - norm2(&self.v);
+        let twice = self.w.scale2(1);
+        std::array::from_fn(|i| {
+            own.clone() * v[i].clone()
+                + along.clone() * self.v[i].clone()
+                + twice.clone() * across[i].clone()
+        })
+    }
+
     /// Whether it turns nothing.
     pub fn is_identity(&self) -> bool {
         self.v.iter().all(R::is_zero)
