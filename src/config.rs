@@ -116,6 +116,15 @@ pub struct Settings {
     )]
     max_steps: String,
 
+    /// Points that one sweep may have.
+    #[arg(
+        long,
+        env = "LODEFRAME_MAX_POINTS",
+        value_name = "COUNT",
+        default_value = "10000"
+    )]
+    max_points: String,
+
     /// Time for one request, from its headers to the head of its answer.
     #[arg(
         long,
@@ -172,6 +181,8 @@ pub struct Config {
     pub max_concurrent: usize,
     /// Steps in the way of one question.
     pub max_steps: usize,
+    /// Points in one sweep.
+    pub max_points: usize,
     /// Time for one request until its answer begins.
     pub request_timeout: Duration,
     /// Time for headers to arrive.
@@ -226,6 +237,7 @@ impl Settings {
             }),
             max_concurrent: count(&mut faults, "max-concurrent", &self.max_concurrent),
             max_steps: count(&mut faults, "max-steps", &self.max_steps),
+            max_points: count(&mut faults, "max-points", &self.max_points),
             request_timeout: time(&mut faults, "request-timeout", &self.request_timeout),
             idle_timeout: time(&mut faults, "idle-timeout", &self.idle_timeout),
             grace: read::<humantime::Duration>(&mut faults, "grace", &self.grace, TIME)

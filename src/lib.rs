@@ -14,6 +14,8 @@
 //! | [`transform`] | the meeting point: a reading and a resolved way give the answer |
 //! | [`question`] | what is asked, read from a tree |
 //! | [`answer`] | what is answered, as JSON |
+//! | [`sweep`] | the same question over a range of speeds or angles |
+//! | [`picture`] | SVG pictures of answers |
 //! | [`config`] | every flag and variable, with its default |
 //! | [`http`] | paths, handlers, problems, middleware; the only part that knows axum |
 
@@ -24,7 +26,9 @@ pub mod document;
 pub mod frames;
 pub mod http;
 pub mod physics;
+pub mod picture;
 pub mod question;
+pub mod sweep;
 pub mod transform;
 pub mod units;
 

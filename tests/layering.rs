@@ -7,7 +7,7 @@ use std::{
 };
 
 /// The modules of the crate, each of which may import only from those before it.
-const ORDER: [&str; 12] = [
+const ORDER: [&str; 13] = [
     "physics",
     "units",
     "document",
@@ -16,6 +16,7 @@ const ORDER: [&str; 12] = [
     "transform",
     "question",
     "answer",
+    "sweep",
     "series",
     "picture",
     "config",

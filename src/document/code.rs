@@ -134,6 +134,12 @@ codes! {
     TooManySteps "too_many_steps" 422 "A way of too many steps",
         "The way holds more steps than this service resolves for one question.",
         "Join neighbouring rotations, or ask in two parts.";
+    PointsOutOfRange "points_out_of_range" 422 "Too few or too many points",
+        "A sweep has at least two points and at most as many as this service draws at once.",
+        "Choose points between the two numbers of the detail, or ask for the range in parts.";
+    EmptyRange "empty_range" 422 "A range without extent",
+        "A sweep begins and ends at the same value.",
+        "Give a stop that differs from start; it may be smaller.";
     Overflow "overflow" 422 "An answer no double can hold",
         "A component of the answer is larger than the largest double.",
         "Choose an answer unit in which it is smaller (answer_units).";

@@ -7,6 +7,10 @@ use crate::document::Code;
 
 /// JSON, the default everywhere.
 pub const JSON: &str = "application/json";
+/// Columns as text (RFC 4180).
+pub const CSV: &str = "text/csv";
+/// A picture.
+pub const SVG: &str = "image/svg+xml";
 /// A page for people.
 pub const HTML: &str = "text/html";
 

@@ -9,6 +9,9 @@ use axum::{
 };
 use sha2::{Digest, Sha256};
 
+/// How long an answer may be kept: it never changes for one version of the service.
+pub const IMMUTABLE: &str = "public, max-age=86400";
+
 /// A strong entity tag of everything the bytes of an answer depend on.
 ///
 /// Each part is hashed with its length before it, so that moving a byte from one part to the next

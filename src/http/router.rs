@@ -23,12 +23,14 @@ pub fn routes() -> OpenApiRouter<AppState> {
             handlers::transform::transform,
             handlers::transform::transform_by_url
         ))
+        .routes(routes!(handlers::sweep::sweep))
         .routes(routes!(handlers::frames::list_frames))
         .routes(routes!(handlers::frames::show_frame))
         .routes(routes!(handlers::frames::transformation))
         .routes(routes!(handlers::units::units))
         .routes(routes!(handlers::constants::constants))
         .routes(routes!(handlers::page::page))
+        .routes(routes!(handlers::page::page_asset))
         .routes(routes!(handlers::openapi::openapi))
         .routes(routes!(handlers::reference::reference))
         .routes(routes!(handlers::reference::reference_asset))

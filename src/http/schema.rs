@@ -1,8 +1,13 @@
 //! The shape of a question, for the OpenAPI document. Questions are read by hand from a tree,
 //! so that every fault is found at once; a test keeps that reader and these types equal.
 
+pub mod examples;
+mod query;
+
+pub use query::{Query, RangeQuery, WayQuery};
+
 use serde::{Deserialize, Serialize};
-use utoipa::{IntoParams, ToSchema};
+use utoipa::ToSchema;
 
 /// A reading, the way to the target frame, and what the answer should hold.
 ///
@@ -172,8 +177,8 @@ pub enum Step {
     Rotate(Rotate),
 }
 
-/// A boost, by exactly one of `velocity`; `beta`; `direction` with one of `gamma`, `rapidity`,
-/// or `kinetic_energy` and `particle`; `angular_velocity` with `position`.
+/// A boost, by exactly one of `velocity`; `beta`; `direction` with one of `beta`, `gamma`,
+/// `rapidity`, or `kinetic_energy` and `particle`; `angular_velocity` with `position`.
 #[derive(Clone, Debug, Default, Serialize, Deserialize, ToSchema)]
 #[schema(example = json!({"velocity": [7600.0, 0.0, 0.0]}))]
 #[serde(deny_unknown_fields)]
@@ -182,10 +187,9 @@ pub struct Boost {
     #[serde(skip_serializing_if = "Option::is_none")]
     #[schema(min_items = 3, max_items = 3)]
     pub velocity: Option<[f64; 3]>,
-    /// The same over c.
+    /// The same over c; beside `direction` a single number, negative against it.
     #[serde(skip_serializing_if = "Option::is_none")]
-    #[schema(min_items = 3, max_items = 3)]
-    pub beta: Option<[f64; 3]>,
+    pub beta: Option<Beta>,
     /// Direction of motion, of any length but zero.
     #[serde(skip_serializing_if = "Option::is_none")]
     #[schema(min_items = 3, max_items = 3)]
@@ -215,6 +219,16 @@ pub struct Boost {
     /// Undo this step: for a motion reported from the other side.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub inverse: Option<bool>,
+}
+
+/// A velocity over c: a vector, or its size beside a direction.
+#[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
+#[serde(untagged)]
+pub enum Beta {
+    /// On the current axes.
+    Vector([f64; 3]),
+    /// Along `direction`.
+    Size(f64),
 }
 
 /// A particle by name or by rest energy.
@@ -313,139 +327,4 @@ pub enum About {
     Moving,
     /// The axes at the start.
     Fixed,
-}
-
-/// The question as parameters: each is a path into the JSON question, joined by dots.
-#[derive(IntoParams)]
-#[into_params(parameter_in = Query)]
-#[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
-pub struct Query {
-    /// Electric field: three numbers joined by commas; an empty one is missing.
-    #[param(required = false, example = "0,1.2,0")]
-    e: String,
-    /// Magnetic flux density: three numbers joined by commas; an empty one is missing.
-    #[param(required = false, example = "0,0,45000")]
-    b: String,
-    /// Unit of E; likewise `units.angle`, `units.angular_velocity`, `units.energy`, `units.length`.
-    #[param(required = false, rename = "units.e", example = "mV/m")]
-    units_e: String,
-    /// Unit of B.
-    #[param(required = false, rename = "units.b", example = "nT")]
-    units_b: String,
-    /// Unit of velocities.
-    #[param(required = false, rename = "units.velocity", example = "km/s")]
-    units_velocity: String,
-    /// The way as one boost: three numbers joined by commas.
-    #[param(required = false, example = "7.6,0,0")]
-    velocity: String,
-    /// The way as a chain: JSON text.
-    #[param(required = false)]
-    steps: String,
-    /// The way as one rotation: its axis; likewise `rotation.matrix`, `rotation.quaternion.w` and so on.
-    #[param(required = false, rename = "rotation.axis")]
-    rotation_axis: String,
-    /// The angle of that rotation.
-    #[param(required = false, rename = "rotation.angle")]
-    rotation_angle: String,
-    /// The way as one boost: its direction; likewise `boost.beta`, `boost.rapidity` and so on.
-    #[param(required = false, rename = "boost.direction")]
-    boost_direction: String,
-    /// The Lorentz factor of that boost.
-    #[param(required = false, rename = "boost.gamma")]
-    boost_gamma: String,
-    /// The way by names of the catalogue: the frame of the reading.
-    #[param(required = false)]
-    from: String,
-    /// The target frame, with `from`.
-    #[param(required = false)]
-    to: String,
-    /// When the reading was taken: RFC 3339 (a `+` is written %2B), or seconds from the epoch of the catalogue.
-    #[param(required = false)]
-    time: String,
-    /// Fill a missing component of E from E·B = 0; the least angle of B to the measured plane.
-    #[param(required = false, rename = "assume.e_dot_b_zero.min_angle")]
-    assume_e_dot_b_zero_min_angle: String,
-    /// Take the whole way backwards.
-    #[param(required = false)]
-    inverse: String,
-    /// Further parts of the answer, joined by commas.
-    #[param(required = false)]
-    include: String,
-    /// Convention of the tensor: mostly_minus or mostly_plus.
-    #[param(required = false)]
-    signature: String,
-    /// Unit of E' in the answer.
-    #[param(required = false, rename = "answer_units.e")]
-    answer_units_e: String,
-    /// Unit of B' in the answer.
-    #[param(required = false, rename = "answer_units.b")]
-    answer_units_b: String,
-}
-
-/// Questions of the OpenAPI document and their true answers. All values are invented.
-pub mod examples {
-    use serde_json::{Value, json};
-
-    use crate::{
-        answer::Answer,
-        document::Node,
-        question::{Deployment, Question},
-    };
-
-    /// A probe pair on a satellite, restated for an observer at rest below it.
-    pub fn orbiting_probe() -> Value {
-        json!({
-            "e": [12.5, 340.0, -3.75],
-            "b": [1200.0, -450.0, 44700.0],
-            "units": {"e": "mV/m", "b": "nT", "velocity": "km/s"},
-            "velocity": [7.6, 0.0, 0.0],
-            "inverse": true,
-        })
-    }
-
-    /// A turn of the axes, then a boost, with all parts of the answer.
-    pub fn turned_axes() -> Value {
-        json!({
-            "e": [0.0, 1.2, 0.0],
-            "b": [0.0, 0.0, 45000.0],
-            "units": {"e": "mV/m", "b": "nT", "velocity": "km/s", "angle": "deg"},
-            "steps": [
-                {"rotate": {"axis": [0.0, 0.0, 1.0], "angle": 30.0}},
-                {"boost": {"velocity": [7.6, 0.0, 0.0]}},
-            ],
-            "include": ["tensor", "matrix", "energy", "parallel_frame"],
-        })
-    }
-
-    /// The field beside a beam, in the frame of its particles.
-    pub fn fast_beam() -> Value {
-        json!({
-            "e": [0.0, 30.0, 0.0],
-            "b": [0.0, 0.0, 1.0],
-            "units": {"e": "kV/m", "b": "G", "energy": "GeV"},
-            "boost": {"direction": [1.0, 0.0, 0.0], "kinetic_energy": 26.0, "particle": "proton"},
-        })
-    }
-
-    /// A plane wave on an observer who moves along with it, in strong light.
-    pub fn plane_wave() -> Value {
-        json!({
-            "e": [0.0, 299_792_458.0, 0.0],
-            "b": [0.0, 0.0, 1.0],
-            "boost": {"beta": [0.6, 0.0, 0.0]},
-            "include": ["parallel_frame"],
-        })
-    }
-
-    /// What the service answers.
-    pub fn answer_to(question: Value) -> Answer {
-        let text = question.to_string();
-        let node = Node::from_json(text.as_bytes()).expect("an example is JSON");
-        let deployment = Deployment {
-            steps: 10,
-            frames: None,
-        };
-        let question = Question::read(&node, &deployment).expect("an example is right");
-        Answer::to(&question).expect("an example has an answer")
-    }
 }

@@ -31,6 +31,13 @@ pub enum Motion {
         /// What turns the product of the two into v/c.
         beta: Scale,
     },
+    /// A direction and the speed β.
+    Speed {
+        /// Any length.
+        direction: [f64; 3],
+        /// |β| < 1; a negative one means the opposite direction.
+        beta: f64,
+    },
     /// A direction and the Lorentz factor γ.
     Gamma {
         /// Any length.
@@ -107,6 +114,13 @@ impl Motion {
                 }
                 Ok(())
             }
+            Motion::Speed { direction, beta } => {
+                if beta.abs() >= 1.0 {
+                    let times_c = beta.abs();
+                    return Err(Impossible::FasterThanLight { times_c });
+                }
+                points_somewhere(direction)
+            }
             Motion::Gamma { direction, gamma } => {
                 if gamma < 1.0 {
                     return below("gamma", gamma, "at least 1");
@@ -151,6 +165,18 @@ impl Motion {
                     direction: d,
                     stretch: beta / root,
                     gamma,
+                    gamma_less_one,
+                }
+            }
+            Motion::Speed { direction: d, beta } => {
+                let (direction, length) = direction(d);
+                let beta = R::new(beta, context);
+                let root = ((one.clone() - beta.clone()) * (one.clone() + beta.clone())).sqrt();
+                let gamma_less_one = beta.square() / (root.clone() * (one.clone() + root.clone()));
+                Boost {
+                    direction,
+                    stretch: beta / (root.clone() * length),
+                    gamma: one / root,
                     gamma_less_one,
                 }
             }
@@ -200,6 +226,7 @@ impl Motion {
                 self.velocity_fits_dd()
                     && one_less_beta2(&self.velocity::<Dd>(()), self.beta().value(())).hi > SMALL_W
             }
+            Motion::Speed { beta, .. } => beta == 0.0 || beta.abs() > 1e-60,
             Motion::Gamma { gamma, .. } => gamma < 1e60,
             Motion::Rapidity { rapidity, .. } => {
                 rapidity == 0.0 || (1e-60..100.0).contains(&rapidity.abs())
@@ -223,6 +250,7 @@ impl Motion {
                 let beta = libm::hypot(libm::hypot(v[0], v[1]), v[2]) * self.beta().to_f64();
                 0.5 * libm::log2((1.0 + beta) / (1.0 - beta))
             }
+            Motion::Speed { beta, .. } => 0.5 * libm::log2((1.0 + beta.abs()) / (1.0 - beta.abs())),
             Motion::Gamma { gamma, .. } => libm::log2(of_gamma(gamma - 1.0)),
             Motion::Rapidity { rapidity, .. } => rapidity.abs() * std::f64::consts::LOG2_E,
             Motion::KineticEnergy {
@@ -252,6 +280,7 @@ impl Motion {
                 position,
                 beta,
             } => smallest(angular_velocity) + smallest(position) + below_one(beta.to_f64()),
+            Motion::Speed { direction, beta } => exponent_spread(*direction) + below_one(*beta),
             Motion::Gamma { direction, gamma } => {
                 exponent_spread(*direction) + below_one(gamma - 1.0)
             }

@@ -65,6 +65,13 @@ def near_c(rng):
             return comparable(rng) | {"boost": {name: v}}
 
 
+def speed_form(rng):
+    """A direction of any length and β, down to 1−|β| = 1e-16 and to |β| = 1e-12."""
+    beta = rng.choice([power(rng, -12, -0.01), 1 - power(rng, -16, -1)])
+    return comparable(rng) | {"boost": {"direction": vector(rng, power(rng, -3, 3)),
+                                        "beta": rng.choice([-1, 1]) * min(beta, 1 - 2**-53)}}
+
+
 def gamma_form(rng):
     return comparable(rng) | {"boost": {"direction": vector(rng, power(rng, -3, 3)),
                                         "gamma": 1 + power(rng, -15, 20)}}
@@ -181,6 +188,7 @@ BOOSTS = {
     "velocity, beta 1e-12 to 1e-3": slow,
     "velocity, beta 0.001 to 0.9": fast,
     "beta": beta_form,
+    "direction and beta": speed_form,
     "1-beta down to 1e-15": near_c,
     "gamma to 1e20": gamma_form,
     "rapidity to 700": rapidity_form,

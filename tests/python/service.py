@@ -132,7 +132,7 @@ class Service:
         return Reply(answer.status, {n.lower(): v for n, v in answer.getheaders()}, body)
 
 
-def by_url(question):
+def by_url(question, path="/v1/transform"):
     """The path and query that ask a question: a parameter is a path joined by dots."""
     pairs = []
 
@@ -148,7 +148,7 @@ def by_url(question):
             pairs.append((".".join(path), _word(value)))
 
     walk([], question)
-    return "/v1/transform?" + urllib.parse.urlencode(pairs, safe=",[]{}:", quote_via=urllib.parse.quote)
+    return f"{path}?" + urllib.parse.urlencode(pairs, safe=",[]{}:", quote_via=urllib.parse.quote)
 
 
 def _word(value):

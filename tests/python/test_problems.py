@@ -18,6 +18,8 @@ def turn(**form):
     return {"e": [0, 1, 0], "b": [0, 0, 1], "rotation": form}
 
 
+SWEEP = "/v1/sweep?e=0,1,0&b=0,0,1&boost.direction=1,0,0&over=beta"
+
 # Faults of a question: code, question, the place that is named (RFC 6901).
 FAULTS = [
     ("number_out_of_range", b'{"e": [0, 1e999, 0], "b": [0, 0, 1], "velocity": [1, 0, 0]}', None),
@@ -64,6 +66,9 @@ REQUESTS = [
     ("syntax", "POST", "/v1/transform", json.dumps(GOOD).encode() + b"{}", JSON),
     ("syntax", "GET", "/v1/transform?e=%zz", None, {}),
     ("syntax", "GET", "/v1/transform?e=0,1,0&b=0,0,1&steps=%5B%7B", None, {}),
+    ("points_out_of_range", "GET", SWEEP + "&start=0&stop=0.5&points=1", None, {}),
+    ("empty_range", "GET", SWEEP + "&start=0.5&stop=0.5", None, {}),
+    ("faster_than_light", "GET", SWEEP + "&start=0&stop=1", None, {}),
     ("not_found", "GET", "/v1/nothing", None, {}),
     ("unknown_code", "GET", "/problems/nothing", None, {}),
     ("method_not_allowed", "PUT", "/v1/transform", json.dumps(GOOD).encode(), JSON),

@@ -9,8 +9,9 @@ use crate::physics::lorentz::{Change, Step};
 use crate::physics::scale::Scale;
 use crate::units::{Quantity, Units};
 
-const FORMS: [&str; 4] = ["velocity", "beta", "direction", "angular_velocity"];
-const SPEEDS: [&str; 3] = ["gamma", "rapidity", "kinetic_energy"];
+const FORMS: [&str; 4] = ["velocity", "direction", "beta", "angular_velocity"];
+/// The speeds that go with a direction; `beta` is then a number.
+const SPEEDS: [&str; 4] = ["beta", "gamma", "rapidity", "kinetic_energy"];
 const KNOWN: [&str; 10] = [
     "velocity",
     "beta",
@@ -52,6 +53,9 @@ fn blamed(members: Members, impossible: &Impossible) -> &'static str {
             ..
         } => "particle",
         Impossible::BelowRest { .. } => given(&SPEEDS).unwrap_or("direction"),
+        Impossible::FasterThanLight { .. } => {
+            given(&["velocity", "beta", "angular_velocity"]).unwrap_or("velocity")
+        }
         _ => given(&FORMS).unwrap_or("velocity"),
     }
 }
@@ -78,8 +82,13 @@ fn velocity_scale(units: &Units) -> Scale {
 }
 
 fn form(members: Members, place: &Place, units: &Units, faults: &mut Faults) -> Option<Motion> {
-    let (form, node) = faults.exactly_one(members, place, &FORMS)?;
-    belongs(members, place, "direction", form, &SPEEDS, faults);
+    let directed = members.get("direction").is_some();
+    let forms: Vec<&str> = FORMS
+        .into_iter()
+        .filter(|form| !(directed && *form == "beta"))
+        .collect();
+    let (form, node) = faults.exactly_one(members, place, &forms)?;
+    belongs(members, place, "direction", form, &SPEEDS[1..], faults);
     belongs(
         members,
         place,
@@ -125,6 +134,10 @@ fn form(members: Members, place: &Place, units: &Units, faults: &mut Faults) -> 
             let (speed, node) = faults.exactly_one(members, place, &SPEEDS)?;
             let value = faults.number(node, &place.field(speed));
             match speed {
+                "beta" => Some(Motion::Speed {
+                    direction: direction?,
+                    beta: value?,
+                }),
                 "gamma" => Some(Motion::Gamma {
                     direction: direction?,
                     gamma: value?,

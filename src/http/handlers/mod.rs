@@ -8,6 +8,7 @@ pub(super) mod openapi;
 pub(super) mod page;
 pub(super) mod problems;
 pub(super) mod reference;
+pub(super) mod sweep;
 pub(super) mod transform;
 pub(super) mod units;
 
@@ -26,6 +27,22 @@ pub(super) fn json(value: &impl serde::Serialize) -> Response {
         text,
     )
         .into_response()
+}
+
+/// Columns as CSV.
+fn csv(text: String) -> Response {
+    let kind = HeaderValue::from_static("text/csv; charset=utf-8; header=present");
+    ([(header::CONTENT_TYPE, kind)], text).into_response()
+}
+
+/// A picture. It may carry styles, which dark screens need, but no script runs in it.
+fn svg(text: String) -> Response {
+    const POLICY: &str = "default-src 'none'; style-src 'unsafe-inline'; frame-ancestors 'none'";
+    let headers = [
+        (header::CONTENT_TYPE, accept::SVG),
+        (header::CONTENT_SECURITY_POLICY, POLICY),
+    ];
+    (headers, text).into_response()
 }
 
 /// A page for people: styles of its own, scripts of this service, nothing from elsewhere.

@@ -6,25 +6,23 @@ use axum::{
     response::Response,
 };
 
-use super::json;
+use super::{json, svg};
 use crate::{
     answer::{Answer, ENGINE},
     chain,
     document::{Code, Fault, Node, Path, Segment, from_query},
     http::{
         AppState,
-        accept::{JSON, negotiate},
+        accept::{JSON, SVG, negotiate},
         body::JsonBody,
-        cache::{cached, etag},
+        cache::{IMMUTABLE, cached, etag},
         problem::{CommonProblems, Problem, ProblemDocument, Source},
-        schema::{self, Query},
+        schema::{self, Query, WayQuery},
     },
     physics::Impossible,
+    picture,
     question::Question,
 };
-
-/// How long an answer may be kept: it never changes for one version of the service.
-const CACHE: &str = "public, max-age=86400";
 
 /// Restate one reading in another frame.
 ///
@@ -74,7 +72,9 @@ pub(crate) async fn transform(
     let refuse = |faults| Problem::from_faults(faults, Source::Body);
     let node = Node::from_json(&body).map_err(|fault| refuse(vec![fault]))?;
     let question = Question::read(&node, &state.deployment).map_err(refuse)?;
-    answer(&question).map_err(refuse)
+    answer(&question)
+        .map(|answer| json(&answer))
+        .map_err(refuse)
 }
 
 /// Restate one reading in another frame, by URL.
@@ -83,10 +83,13 @@ pub(crate) async fn transform(
 /// vectors are comma lists, `steps` is JSON text, and a literal `+` is written `%2B`.
 #[utoipa::path(
     get, path = "/v1/transform", tag = "fields", operation_id = "transform_by_url",
-    params(Query),
+    params(Query, WayQuery),
     responses(
-        (status = 200, description = "The same field in the target frame", body = Answer,
-            content_type = "application/json",
+        (status = 200, description = "The same field in the target frame, as JSON or as a picture",
+            content(
+                (Answer = "application/json"),
+                (String = "image/svg+xml"),
+            ),
             headers(
                 ("ETag" = String, description = "Tag of the question, this version and the catalogue"),
                 ("Cache-Control" = String, description = "How long the answer may be kept"),
@@ -103,7 +106,7 @@ pub(crate) async fn transform_by_url(
     headers: HeaderMap,
     RawQuery(query): RawQuery,
 ) -> Result<Response, Problem> {
-    let representation = negotiate(&headers, &[JSON])?;
+    let representation = negotiate(&headers, &[JSON, SVG])?;
     let refuse = |faults| Problem::from_faults(faults, Source::Query);
     let node = from_query(&query.unwrap_or_default()).map_err(refuse)?;
     let question = Question::read(&node, &state.deployment).map_err(refuse)?;
@@ -114,14 +117,17 @@ pub(crate) async fn transform_by_url(
         representation.as_bytes(),
         ENGINE.as_bytes(),
     ]);
-    cached(&headers, tag, CACHE, || answer(&question).map_err(refuse))
+    cached(&headers, tag, IMMUTABLE, || {
+        let answer = answer(&question).map_err(refuse)?;
+        Ok(match representation {
+            SVG => svg(picture::reading(&question, &answer)),
+            _ => json(&answer),
+        })
+    })
 }
 
-fn answer(question: &Question) -> Result<Response, Vec<Fault>> {
-    match Answer::to(question) {
-        Ok(answer) => Ok(json(&answer)),
-        Err(impossible) => Err(vec![unanswerable(&impossible)]),
-    }
+fn answer(question: &Question) -> Result<Answer, Vec<Fault>> {
+    Answer::to(question).map_err(|impossible| vec![unanswerable(&impossible)])
 }
 
 /// An answer that no double holds is mended where its unit is chosen; one that rests on too weak

@@ -22,7 +22,7 @@ def beta_of(boost, units):
     """The exact β vector of a `boost` object, before its own `inverse`."""
     if "velocity" in boost:
         return scale(1 / mpf(C), units.vector("velocity", boost["velocity"]))
-    if "beta" in boost:
+    if "beta" in boost and "direction" not in boost:
         return [mpf(x) for x in boost["beta"]]
     if "angular_velocity" in boost:
         omega = units.vector("angular_velocity", boost["angular_velocity"])
@@ -32,6 +32,8 @@ def beta_of(boost, units):
 
 
 def _speed(boost, units):
+    if "beta" in boost:
+        return mpf(boost["beta"])
     if "rapidity" in boost:
         return mp.tanh(mpf(boost["rapidity"]))
     if "gamma" in boost:

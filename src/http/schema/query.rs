@@ -1,0 +1,106 @@
+//! Questions in the URL: each parameter is a path into the JSON question, joined by dots.
+
+use utoipa::IntoParams;
+
+/// The question as parameters, but for its way: each is a path into the JSON question, joined by
+/// dots.
+#[derive(IntoParams)]
+#[into_params(parameter_in = Query)]
+#[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
+pub struct Query {
+    /// Electric field: three numbers joined by commas; an empty one is missing.
+    #[param(required = false, example = "0,1.2,0")]
+    e: String,
+    /// Magnetic flux density: three numbers joined by commas; an empty one is missing.
+    #[param(required = false, example = "0,0,45000")]
+    b: String,
+    /// Unit of E; likewise `units.angle`, `units.angular_velocity`, `units.energy`, `units.length`.
+    #[param(required = false, rename = "units.e", example = "mV/m")]
+    units_e: String,
+    /// Unit of B.
+    #[param(required = false, rename = "units.b", example = "nT")]
+    units_b: String,
+    /// Unit of velocities.
+    #[param(required = false, rename = "units.velocity", example = "km/s")]
+    units_velocity: String,
+    /// The way as a chain: JSON text.
+    #[param(required = false)]
+    steps: String,
+    /// Fill a missing component of E from E·B = 0; the least angle of B to the measured plane.
+    #[param(required = false, rename = "assume.e_dot_b_zero.min_angle")]
+    assume_e_dot_b_zero_min_angle: String,
+    /// Take the whole way backwards.
+    #[param(required = false)]
+    inverse: String,
+    /// Unit of E' in the answer.
+    #[param(required = false, rename = "answer_units.e")]
+    answer_units_e: String,
+    /// Unit of B' in the answer.
+    #[param(required = false, rename = "answer_units.b")]
+    answer_units_b: String,
+}
+
+/// The way of a question in its other forms, and further parts of its answer.
+#[derive(IntoParams)]
+#[into_params(parameter_in = Query)]
+#[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
+pub struct WayQuery {
+    /// The way as one boost: three numbers joined by commas.
+    #[param(required = false, example = "7.6,0,0")]
+    velocity: String,
+    /// The way as one rotation: its axis; likewise `rotation.matrix`, `rotation.quaternion.w` and so on.
+    #[param(required = false, rename = "rotation.axis")]
+    rotation_axis: String,
+    /// The angle of that rotation.
+    #[param(required = false, rename = "rotation.angle")]
+    rotation_angle: String,
+    /// The way as one boost: its direction; likewise `boost.beta`, `boost.rapidity` and so on.
+    #[param(required = false, rename = "boost.direction")]
+    boost_direction: String,
+    /// The Lorentz factor of that boost.
+    #[param(required = false, rename = "boost.gamma")]
+    boost_gamma: String,
+    /// The way by names of the catalogue: the frame of the reading.
+    #[param(required = false)]
+    from: String,
+    /// The target frame, with `from`.
+    #[param(required = false)]
+    to: String,
+    /// When the reading was taken: RFC 3339 (a `+` is written %2B), or seconds from the epoch of the catalogue.
+    #[param(required = false)]
+    time: String,
+    /// Further parts of the answer, joined by commas.
+    #[param(required = false)]
+    include: String,
+    /// Convention of the tensor: mostly_minus or mostly_plus.
+    #[param(required = false)]
+    signature: String,
+}
+
+/// The range of a sweep, and the step that leaves out the quantity that runs.
+#[derive(IntoParams)]
+#[into_params(parameter_in = Query)]
+#[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
+pub struct RangeQuery {
+    /// The quantity that runs: beta, rapidity or angle.
+    #[param(example = "beta")]
+    over: String,
+    /// Its first value; angles are in `units.angle`.
+    #[param(example = "0")]
+    start: String,
+    /// Its last value.
+    #[param(example = "0.99")]
+    stop: String,
+    /// How many values, evenly spaced, both ends included; 200 when left out.
+    #[param(required = false, example = "5")]
+    points: String,
+    /// How a picture divides its axis of values: linear, or log for absolute values by powers of ten.
+    #[param(required = false)]
+    scale: String,
+    /// For beta and rapidity: the direction of the boost whose speed runs.
+    #[param(required = false, rename = "boost.direction", example = "1,0,0")]
+    boost_direction: String,
+    /// For angle: the axis of the rotation whose angle runs.
+    #[param(required = false, rename = "rotation.axis")]
+    rotation_axis: String,
+}

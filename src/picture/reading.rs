@@ -1,0 +1,285 @@
+//! A reading before and after: E and B as arrows on three axes, in two panels of one scale.
+
+use svg::node::element::Group;
+
+use super::draw::{Anchor, Point, line, sheet, text};
+use super::number::{component, short, vector};
+use super::space::{Pen, View};
+use super::ticks::round_up;
+use crate::answer::{Answer, NetTransformation};
+use crate::physics::precise::Resolved;
+use crate::question::Question;
+use crate::transform::transform;
+use crate::units::Quantity;
+
+const WIDTH: f64 = 400.0;
+const PANEL: f64 = 196.0;
+/// Turns smaller than this, in radians, cannot be seen.
+const VISIBLE_TURN: f64 = 0.02;
+
+/// Components, as far as they are known.
+type Known = [Option<f64>; 3];
+
+/// One of the two fields, before and after, in the unit of the answer.
+struct Shown {
+    name: &'static str,
+    quantity: &'static str,
+    unit: String,
+    before: Known,
+    after: Known,
+    /// What the half axes stand for.
+    reach: f64,
+    colour: &'static str,
+    dashes: &'static str,
+}
+
+impl Shown {
+    fn new(question: &Question, quantity: Quantity, before: Known, after: Known) -> Shown {
+        let electric = quantity == Quantity::E;
+        let largest = [before, after]
+            .into_iter()
+            .filter_map(known)
+            .map(length)
+            .fold(0.0, f64::max);
+        Shown {
+            name: if electric { "E" } else { "B" },
+            quantity: if electric {
+                "electric field E"
+            } else {
+                "magnetic flux density B"
+            },
+            unit: question.answer_units.get(quantity).code.into(),
+            before,
+            after,
+            reach: if largest > 0.0 {
+                round_up(largest)
+            } else {
+                1.0
+            },
+            colour: if electric { "two" } else { "one" },
+            dashes: if electric { "" } else { "dashed" },
+        }
+    }
+
+    fn arrow(&self, view: &View, v: Known, prime: &str) -> Option<Group> {
+        let label = format!("{}{prime}", self.name);
+        let pen = Pen {
+            colour: self.colour,
+            dashes: self.dashes,
+            label,
+        };
+        let v = known(v)?.map(|x| x / self.reach);
+        Some(view.arrow(v, &pen))
+    }
+}
+
+/// The picture of an answered question.
+pub fn reading(question: &Question, answer: &Answer) -> String {
+    let (e, b) = as_read(question);
+    let shown = [
+        Shown::new(question, Quantity::E, e, answer.e),
+        Shown::new(question, Quantity::B, b, answer.b),
+    ];
+    let view = |left: f64| View {
+        origin: (left + PANEL / 2.0, 136.0),
+        unit: 88.0,
+    };
+    let (before, after) = (view(0.0), view(WIDTH - PANEL));
+    let mut content = Group::new()
+        .add(text("head", (10.0, 20.0), Anchor::Start, "As read"))
+        .add(text(
+            "head",
+            (WIDTH - PANEL + 10.0, 20.0),
+            Anchor::Start,
+            "In the target frame",
+        ))
+        .add(line("grid", (WIDTH / 2.0, 10.0), (WIDTH / 2.0, 240.0)))
+        .add(before.axes(["x", "y", "z"]))
+        .add(after.axes(["x′", "y′", "z′"]))
+        .add(turned_axes(&before, &answer.net));
+    if let Some(motion) = motion(&before, &answer.net) {
+        content = content.add(motion);
+    }
+    for shown in &shown {
+        for arrow in [
+            shown.arrow(&before, shown.before, ""),
+            shown.arrow(&after, shown.after, "′"),
+        ]
+        .into_iter()
+        .flatten()
+        {
+            content = content.add(arrow);
+        }
+    }
+    content = scales(content, &shown, question, &answer.net);
+    content = table(content, &shown, 300.0);
+    let title = "A reading of E and B, as read and in the target frame";
+    sheet(
+        (WIDTH, 400.0),
+        title,
+        &about(&shown, question, &answer.net),
+        content,
+    )
+}
+
+/// The reading in its own frame, in the units of the answer: calibrated and completed, if it was
+/// to be.
+fn as_read(question: &Question) -> (Known, Known) {
+    let nowhere = Resolved::new(Vec::new());
+    let restated =
+        nowhere.and_then(|nowhere| transform(&nowhere, &question.reading, question.target_units()));
+    restated.map_or(([None; 3], [None; 3]), |field| (field.e, field.b))
+}
+
+/// The axes of the target as they stand on those of the reading, when they are turned.
+fn turned_axes(view: &View, net: &NetTransformation) -> Group {
+    let q = &net.rotation;
+    let sine = libm::hypot(libm::hypot(q.x, q.y), q.z);
+    let mut group = Group::new();
+    if 2.0 * libm::atan2(sine, q.w.abs()) < VISIBLE_TURN {
+        return group;
+    }
+    // The images of the unit vectors under v → q v q*.
+    let (w, x, y, z) = (q.w, q.x, q.y, q.z);
+    let images = [
+        [
+            1.0 - 2.0 * (y * y + z * z),
+            2.0 * (x * y + w * z),
+            2.0 * (x * z - w * y),
+        ],
+        [
+            2.0 * (x * y - w * z),
+            1.0 - 2.0 * (x * x + z * z),
+            2.0 * (y * z + w * x),
+        ],
+        [
+            2.0 * (x * z + w * y),
+            2.0 * (y * z - w * x),
+            1.0 - 2.0 * (x * x + y * y),
+        ],
+    ];
+    for (image, name) in images.into_iter().zip(["x′", "y′", "z′"]) {
+        let end = view.at(image.map(|x| 0.98 * x));
+        group = group
+            .add(line("turned", view.origin, view.at(image.map(|x| 0.9 * x))))
+            .add(text("soft", (end.0, end.1 + 4.0), Anchor::Middle, name));
+    }
+    group
+}
+
+/// The direction in which the target moves; its speed is said in words.
+fn motion(view: &View, net: &NetTransformation) -> Option<Group> {
+    let speed = length(net.beta);
+    if speed == 0.0 {
+        return None;
+    }
+    let pen = Pen {
+        colour: "three",
+        dashes: "dotted",
+        label: "v".into(),
+    };
+    Some(view.arrow(net.beta.map(|x| 0.55 * x / speed), &pen))
+}
+
+/// What the axes stand for, and how the target moves.
+fn scales(
+    content: Group,
+    shown: &[Shown; 2],
+    question: &Question,
+    net: &NetTransformation,
+) -> Group {
+    let reach = shown
+        .each_ref()
+        .map(|field| format!("{} {} {}", field.name, short(field.reach, 3), field.unit));
+    let words = format!("Each half axis: {}, {}", reach[0], reach[1]);
+    content
+        .add(text("soft", (10.0, 256.0), Anchor::Start, words))
+        .add(text(
+            "soft",
+            (10.0, 273.0),
+            Anchor::Start,
+            moves(question, net),
+        ))
+}
+
+fn moves(question: &Question, net: &NetTransformation) -> String {
+    let turn = 2.0
+        * libm::atan2(
+            libm::hypot(libm::hypot(net.rotation.x, net.rotation.y), net.rotation.z),
+            net.rotation.w,
+        );
+    let turn = match turn {
+        0.0 => String::new(),
+        turn => format!("; axes turned by {}°", short(turn.to_degrees(), 4)),
+    };
+    let speed = length(net.beta);
+    if speed == 0.0 {
+        return format!("The target does not move{turn}");
+    }
+    let unit = question.units.get(Quantity::Velocity).code;
+    let speed = match speed < 0.1 {
+        true => format!("{} {unit}", short(length(net.velocity), 6)),
+        false => format!("{} c, γ = {}", short(speed, 6), short(net.gamma, 6)),
+    };
+    format!("v: the target moves at {speed}{turn}")
+}
+
+/// The numbers behind the arrows.
+fn table(mut content: Group, shown: &[Shown; 2], top: f64) -> Group {
+    const COLUMNS: [f64; 4] = [136.0, 220.0, 304.0, 388.0];
+    let bottom = top + 5.0;
+    for (name, x) in ["x", "y", "z", "length"].into_iter().zip(COLUMNS) {
+        content = content.add(text("soft", (x, top), Anchor::End, name));
+    }
+    content = content.add(line("grid", (10.0, bottom), (WIDTH - 10.0, bottom)));
+    let rows = shown
+        .iter()
+        .flat_map(|field| [(field, "", field.before), (field, "′", field.after)]);
+    for (i, (field, prime, v)) in rows.enumerate() {
+        let y = top + 22.0 + 18.0 * i as f64;
+        let full = format!("bold full-{}", field.colour);
+        let name = format!("{}{prime}", field.name);
+        let at: Point = (10.0, y);
+        content = content.add(text(&full, at, Anchor::Start, name)).add(text(
+            "soft",
+            (28.0, y),
+            Anchor::Start,
+            &*field.unit,
+        ));
+        let size = known(v).map(length);
+        let cells = [v[0], v[1], v[2], size];
+        for (value, x) in cells.into_iter().zip(COLUMNS) {
+            content = content.add(text("number", (x, y), Anchor::End, component(value)));
+        }
+    }
+    content
+}
+
+fn about(shown: &[Shown; 2], question: &Question, net: &NetTransformation) -> String {
+    let field = |field: &Shown| {
+        format!(
+            "The {} is {} {unit} as read and {} {unit} in the target frame.",
+            field.quantity,
+            vector(field.before),
+            vector(field.after),
+            unit = field.unit,
+        )
+    };
+    format!(
+        "{} {} {}.",
+        field(&shown[0]),
+        field(&shown[1]),
+        moves(question, net)
+    )
+}
+
+fn known(v: Known) -> Option<[f64; 3]> {
+    match v {
+        [Some(x), Some(y), Some(z)] => Some([x, y, z]),
+        _ => None,
+    }
+}
+
+fn length([x, y, z]: [f64; 3]) -> f64 {
+    libm::hypot(libm::hypot(x, y), z)
+}

@@ -1,0 +1,123 @@
+"""Pictures: well-formed SVG without scripts, with the right numbers at the right places."""
+
+import math
+import xml.etree.ElementTree as ET
+
+import pytest
+
+from service import by_url
+
+READING = {"e": [12.5, 340, -3.75], "b": [1200, -450, 44700],
+           "units": {"e": "mV/m", "b": "nT", "velocity": "km/s", "angle": "deg"}}
+WAYS = {
+    "motion": {"velocity": [7.6, 0, 0], "inverse": True},
+    "turn": {"rotation": {"axis": [0, 0, 1], "angle": 30}},
+    "both": {"steps": [{"rotate": {"axis": [0, 0, 1], "angle": 30}}, {"boost": {"beta": [0, 3e-5, 0]}}]},
+}
+SVG = "{http://www.w3.org/2000/svg}"
+# The elements that a picture is made of; none of them can run or load anything.
+HARMLESS = {"svg", "title", "desc", "style", "g", "rect", "line", "polyline", "polygon", "circle", "text", "ellipse"}
+
+
+def draw(service, question, path="/v1/transform"):
+    reply = service.get(by_url(question, path), Accept="image/svg+xml")
+    assert reply.status == 200, reply.body.decode()
+    assert reply.headers["content-type"] == "image/svg+xml"
+    return ET.fromstring(reply.body)
+
+
+def texts(picture):
+    return ["".join(text.itertext()).strip() for text in picture.iter(f"{SVG}text")]
+
+
+def six(value):
+    return f"{value:.6g}"
+
+
+@pytest.mark.parametrize("way", WAYS)
+def test_the_table_of_a_reading_shows_the_answer(service, way):
+    question = READING | WAYS[way]
+    answer, words = service.ask(question), texts(draw(service, question))
+    for row, vector in (("E", question["e"]), ("E′", answer["e"]), ("B", question["b"]), ("B′", answer["b"])):
+        # The letter stands at the arrow and again before its row of four numbers.
+        start = len(words) - 1 - words[::-1].index(row)
+        shown = [float(word) for word in words[start + 2:start + 5]]
+        assert [six(x) for x in shown] == [six(x) for x in vector], row
+
+
+@pytest.mark.parametrize("way", WAYS)
+def test_arrows_point_where_the_field_does(service, way):
+    """A parallel projection is linear: the same field twice as large is drawn twice as long on one scale.
+
+    The axes themselves tell where unit vectors end; tips must be the same sums of them.
+    """
+    question = READING | WAYS[way]
+    answer, picture = service.ask(question), draw(service, question)
+    axes = [line for line in picture.iter(f"{SVG}line") if line.get("class") == "axis"]
+    assert len(axes) == 6
+    reach = next(word for word in texts(picture) if word.startswith("Each half axis"))
+    scales = {word.split()[0]: float(word.split()[1]) for word in reach.split(": ")[1].split(", ")}
+    tips = {}
+    for arrow in picture.iter(f"{SVG}g"):
+        labels = [text for text in arrow.findall(f"{SVG}text") if "bold" in text.get("class")]
+        heads = arrow.findall(f"{SVG}polygon")
+        if len(labels) == len(heads) == 1:
+            tip = heads[0].get("points").split()[0].split(",")
+            tips["".join(labels[0].itertext()).strip()] = [float(x) for x in tip]
+    for name, vector, panel in (("E", question["e"], axes[:3]), ("E′", answer["e"], axes[3:]),
+                                ("B", question["b"], axes[:3]), ("B′", answer["b"], axes[3:])):
+        for end, origin, tip in (("x2", "x1", tips[name][0]), ("y2", "y1", tips[name][1])):
+            along = sum(x / scales[name[0]] * (float(axis.get(end)) - float(axis.get(origin)))
+                        for x, axis in zip(vector, panel))
+            assert abs(float(panel[0].get(origin)) + along - tip) < 0.1, name
+
+
+@pytest.mark.parametrize("scale", ["linear", "log"])
+def test_curves_pass_where_the_columns_say(service, scale):
+    """Pixels are a straight line against values, or against their logarithms."""
+    question = READING | {"boost": {"direction": [1, 2, -2]}, "over": "beta", "start": 0.1, "stop": 0.9,
+                          "points": 9, "scale": scale}
+    columns = service.get(by_url(question, "/v1/sweep")).json
+    picture = draw(service, question, "/v1/sweep")
+    curves = [line for line in picture.iter(f"{SVG}polyline")]
+    assert len(curves) == 8
+    place = (lambda x: math.log10(abs(x))) if scale == "log" else float
+    for field, own in (("e", curves[:4]), ("b", curves[4:])):
+        points = []
+        for name, curve in zip(["magnitude", "x", "y", "z"], own):
+            values = columns[field][name]
+            pixels = [float(point.split(",")[1]) for point in curve.get("points").split()]
+            assert len(pixels) == len(values)
+            points += [(place(value), pixel) for value, pixel in zip(values, pixels)]
+        (low, bottom), (high, top) = min(points), max(points)
+        assert top < bottom
+        for value, pixel in points:
+            expected = bottom + (value - low) / (high - low) * (top - bottom)
+            assert abs(pixel - expected) < 0.05
+
+
+@pytest.mark.parametrize("question, path", [
+    (READING | WAYS["both"], "/v1/transform"),
+    (READING | {"boost": {"direction": [1, 0, 0]}, "over": "rapidity", "start": 0, "stop": 5}, "/v1/sweep")])
+def test_a_picture_is_complete_in_itself(service, question, path):
+    """It runs nothing, loads nothing, and has words for those who do not see it (SVG-AAM 1.0)."""
+    picture = draw(service, question, path)
+    assert {element.tag.removeprefix(SVG) for element in picture.iter()} <= HARMLESS
+    for element in picture.iter():
+        assert not any(name.startswith("on") or "href" in name for name in element.keys())
+    assert picture.get("role") == "img"
+    ids = picture.get("aria-labelledby").split()
+    assert [child.get("id") for child in picture if child.tag in (f"{SVG}title", f"{SVG}desc")] == ids
+    assert all("".join(child.itertext()).strip() for child in picture if child.get("id") in ids)
+    style = "".join(picture.find(f"{SVG}style").itertext())
+    assert "url(" not in style and "@import" not in style and "prefers-color-scheme:dark" in style
+
+
+def test_lines_differ_by_more_than_colour(service):
+    """No two curves of a plot share both dashes and marks, and each is named at its end."""
+    question = READING | {"boost": {"direction": [1, 0, 0]}, "over": "beta", "start": 0, "stop": 0.9}
+    picture = draw(service, question, "/v1/sweep")
+    classes = [line.get("class").split()[2:] for line in picture.iter(f"{SVG}polyline")][:4]
+    assert len({tuple(sorted(words)) for words in classes}) == 4
+    for name in ("|E′|", "E′x", "E′y", "E′z", "|B′|", "B′x", "B′y", "B′z"):
+        assert name in texts(picture)
