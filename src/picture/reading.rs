@@ -7,7 +7,7 @@ use super::number::{component, short, vector};
 use super::space::{Pen, View};
 use super::ticks::round_up;
 use crate::answer::{Answer, NetTransformation};
-use crate::physics::precise::Resolved;
+use crate::physics::resolved::Resolved;
 use crate::question::Question;
 use crate::transform::transform;
 use crate::units::Quantity;
