@@ -122,6 +122,8 @@ fn read(node: &Node, deployment: &Deployment, faults: &mut Faults) -> Option<Que
     };
     // With units unread, the rest is still checked: in SI, so that nothing else is blamed.
     let reading_units = units.unwrap_or_default();
+    let e = partial("e", members, faults);
+    let b = partial("b", members, faults);
     let way = way::read(members, &reading_units, deployment, faults);
     let (sensor, calibrated) = match way.as_ref().and_then(|way| way.sensor) {
         Some((sensor, calibrated)) => (sensor, calibrated),
@@ -146,8 +148,9 @@ fn read(node: &Node, deployment: &Deployment, faults: &mut Faults) -> Option<Que
         }
         None => Some(answer_base),
     };
-    let e = partial("e", sensor.e, members, faults);
-    let b = partial("b", sensor.b, members, faults);
+    for (name, values, channel) in [("e", e, sensor.e), ("b", b, sensor.b)] {
+        measured_axes(name, values, channel, faults);
+    }
     let assume = match members.get("assume") {
         Some(node) => assume::read(node, &root.field("assume"), &reading_units, faults).map(Some),
         None => Some(None),
@@ -195,33 +198,37 @@ fn names_unit(members: Members, quantity: Quantity) -> bool {
     }
 }
 
-/// E or B. At least one of them must be named; one that is left out is missing, not zero. A sensor
-/// has no value on an axis that it does not measure.
-fn partial(
-    name: &str,
-    channel: Option<Channel>,
-    members: Members,
-    faults: &mut Faults,
-) -> Option<[Option<f64>; 3]> {
+/// E or B. At least one of them must be named; one that is left out is missing, not zero.
+fn partial(name: &str, members: Members, faults: &mut Faults) -> Option<[Option<f64>; 3]> {
     let place = Place::ROOT.field(name);
-    let Some(node) = members.given(name) else {
-        if name == "b" && members.given("e").is_none() {
-            let detail =
-                "a reading needs \"e\", \"b\" or both; one left out is missing, never zero";
-            faults.note(&Place::ROOT, Code::MissingField, detail);
-        }
-        return Some([None; 3]);
+    if let Some(node) = members.given(name) {
+        return faults.partial_vector(node, &place);
+    }
+    if name == "b" && members.given("e").is_none() {
+        let detail = "a reading needs \"e\", \"b\" or both; one left out is missing, never zero";
+        faults.note(&Place::ROOT, Code::MissingField, detail);
+    }
+    Some([None; 3])
+}
+
+/// A sensor has no value on an axis that it does not measure.
+fn measured_axes(
+    name: &str,
+    values: Option<[Option<f64>; 3]>,
+    channel: Option<Channel>,
+    faults: &mut Faults,
+) {
+    let (Some(values), Some(channel)) = (values, channel) else {
+        return;
     };
-    let values = faults.partial_vector(node, &place)?;
-    let axes = channel.map_or([true; 3], |channel| channel.axes);
-    for i in (0..3).filter(|i| values[*i].is_some() && !axes[*i]) {
+    for i in (0..3).filter(|i| values[*i].is_some() && !channel.axes[*i]) {
         let detail = format!(
             "the sensor does not measure {}; leave that component null",
             ["x", "y", "z"][i]
         );
+        let place = Place::ROOT.field(name);
         faults.note(&place.index(i), Code::AxisNotMeasured, detail);
     }
-    Some(values)
 }
 
 fn parts(node: &Node, place: &Place, faults: &mut Faults) -> Option<Vec<Part>> {
