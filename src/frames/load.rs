@@ -220,6 +220,7 @@ fn link_of(
                 moves: false,
                 turns: false,
                 beta: Motion::to_beta(head.units.si(Quantity::Velocity)),
+                radians: head.units.si(Quantity::Angle),
                 extrapolate,
                 mended: 0.0,
                 clock: head.clock(),

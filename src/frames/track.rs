@@ -24,6 +24,8 @@ pub struct Track {
     pub turns: bool,
     /// What turns velocities into v/c.
     pub beta: Scale,
+    /// What turns the uncertainties of attitudes into radians.
+    pub radians: Scale,
     /// Whether times before the first row and after the last one are answered.
     pub extrapolate: bool,
     /// The largest departure of an attitude from length one.
