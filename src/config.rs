@@ -67,7 +67,7 @@ pub struct Settings {
     )]
     open: String,
 
-    /// Origins whose pages may ask from a browser, such as https://lab.example:8443 (repeatable).
+    /// Origins whose pages may ask from a browser, such as `https://lab.example:8443` (repeatable).
     #[arg(
         long,
         env = "LODEFRAME_CORS_ORIGIN",
@@ -124,6 +124,33 @@ pub struct Settings {
         default_value = "10000"
     )]
     max_points: String,
+
+    /// Longest row of a series, as text.
+    #[arg(
+        long,
+        env = "LODEFRAME_MAX_ROW",
+        value_name = "SIZE",
+        default_value = "1MiB"
+    )]
+    max_row: String,
+
+    /// Largest batch of rows of a series in the Arrow format.
+    #[arg(
+        long,
+        env = "LODEFRAME_MAX_BATCH",
+        value_name = "SIZE",
+        default_value = "16MiB"
+    )]
+    max_batch: String,
+
+    /// Answer of a series that waits for a client which does not read it.
+    #[arg(
+        long,
+        env = "LODEFRAME_BUFFER",
+        value_name = "SIZE",
+        default_value = "1MiB"
+    )]
+    buffer: String,
 
     /// Time for one request, from its headers to the head of its answer.
     #[arg(
@@ -183,6 +210,12 @@ pub struct Config {
     pub max_steps: usize,
     /// Points in one sweep.
     pub max_points: usize,
+    /// Longest row of a series, bytes.
+    pub max_row: usize,
+    /// Largest batch of rows, bytes.
+    pub max_batch: usize,
+    /// Answer of a series that waits for its client, bytes.
+    pub buffer: usize,
     /// Time for one request until its answer begins.
     pub request_timeout: Duration,
     /// Time for headers to arrive.
@@ -226,15 +259,10 @@ impl Settings {
                 ));
                 LogForm::Off
             }),
-            max_body: read::<bytesize::ByteSize>(
-                &mut faults,
-                "max-body",
-                &self.max_body,
-                "a size such as 64KiB or 1MiB",
-            )
-            .map_or(0, |size| {
-                usize::try_from(size.as_u64()).unwrap_or(usize::MAX)
-            }),
+            max_body: size(&mut faults, "max-body", &self.max_body),
+            max_row: size(&mut faults, "max-row", &self.max_row),
+            max_batch: size(&mut faults, "max-batch", &self.max_batch),
+            buffer: size(&mut faults, "buffer", &self.buffer),
             max_concurrent: count(&mut faults, "max-concurrent", &self.max_concurrent),
             max_steps: count(&mut faults, "max-steps", &self.max_steps),
             max_points: count(&mut faults, "max-points", &self.max_points),
@@ -297,6 +325,14 @@ fn read<T: FromStr>(
 fn count(faults: &mut Vec<String>, flag: &str, text: &str) -> usize {
     read::<std::num::NonZeroUsize>(faults, flag, text, "a whole number from 1")
         .map_or(1, Into::into)
+}
+
+fn size(faults: &mut Vec<String>, flag: &str, text: &str) -> usize {
+    let right = "a size such as 64KiB or 1MiB";
+    let size = read::<bytesize::ByteSize>(faults, flag, text, right);
+    size.map_or(0, |size| {
+        usize::try_from(size.as_u64()).unwrap_or(usize::MAX)
+    })
 }
 
 fn time(faults: &mut Vec<String>, flag: &str, text: &str) -> Duration {
