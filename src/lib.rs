@@ -14,6 +14,7 @@
 //! | [`transform`] | the meeting point: a reading and a resolved way give the answer |
 //! | [`question`] | what is asked, read from a tree |
 //! | [`answer`] | what is answered, as JSON |
+//! | [`pool`] | threads for heavy work |
 //! | [`sweep`] | the same question over a range of speeds or angles |
 //! | [`picture`] | SVG pictures of answers |
 //! | [`config`] | every flag and variable, with its default |
@@ -27,6 +28,7 @@ pub mod frames;
 pub mod http;
 pub mod physics;
 pub mod picture;
+pub mod pool;
 pub mod question;
 pub mod sweep;
 pub mod transform;

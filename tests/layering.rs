@@ -7,7 +7,7 @@ use std::{
 };
 
 /// The modules of the crate, each of which may import only from those before it.
-const ORDER: [&str; 13] = [
+const ORDER: [&str; 14] = [
     "physics",
     "units",
     "document",
@@ -16,6 +16,7 @@ const ORDER: [&str; 13] = [
     "transform",
     "question",
     "answer",
+    "pool",
     "sweep",
     "series",
     "picture",

@@ -10,6 +10,7 @@ mod layering;
 mod middleware;
 mod openapi;
 mod picture;
+mod pool;
 mod problems;
 mod schema;
 mod start;

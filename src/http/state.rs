@@ -5,7 +5,7 @@ use std::sync::Arc;
 use bytes::Bytes;
 
 use super::{metrics::Metrics, openapi};
-use crate::{config::Config, frames::Catalogue, question::Deployment};
+use crate::{config::Config, frames::Catalogue, pool::Pool, question::Deployment};
 
 /// What all requests share; a clone is one more handle to the same.
 #[derive(Clone)]
@@ -17,6 +17,8 @@ pub struct Shared {
     pub config: Config,
     /// What questions may ask for.
     pub deployment: Deployment,
+    /// Threads for heavy work.
+    pub pool: Pool,
     /// What is counted.
     pub metrics: Metrics,
     /// The OpenAPI document, as served.
@@ -32,6 +34,7 @@ impl AppState {
                 frames: frames.map(Arc::new),
             },
             config,
+            pool: Pool::of_all_cores(),
             metrics: Metrics::new(),
             openapi: openapi::text().into(),
         }))

@@ -5,7 +5,6 @@ use axum::{
     http::HeaderMap,
     response::Response,
 };
-use tokio::task::spawn_blocking;
 
 use super::{csv, json, svg};
 use crate::{
@@ -66,9 +65,10 @@ pub(crate) async fn sweep(
         ENGINE.as_bytes(),
     ]);
     // Thousands of points take milliseconds, for which other requests shall not wait.
-    let answering = spawn_blocking(move || {
+    let shared = state.clone();
+    let answering = state.pool.run(move || {
         cached(&headers, tag, IMMUTABLE, || {
-            let swept = sweep.answer(&state.deployment).map_err(refuse)?;
+            let swept = sweep.answer(&shared.deployment).map_err(refuse)?;
             Ok(match representation {
                 CSV => csv(swept.csv()),
                 SVG => svg(picture::sweep(&swept, sweep.division)),
@@ -76,6 +76,5 @@ pub(crate) async fn sweep(
             })
         })
     });
-    let answered = answering.await;
-    answered.unwrap_or_else(|failed| std::panic::resume_unwind(failed.into_panic()))
+    answering.await
 }

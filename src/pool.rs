@@ -1,0 +1,59 @@
+//! Threads for heavy work, as many as the machine has cores.
+//!
+//! Work that takes longer than a single reading goes here in blocks of about a millisecond: the
+//! threads that answer requests stay free, and whoever has many blocks waits between them like
+//! everyone else, since blocks start in the order in which they were handed over.
+
+use std::panic::{AssertUnwindSafe, catch_unwind, resume_unwind};
+
+use tokio::sync::oneshot;
+
+/// The threads. They end when it is dropped and their work is done.
+pub struct Pool(rayon::ThreadPool);
+
+impl Pool {
+    /// A pool of this many threads.
+    ///
+    /// # Panics
+    /// The system gives no threads.
+    pub fn new(threads: usize) -> Pool {
+        let pool = rayon::ThreadPoolBuilder::new()
+            .num_threads(threads)
+            .thread_name(|number| format!("compute-{number}"))
+            .build();
+        Pool(pool.expect("threads to compute on"))
+    }
+
+    /// A pool of one thread for each core.
+    pub fn of_all_cores() -> Pool {
+        Pool::new(std::thread::available_parallelism().map_or(1, usize::from))
+    }
+
+    /// How many blocks run at once.
+    pub fn threads(&self) -> usize {
+        self.0.current_num_threads()
+    }
+
+    /// Runs one block of work and gives its result. Dropped before that, a block that has not
+    /// begun never does, and the result of one that has is thrown away.
+    ///
+    /// # Panics
+    /// As the work does.
+    pub async fn run<T: Send + 'static>(&self, work: impl FnOnce() -> T + Send + 'static) -> T {
+        let (sender, receiver) = oneshot::channel();
+        self.0.spawn(move || {
+            if !sender.is_closed() {
+                // The panic goes on where the result is awaited; a result that nobody awaits any
+                // more is no loss.
+                let _ = sender.send(catch_unwind(AssertUnwindSafe(work)));
+            }
+        });
+        match receiver
+            .await
+            .expect("every block is run while its result is awaited")
+        {
+            Ok(result) => result,
+            Err(panic) => resume_unwind(panic),
+        }
+    }
+}
