@@ -4,10 +4,11 @@ use crate::document::Notice;
 use crate::physics::Impossible;
 use crate::physics::double_double::Dd;
 use crate::physics::energy::Energy;
-use crate::physics::field::{FieldUnits, Kernel, Measured};
+use crate::physics::field::{FieldUnits, Measured};
 use crate::physics::invariants::Invariants;
+use crate::physics::missing::{ALL_KNOWN, Known};
 use crate::physics::parallel::{ParallelFrame, parallel_frame};
-use crate::physics::real::{Vec3, round, vector};
+use crate::physics::real::{Vec3, round};
 use crate::physics::reduction::{Calibration, Reduction};
 use crate::physics::resolved::Resolved;
 
@@ -70,8 +71,8 @@ pub fn transform(
     ] {
         note_cancellation(name, bits, &mut notices);
     }
-    let known = known_components(way, reading.units, given);
-    let complete = given == [[true; 3]; 2];
+    let known = way.known(reading.units, given);
+    let complete = given == ALL_KNOWN;
     let hide = |v: [f64; 3], known: [bool; 3]| std::array::from_fn(|i| known[i].then_some(v[i]));
     let invariants = complete.then(|| {
         let answer = Measured::new(applied.e, applied.b, to);
@@ -131,13 +132,10 @@ impl Transformed {
 ///
 /// # Errors
 /// B is too close to the plane of the measured components for E·B = 0 to give the third.
-fn reduce(
-    reading: &Reading,
-    notices: &mut Vec<Notice>,
-) -> Result<(Measured, [[bool; 3]; 2]), Impossible> {
+fn reduce(reading: &Reading, notices: &mut Vec<Notice>) -> Result<(Measured, Known), Impossible> {
     let raw = [reading.e, reading.b];
     let [e, b] = raw.map(|v| v.map(|x| x.unwrap_or(0.0)));
-    let mut known: [[bool; 3]; 2] = std::array::from_fn(|which| {
+    let mut known: Known = std::array::from_fn(|which| {
         let given = raw[which].map(|x| x.is_some());
         reading.calibration[which].map_or(given, |calibration| calibration.known(given))
     });
@@ -178,28 +176,6 @@ fn reduce(
         });
     }
     Ok((measured, known))
-}
-
-/// Which components of E' and B' do not depend on an unknown one.
-fn known_components(way: &Resolved, units: FieldUnits, given: [[bool; 3]; 2]) -> [[bool; 3]; 2] {
-    let mut known = [[true; 3]; 2];
-    if given == known {
-        return known;
-    }
-    let kernel = Kernel::new(way.net(), units, ());
-    for (which, given) in given.iter().enumerate() {
-        for i in (0..3).filter(|i| !given[*i]) {
-            let mut unit = [[0.0; 3]; 2];
-            unit[which][i] = 1.0;
-            let (e, b) = kernel.apply(&vector(unit[0], ()), &vector(unit[1], ()));
-            for (known, effect) in known.iter_mut().zip([e, b]) {
-                for j in 0..3 {
-                    known[j] &= effect[j].hi == 0.0;
-                }
-            }
-        }
-    }
-    known
 }
 
 /// From a rotation mended by more than this on, the answer says so.

@@ -2,6 +2,7 @@
 //! named after what it tests.
 
 mod arithmetic;
+mod block;
 mod frames;
 mod http;
 mod incomplete;

@@ -46,6 +46,7 @@ pub fn code(impossible: &Impossible) -> Code {
         Impossible::BelowRest { .. } => Code::BelowRest,
         Impossible::NotARotation { .. } | Impossible::Mirror { .. } => Code::NotARotation,
         Impossible::Overflow { .. } => Code::Overflow,
+        Impossible::Infinite => Code::NumberOutOfRange,
         Impossible::GammaOverflow { .. } | Impossible::PrecisionExhausted { .. } => {
             Code::PrecisionExhausted
         }

@@ -60,6 +60,9 @@ pub enum Impossible {
         /// What overflows.
         what: &'static str,
     },
+    /// An infinity where a number is needed.
+    #[error("a number of the row is infinite; give a finite one, or none")]
+    Infinite,
     /// A net γ past the largest double.
     #[error(
         "the net boost has gamma 2^{bits}, and no double holds more than 2^1024; leave out steps \

@@ -1,6 +1,7 @@
 //! Fields and frames: numbers in, numbers out. Knows no text, no units by name, no network.
 
 pub mod big;
+pub mod block;
 pub mod boost;
 pub mod constants;
 pub mod double_double;
@@ -9,12 +10,14 @@ pub mod error;
 pub mod field;
 pub mod invariants;
 pub mod lorentz;
+pub mod missing;
 pub mod parallel;
 pub mod precise;
 pub mod real;
 pub mod reduction;
 pub mod resolved;
 pub mod rotation;
+pub mod rows;
 pub mod scale;
 pub mod spin;
 pub mod tensor;
