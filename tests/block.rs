@@ -120,8 +120,8 @@ fn single(steps: &[RowStep], row: &Row, setting: &Setting) -> Answer {
             }),
         };
         own.push(Step {
-            change,
             inverse: step.inverse,
+            ..Step::exact(change)
         });
     }
     alone(own, row.0, setting)
@@ -130,8 +130,8 @@ fn single(steps: &[RowStep], row: &Row, setting: &Setting) -> Answer {
 fn fixed(steps: &[RowStep]) -> Option<Vec<Step>> {
     let each = steps.iter().map(|step| match &step.change {
         RowChange::Fixed(change) => Some(Step {
-            change: change.clone(),
             inverse: step.inverse,
+            ..Step::exact(change.clone())
         }),
         _ => None,
     });
@@ -344,13 +344,10 @@ fn a_way_back_is_made_of_steps_undone() {
         to: FieldUnits::SI,
         calibration: [None; 2],
     };
-    let there = Step {
-        change: Change::Boost(Motion::Velocity {
-            value: row.1,
-            beta: Scale::ONE,
-        }),
-        inverse: false,
-    };
+    let there = Step::exact(Change::Boost(Motion::Velocity {
+        value: row.1,
+        beta: Scale::ONE,
+    }));
     let back = alone(chain::inverse(vec![there]), row.0, &setting);
     assert_eq!(single(&[step.clone().undone()], &row, &setting), back);
     check(&[step.undone()], &[row], setting);

@@ -26,10 +26,7 @@ fn boost(value: [f64; 3]) -> Step {
         value,
         beta: Scale::ONE,
     };
-    Step {
-        change: Change::Boost(motion),
-        inverse: false,
-    }
+    Step::exact(Change::Boost(motion))
 }
 
 fn rotation(axis: [f64; 3], angle: f64) -> Step {
@@ -38,10 +35,7 @@ fn rotation(axis: [f64; 3], angle: f64) -> Step {
         angle,
         radians: Scale::ONE,
     };
-    Step {
-        change: Change::Rotate(turn),
-        inverse: false,
-    }
+    Step::exact(Change::Rotate(turn))
 }
 
 fn step() -> impl Strategy<Value = Step> {

@@ -3,6 +3,7 @@
 
 mod arithmetic;
 mod block;
+mod covariance;
 mod frames;
 mod http;
 mod incomplete;

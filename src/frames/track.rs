@@ -155,13 +155,9 @@ impl Track {
         });
         let turn = Change::Rotate(Turn::Quaternion(sample.attitude));
         let has = [(self.moves, boost), (self.turns, turn)];
-        let step = |change| Step {
-            change,
-            inverse: false,
-        };
         has.into_iter()
             .filter(|(has, _)| *has)
-            .map(|(_, change)| step(change))
+            .map(|(_, change)| Step::exact(change))
             .collect()
     }
 }

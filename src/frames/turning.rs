@@ -42,11 +42,10 @@ impl Turning {
     pub fn steps(&self, time: Time) -> Vec<Step> {
         let turn = Change::Rotate(self.turn(time));
         let boost = self.motion().map(Change::Boost);
-        let step = |change| Step {
-            change,
-            inverse: false,
-        };
-        std::iter::once(turn).chain(boost).map(step).collect()
+        std::iter::once(turn)
+            .chain(boost)
+            .map(Step::exact)
+            .collect()
     }
 
     fn turn(&self, time: Time) -> Turn {

@@ -5,12 +5,15 @@
 //! imaginary angle: Silberstein, Phil. Mag. 23 (1912) 790). The quaternion keeps the digits of
 //! small and large speeds side by side, which a 4×4 matrix does not.
 
+use std::sync::Arc;
+
 use nalgebra::Matrix4;
 
 use super::boost::{Boost, Motion};
 use super::double_double::Dd;
 use super::real::{Real, norm2};
 use super::rotation::{Quaternion, Turn};
+use super::uncertain::Uncertain;
 
 /// One step of a way, from the current frame to the next.
 #[derive(Clone, Debug, PartialEq)]
@@ -19,9 +22,20 @@ pub struct Step {
     pub change: Change,
     /// Whether the step is taken backwards.
     pub inverse: bool,
+    /// Its errors; `None` when it is exact.
+    pub uncertainty: Option<Arc<Uncertain>>,
 }
 
 impl Step {
+    /// A change that is known exactly.
+    pub fn exact(change: Change) -> Step {
+        Step {
+            change,
+            inverse: false,
+            uncertainty: None,
+        }
+    }
+
     /// The step taken the other way.
     pub fn undone(self) -> Step {
         Step {

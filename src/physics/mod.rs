@@ -4,7 +4,9 @@ pub mod big;
 pub mod block;
 pub mod boost;
 pub mod constants;
+pub mod covariance;
 pub mod double_double;
+pub mod eigen;
 pub mod energy;
 pub mod error;
 pub mod field;
@@ -21,6 +23,7 @@ pub mod rows;
 pub mod scale;
 pub mod spin;
 pub mod tensor;
+pub mod uncertain;
 
 pub use big::Big;
 pub use double_double::Dd;

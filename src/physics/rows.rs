@@ -143,8 +143,8 @@ impl Motions<'_> {
             }),
         };
         Ok(change.map(|change| Step {
-            change,
             inverse: step.inverse,
+            ..Step::exact(change)
         }))
     }
 }

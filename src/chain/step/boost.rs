@@ -71,10 +71,7 @@ pub fn velocity(node: &Node, place: &Place, units: &Units, faults: &mut Faults) 
         faults.note(place, code(&impossible), impossible.to_string());
         return None;
     }
-    Some(Step {
-        change: Change::Boost(motion),
-        inverse: false,
-    })
+    Some(Step::exact(Change::Boost(motion)))
 }
 
 fn velocity_scale(units: &Units) -> Scale {

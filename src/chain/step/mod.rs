@@ -37,5 +37,6 @@ fn with_inverse(
     Some(Step {
         change: change?,
         inverse: inverse?,
+        uncertainty: None,
     })
 }
