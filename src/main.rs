@@ -3,10 +3,10 @@
 use std::path::Path;
 use std::process::ExitCode;
 
-use clap::Parser;
+use clap::{ArgMatches, CommandFactory, FromArgMatches};
 use lodeframe::{
     AppState,
-    config::{Command, CommandLine, Config, Settings, unknown_variables},
+    config::{Command, CommandLine, Config, Settings, Tokens, environment, unknown_variables},
     frames::{self, Catalogue, LoadFault},
     http::{app, log, openapi, serve::serve},
 };
@@ -21,19 +21,21 @@ const CANNOT_START: u8 = 1;
 const WRONG_SETTINGS: u8 = 2;
 
 fn main() -> ExitCode {
-    let line = CommandLine::parse();
+    let matches = CommandLine::command().get_matches();
+    let line = CommandLine::from_arg_matches(&matches).unwrap_or_else(|error| error.exit());
     match line.command {
         Some(Command::Check { file }) => check(&file),
         Some(Command::Openapi) => {
             print!("{}", openapi::text());
             ExitCode::SUCCESS
         }
-        Some(Command::Serve(settings)) => start(&settings),
-        None => start(&line.serve),
+        Some(Command::Token { name }) => token(&name),
+        Some(Command::Serve(settings)) => start(&settings, &matches),
+        None => start(&line.serve, &matches),
     }
 }
 
-fn start(settings: &Settings) -> ExitCode {
+fn start(settings: &Settings, matches: &ArgMatches) -> ExitCode {
     let mut faults = unknown_variables(std::env::vars_os().map(|(name, _)| name));
     let config = settings.check().unwrap_or_else(|found| {
         faults.extend(found);
@@ -42,6 +44,10 @@ fn start(settings: &Settings) -> ExitCode {
     if !faults.is_empty() {
         eprintln!("lodeframe cannot start:\n  {}", faults.join("\n  "));
         return ExitCode::from(WRONG_SETTINGS);
+    }
+    if settings.print_config {
+        print!("{}", environment(matches));
+        return ExitCode::SUCCESS;
     }
     let frames = match config.frames.as_deref().map(frames::load).transpose() {
         Ok(frames) => frames,
@@ -77,6 +83,24 @@ fn check(file: &Path) -> ExitCode {
     }
 }
 
+/// Makes a bearer token: its line for the file goes to standard output, the secret beside it.
+fn token(name: &str) -> ExitCode {
+    match Tokens::make(name) {
+        Ok((secret, line)) => {
+            eprintln!(
+                "The token of {name}, shown only now (send it as Authorization: Bearer TOKEN):\n{secret}\n\
+                 Its line for the file of --tokens, which does not give it away:"
+            );
+            println!("{line}");
+            ExitCode::SUCCESS
+        }
+        Err(fault) => {
+            eprintln!("{fault}");
+            ExitCode::from(WRONG_SETTINGS)
+        }
+    }
+}
+
 fn lines(faults: &[LoadFault]) -> Vec<String> {
     faults.iter().map(LoadFault::to_string).collect()
 }
@@ -103,10 +127,22 @@ async fn run(config: Config, frames: Option<Catalogue>) -> std::io::Result<()> {
     };
     let address = listener.local_addr()?;
     let app = app(AppState::new(config.clone(), frames));
+    let scheme = if config.tls.is_some() {
+        "https"
+    } else {
+        "http"
+    };
     println!(
-        "Lodeframe {} listens on http://{address} (stop with Ctrl-C)",
+        "Lodeframe {} listens on {scheme}://{address} (stop with Ctrl-C)",
         env!("CARGO_PKG_VERSION")
     );
+    if config.tokens.is_some() && config.tls.is_none() && !address.ip().is_loopback() {
+        log::event(
+            "warn",
+            "tokens travel readable",
+            &"without --tls-cert whoever sees the network sees them; let a proxy on this machine speak TLS, or give a certificate",
+        );
+    }
     serve(listener, app, &config, stop).await;
     Ok(())
 }

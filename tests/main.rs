@@ -1,6 +1,7 @@
 //! All integration tests in one binary (two cores link one file faster than many); each module is
 //! named after what it tests.
 
+mod access;
 mod arithmetic;
 mod block;
 mod covariance;

@@ -250,6 +250,103 @@ fn other_addresses_need_open() {
 }
 
 #[test]
+fn access_is_settled_without_contradiction() {
+    let file = std::env::temp_dir().join(format!("lodeframe-tokens-{}", std::process::id()));
+    let path = file.to_str().expect("UTF-8");
+    let made = lodeframe(&["token", "logger-3"]).output().expect("it runs");
+    assert!(made.status.success());
+    let secret = String::from_utf8(made.stderr).expect("UTF-8");
+    let secret = secret.lines().nth(1).expect("the token").to_owned();
+    std::fs::write(&file, made.stdout).expect("a file");
+
+    let both = refuse(lodeframe(&["--tokens", path, "--open"]).args(["--tls-key", "key.pem"]));
+    assert!(
+        both.contains("leave one of them out") && both.contains("TLS needs both"),
+        "{both}"
+    );
+    assert_eq!(both.lines().count(), 3, "{both}");
+    let none = refuse(
+        lodeframe(&["--tokens", "/no/such/file", "--listen", "0.0.0.0:0"]).args([
+            "--tls-key",
+            "/no/key",
+            "--tls-cert",
+            path,
+        ]),
+    );
+    for fault in [
+        "--tokens /no/such/file cannot",
+        "--tls-key /no/key",
+        "holds no certificate",
+    ] {
+        assert!(none.contains(fault), "{fault} in\n{none}");
+    }
+    assert_eq!(none.lines().count(), 4, "{none}");
+    let name = lodeframe(&["token", "two words"])
+        .output()
+        .expect("it runs");
+    assert_eq!(name.status.code(), Some(2));
+
+    let running = Running::listen("0.0.0.0:0", &["--tokens", path]);
+    let mut stream = running.connect();
+    let request = format!(
+        "GET /metrics HTTP/1.1\r\nhost: localhost\r\nauthorization: Bearer {secret}\r\nconnection: close\r\n\r\n"
+    );
+    stream.write_all(request.as_bytes()).expect("it reads");
+    let mut answer = String::new();
+    stream.read_to_string(&mut answer).expect("it answers");
+    assert!(answer.starts_with("HTTP/1.1 200"), "{answer}");
+    running.terminate();
+    let (code, log) = running.end();
+    assert_eq!(code, Some(0));
+    assert!(log.contains(" token_of=logger-3"), "{log}");
+    assert!(log.contains("tokens travel readable"), "{log}");
+    assert!(!log.contains(&secret) && !answer.contains(&secret));
+    std::fs::remove_file(file).expect("it was there");
+}
+
+#[test]
+fn the_settings_in_effect_are_an_environment_file() {
+    let printed = lodeframe(&["serve", "--print-config", "--max-steps", "7"])
+        .env("LODEFRAME_GRACE", "5s")
+        .env("LODEFRAME_MAX_STEPS", "9")
+        .env("LODEFRAME_FRAMES", "/srv/two words.toml")
+        .output()
+        .expect("it runs");
+    assert!(printed.status.success());
+    let text = String::from_utf8(printed.stdout).expect("UTF-8");
+    for line in [
+        "LODEFRAME_LISTEN=127.0.0.1:7410",
+        "# LODEFRAME_TOKENS=",
+        "LODEFRAME_MAX_STEPS=7",
+        "LODEFRAME_GRACE=5s",
+        "LODEFRAME_FRAMES='/srv/two words.toml'",
+    ] {
+        assert!(text.lines().any(|found| found == line), "{line} in\n{text}");
+    }
+    // It reads what it prints.
+    let mut again = lodeframe(&["--print-config"]);
+    for line in text.lines().filter(|line| !line.starts_with('#')) {
+        let (name, value) = line.split_once('=').expect("a variable");
+        again.env(name, value.trim_matches('\''));
+    }
+    assert_eq!(again.output().expect("it runs").stdout, text.as_bytes());
+    // Every setting is in the help, with its variable.
+    let help = lodeframe(&["serve", "--help"]).output().expect("it runs");
+    let help = String::from_utf8(help.stdout).expect("UTF-8");
+    for line in text.lines() {
+        let name = line
+            .trim_start_matches("# ")
+            .split('=')
+            .next()
+            .expect("a name");
+        assert!(
+            help.contains(&format!("[env: {name}=")),
+            "{name} in\n{help}"
+        );
+    }
+}
+
+#[test]
 fn a_port_in_use_is_named() {
     let running = Running::start(&[]);
     let address = running.address.to_string();

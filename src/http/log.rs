@@ -44,7 +44,7 @@ pub fn start(form: LogForm, out: impl io::Write + Send + 'static) -> Option<Guar
 }
 
 /// Logs an event of the service itself.
-pub(super) fn event(level: &'static str, event: &'static str, detail: &dyn fmt::Display) {
+pub fn event(level: &'static str, event: &'static str, detail: &dyn fmt::Display) {
     write(|line| {
         line.word("level", level);
         line.text("event", event);
@@ -60,6 +60,7 @@ pub(super) struct Access<'a> {
     pub(super) time: Duration,
     pub(super) id: Uuid,
     pub(super) trace: Option<&'a str>,
+    pub(super) holder: Option<&'a str>,
 }
 
 /// Logs one answered request.
@@ -75,6 +76,9 @@ pub(super) fn access(access: &Access<'_>) {
         line.word("request", access.id.as_hyphenated().encode_lower(&mut id));
         if let Some(trace) = access.trace {
             line.word("trace", trace);
+        }
+        if let Some(holder) = access.holder {
+            line.word("token_of", holder);
         }
     });
 }

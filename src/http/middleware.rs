@@ -21,7 +21,7 @@ use pin_project_lite::pin_project;
 use tower::{Layer, Service};
 use uuid::Uuid;
 
-use super::{AppState, log, metrics::Route, problem::Problem};
+use super::{AppState, guard::Holder, log, metrics::Route, problem::Problem};
 use crate::document::Code;
 
 /// Longest path and query, bytes.
@@ -211,11 +211,12 @@ impl Record {
         headers
             .entry(header::CONTENT_SECURITY_POLICY)
             .or_insert(NOTHING);
-        self.end(response.status());
+        let holder = response.extensions().get::<Holder>();
+        self.end(response.status(), holder.map(|holder| &*holder.0));
         response
     }
 
-    fn end(&mut self, status: StatusCode) {
+    fn end(&mut self, status: StatusCode, holder: Option<&str>) {
         self.finished = true;
         let time = self.started.elapsed();
         self.state
@@ -228,6 +229,7 @@ impl Record {
             time,
             id: self.id,
             trace: self.trace.as_ref().and_then(|value| value.to_str().ok()),
+            holder,
         });
     }
 }
@@ -237,7 +239,7 @@ impl Drop for Record {
         self.state.metrics.leave();
         if !self.finished {
             // The client went away before its answer began.
-            self.end(StatusCode::REQUEST_TIMEOUT);
+            self.end(StatusCode::REQUEST_TIMEOUT, None);
         }
     }
 }

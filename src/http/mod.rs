@@ -8,7 +8,7 @@
 //!    into a problem with [`Problem::from_faults`](problem::Problem::from_faults).
 //! 2. Describe it with `#[utoipa::path(..)]`: tag, operation id, the answer with a true example,
 //!    and [`CommonProblems`](problem::CommonProblems) among the responses.
-//! 3. Name it in [`router::routes`], and write the document anew:
+//! 3. Name it in `guarded` of [`router`] (or in `open`, when no token guards it), and write the document anew:
 //!    `cargo run -- openapi > openapi/openapi.json`.
 //!
 //! Request ids, logs, metrics, limits and the text of problems come from [`middleware`]; a handler
@@ -19,6 +19,7 @@ pub mod body;
 pub mod cache;
 mod frames;
 mod gather;
+mod guard;
 mod handlers;
 pub mod log;
 pub mod metrics;

@@ -1,7 +1,13 @@
 //! The OpenAPI 3.1 document, made from the descriptions beside the handlers.
 
 use serde_json::Value;
-use utoipa::OpenApi;
+use utoipa::{
+    OpenApi,
+    openapi::{
+        RefOr,
+        security::{Http, HttpAuthScheme, SecurityRequirement, SecurityScheme},
+    },
+};
 
 use super::{router, schema::examples};
 
@@ -28,6 +34,38 @@ struct Head;
 /// The document without its paths.
 pub(super) fn head() -> utoipa::openapi::OpenApi {
     Head::openapi()
+}
+
+/// Says of every path that it may ask for a token, and what it answers without one.
+pub(super) fn say_guarded(document: &mut utoipa::openapi::OpenApi) {
+    let mut bearer = Http::new(HttpAuthScheme::Bearer);
+    bearer.description = Some(
+        "Needed where the service was started with --tokens; elsewhere no token is read."
+            .to_owned(),
+    );
+    document
+        .components
+        .get_or_insert_default()
+        .add_security_scheme("bearer", SecurityScheme::Http(bearer));
+    let items = document.paths.paths.values_mut();
+    for operation in items
+        .flat_map(|item| [&mut item.get, &mut item.post])
+        .flatten()
+    {
+        operation.security = Some(vec![
+            SecurityRequirement::default(),
+            SecurityRequirement::new("bearer", [] as [&str; 0]),
+        ]);
+        let responses = &mut operation.responses.responses;
+        // A problem like any other.
+        let Some(RefOr::T(problem)) = responses.get("500") else {
+            unreachable!("every operation has the common problems");
+        };
+        let mut unauthorized = problem.clone();
+        unauthorized.description =
+            "The service asks for a token, and the request carries none that it knows".to_owned();
+        responses.insert("401".to_owned(), RefOr::T(unauthorized));
+    }
 }
 
 /// The whole document as indented JSON with a newline at its end, as served and as committed.

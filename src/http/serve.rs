@@ -6,10 +6,14 @@ use axum::Router;
 use hyper::server::conn::http1;
 use hyper_util::{
     rt::{TokioIo, TokioTimer},
-    server::graceful::GracefulShutdown,
+    server::graceful::{GracefulShutdown, Watcher},
     service::TowerToHyperService,
 };
-use tokio::net::TcpListener;
+use tokio::{
+    io::{AsyncRead, AsyncWrite},
+    net::TcpListener,
+};
+use tokio_rustls::TlsAcceptor;
 
 use super::log;
 use crate::config::Config;
@@ -26,6 +30,7 @@ pub async fn serve(
     let mut http = http1::Builder::new();
     http.timer(TokioTimer::new())
         .header_read_timeout(config.idle_timeout);
+    let tls = config.tls.clone().map(TlsAcceptor::from);
     let connections = GracefulShutdown::new();
     let mut stop = std::pin::pin!(stop);
     loop {
@@ -43,14 +48,22 @@ pub async fn serve(
         // Answers are small and complete; waiting to fill a segment only delays them. A socket
         // that refuses the option is about to fail anyway, and says so when it is read.
         let _ = stream.set_nodelay(true);
-        let connection =
-            http.serve_connection(TokioIo::new(stream), TowerToHyperService::new(app.clone()));
-        let connection = connections.watch(connection);
-        tokio::spawn(async move {
-            if let Err(error) = connection.await {
-                log::event("debug", "connection ended early", &error);
+        let (http, app, watcher) = (http.clone(), app.clone(), connections.watcher());
+        match tls.clone() {
+            None => {
+                tokio::spawn(converse(stream, http, app, watcher));
             }
-        });
+            Some(tls) => {
+                let handshake = tokio::time::timeout(config.idle_timeout, tls.accept(stream));
+                tokio::spawn(async move {
+                    match handshake.await {
+                        Ok(Ok(stream)) => converse(stream, http, app, watcher).await,
+                        Ok(Err(error)) => log::event("debug", "no TLS", &error),
+                        Err(_) => log::event("debug", "no TLS", &"the client did not go on"),
+                    }
+                });
+            }
+        }
     }
     drop(listener);
     if tokio::time::timeout(config.grace, connections.shutdown())
@@ -62,6 +75,19 @@ pub async fn serve(
             "stopped",
             &"requests still running at the end of the grace were cut",
         );
+    }
+}
+
+/// Answers the requests of one connection.
+async fn converse(
+    stream: impl AsyncRead + AsyncWrite + Unpin + Send + 'static,
+    http: http1::Builder,
+    app: Router,
+    watcher: Watcher,
+) {
+    let connection = http.serve_connection(TokioIo::new(stream), TowerToHyperService::new(app));
+    if let Err(error) = watcher.watch(connection).await {
+        log::event("debug", "connection ended early", &error);
     }
 }
 

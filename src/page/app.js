@@ -1,5 +1,6 @@
 // The workbench: what is typed becomes a question, and the answer is shown at once.
 
+import { hasToken } from "./access.js";
 import { showAnswer, sentence } from "./answer.js";
 import { ask, forget, picture } from "./ask.js";
 import { all, one, settled } from "./dom.js";
@@ -174,7 +175,7 @@ function wire() {
   one("#example").onclick = () => load(EXAMPLE);
   one("#full").onchange = () => answered && show(answered);
   one("#copy-curl").onclick = (event) =>
-    copy(event.target, `curl -s ${location.origin}/v1/transform --json ${shell(stringify(asked))}`);
+    copy(event.target, `curl -s ${hasToken() ? '-H "Authorization: Bearer $TOKEN" ' : ""}${location.origin}/v1/transform --json ${shell(stringify(asked))}`);
   one("#copy-link").onclick = (event) =>
     copy(event.target, `${location.origin}/#${encodeURIComponent(stringify(asked))}`);
   one("#copy-picture").onclick = (event) => copy(event.target, `${location.origin}/v1/transform?${query(asked)}`);

@@ -1,5 +1,7 @@
 // Questions to the service. A newer question of one kind takes the place of an older one.
 
+import { send } from "./access.js";
+
 const running = new Map();
 
 /** What the service answers: `{answer}`, `{problem}`, or nothing when a newer question was asked. */
@@ -8,7 +10,7 @@ export async function ask(kind, path, options = {}) {
   const control = new AbortController();
   running.set(kind, control);
   try {
-    const reply = await fetch(path, { ...options, signal: control.signal });
+    const reply = await send(path, { ...options, signal: control.signal });
     const type = reply.headers.get("content-type") ?? "";
     if (!reply.ok) return { problem: await problem(reply, type) };
     return { answer: type.startsWith("application/json") ? await reply.json() : await reply.blob() };

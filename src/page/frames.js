@@ -1,5 +1,6 @@
 // The way by the names of two frames of the catalogue, when the service has one.
 
+import { send } from "./access.js";
 import { el, fresh, one } from "./dom.js";
 import { choice, read } from "./fields.js";
 
@@ -7,7 +8,9 @@ let catalogue = { frames: [] };
 
 /** Asks for the catalogue and offers its frames. */
 export async function loadFrames() {
-  catalogue = await (await fetch("/v1/frames")).json();
+  const reply = await send("/v1/frames");
+  if (!reply.ok) return;
+  catalogue = await reply.json();
   if (catalogue.frames.length === 0) return;
   const options = catalogue.frames.map((frame) => [frame.name, frame.about ? `${frame.name}: ${frame.about}` : frame.name]);
   const id = fresh();

@@ -60,7 +60,7 @@ class Service:
         """The port in the address that the service prints at its start."""
         end = time.monotonic() + 10
         while time.monotonic() < end and self.process.poll() is None:
-            found = re.search(rb"http://127\.0\.0\.1:(\d+)", self.log.read_bytes())
+            found = re.search(rb"https?://127\.0\.0\.1:(\d+)", self.log.read_bytes())
             if found:
                 return int(found[1])
             time.sleep(0.01)

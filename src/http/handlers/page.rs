@@ -29,6 +29,7 @@ macro_rules! files {
 /// What the page asks for.
 const FILES: &[File] = files![
     "style.css" "text/css",
+    "access.js" "text/javascript",
     "app.js" "text/javascript",
     "answer.js" "text/javascript",
     "ask.js" "text/javascript",
