@@ -24,7 +24,7 @@ pub use tokens::Tokens;
     version,
     about = "Restates measured electric and magnetic fields in the frame where they are needed.",
     after_help = "Every setting is also a variable: --max-body is LODEFRAME_MAX_BODY. A flag wins.\n\
-Exit codes: 0 ended as asked, 1 cannot start (address in use), 2 wrong settings or catalogue.",
+Exit codes: 0 ended as asked, 1 cannot start (address in use, socket passed on unfit), 2 wrong settings or catalogue.",
     args_conflicts_with_subcommands = true
 )]
 pub struct CommandLine {
@@ -86,6 +86,8 @@ pub struct Config {
     pub log: LogForm,
     /// Largest body of a single question, bytes.
     pub max_body: usize,
+    /// Connections held open at once.
+    pub max_connections: usize,
     /// Requests answered at once.
     pub max_concurrent: usize,
     /// Steps in the way of one question.

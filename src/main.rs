@@ -8,8 +8,14 @@ use lodeframe::{
     AppState,
     config::{Command, CommandLine, Config, Settings, Tokens, environment, unknown_variables},
     frames::{self, Catalogue, LoadFault},
-    http::{app, log, openapi, serve::serve},
+    http::{
+        app,
+        listen::{listener, room},
+        log, openapi,
+        serve::serve,
+    },
 };
+use sd_notify::NotifyState;
 use tokio::{
     net::TcpListener,
     signal::unix::{SignalKind, signal},
@@ -57,10 +63,17 @@ fn start(settings: &Settings, matches: &ArgMatches) -> ExitCode {
         }
     };
     let _log = log::start(config.log, std::io::stderr());
+    let listener = match listener(&config) {
+        Ok(listener) => listener,
+        Err(fault) => {
+            eprintln!("lodeframe cannot start: {fault}");
+            return ExitCode::from(CANNOT_START);
+        }
+    };
     let runtime = tokio::runtime::Builder::new_multi_thread()
         .enable_all()
         .build();
-    match runtime.and_then(|runtime| runtime.block_on(run(config, frames))) {
+    match runtime.and_then(|runtime| runtime.block_on(run(listener, config, frames))) {
         Ok(()) => ExitCode::SUCCESS,
         Err(error) => {
             eprintln!("lodeframe cannot start: {error}");
@@ -105,16 +118,12 @@ fn lines(faults: &[LoadFault]) -> Vec<String> {
     faults.iter().map(LoadFault::to_string).collect()
 }
 
-async fn run(config: Config, frames: Option<Catalogue>) -> std::io::Result<()> {
-    let listener = TcpListener::bind(config.listen).await.map_err(|error| {
-        std::io::Error::new(
-            error.kind(),
-            format!(
-                "{} cannot be listened on ({error}); choose another with --listen",
-                config.listen
-            ),
-        )
-    })?;
+async fn run(
+    listener: std::net::TcpListener,
+    config: Config,
+    frames: Option<Catalogue>,
+) -> std::io::Result<()> {
+    let listener = TcpListener::from_std(listener)?;
     let (mut terminate, mut interrupt) = (
         signal(SignalKind::terminate())?,
         signal(SignalKind::interrupt())?,
@@ -126,7 +135,6 @@ async fn run(config: Config, frames: Option<Catalogue>) -> std::io::Result<()> {
         }
     };
     let address = listener.local_addr()?;
-    let app = app(AppState::new(config.clone(), frames));
     let scheme = if config.tls.is_some() {
         "https"
     } else {
@@ -136,6 +144,9 @@ async fn run(config: Config, frames: Option<Catalogue>) -> std::io::Result<()> {
         "Lodeframe {} listens on {scheme}://{address} (stop with Ctrl-C)",
         env!("CARGO_PKG_VERSION")
     );
+    if let Err(fault) = room(&config) {
+        log::event("warn", "too few open files", &fault);
+    }
     if config.tokens.is_some() && config.tls.is_none() && !address.ip().is_loopback() {
         log::event(
             "warn",
@@ -143,6 +154,19 @@ async fn run(config: Config, frames: Option<Catalogue>) -> std::io::Result<()> {
             &"without --tls-cert whoever sees the network sees them; let a proxy on this machine speak TLS, or give a certificate",
         );
     }
-    serve(listener, app, &config, stop).await;
+    let state = AppState::new(config, frames);
+    tell_manager(NotifyState::Ready);
+    serve(listener, app(state.clone()), &state, async {
+        stop.await;
+        tell_manager(NotifyState::Stopping);
+    })
+    .await;
     Ok(())
+}
+
+/// Tells systemd, when it started the service, what the service is about to do.
+fn tell_manager(news: NotifyState<'_>) {
+    if let Err(error) = sd_notify::notify(&[news]) {
+        log::event("warn", "systemd does not listen", &error);
+    }
 }

@@ -122,6 +122,9 @@ async fn metrics_are_openmetrics_text_by_route_template() {
         // The request for the metrics is itself running.
         "lodeframe_requests_in_flight 1",
         "lodeframe_requests_shed_total 0",
+        "lodeframe_connections 0",
+        "lodeframe_connections_shed_total 0",
+        "lodeframe_problems_total{code=\"not_found\"} 1",
         "lodeframe_panics_total 0",
         "lodeframe_build_info{version=\"0.1.0\"} 1",
     ] {

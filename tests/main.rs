@@ -10,6 +10,7 @@ mod http;
 mod incomplete;
 mod laws;
 mod layering;
+mod life;
 mod middleware;
 mod openapi;
 mod picture;

@@ -8,26 +8,32 @@ use std::{
 };
 
 /// The program, without any settings from the environment of the tests.
-fn lodeframe(args: &[&str]) -> Command {
+pub(crate) fn lodeframe(args: &[&str]) -> Command {
     let mut command = Command::new(env!("CARGO_BIN_EXE_lodeframe"));
     command.env_clear().args(args);
     command
 }
 
 /// The program serving on a free port.
-struct Running {
+pub(crate) struct Running {
     process: Child,
-    address: SocketAddr,
+    pub(crate) address: SocketAddr,
     first_line: String,
 }
 
 impl Running {
-    fn start(args: &[&str]) -> Running {
+    pub(crate) fn start(args: &[&str]) -> Running {
         Running::listen("127.0.0.1:0", args)
     }
 
     fn listen(address: &str, args: &[&str]) -> Running {
-        let mut process = lodeframe(&[&["serve", "--listen", address], args].concat())
+        Running::spawn(&mut lodeframe(
+            &[&["serve", "--listen", address], args].concat(),
+        ))
+    }
+
+    pub(crate) fn spawn(command: &mut Command) -> Running {
+        let mut process = command
             .stdout(Stdio::piped())
             .stderr(Stdio::piped())
             .spawn()
@@ -47,7 +53,7 @@ impl Running {
         }
     }
 
-    fn connect(&self) -> TcpStream {
+    pub(crate) fn connect(&self) -> TcpStream {
         let stream = TcpStream::connect(self.address).expect("it listens");
         stream
             .set_read_timeout(Some(Duration::from_secs(30)))
@@ -56,14 +62,14 @@ impl Running {
     }
 
     /// Asks the process to stop, as a service manager does.
-    fn terminate(&self) {
+    pub(crate) fn terminate(&self) {
         let id = self.process.id().to_string();
         let sent = Command::new("kill").args(["-TERM", &id]).status();
         assert!(sent.expect("kill runs").success());
     }
 
     /// Waits for the end; the exit code and the log.
-    fn end(mut self) -> (Option<i32>, String) {
+    pub(crate) fn end(mut self) -> (Option<i32>, String) {
         let mut log = String::new();
         let mut out = self.process.stderr.take().expect("piped");
         out.read_to_string(&mut log).expect("UTF-8");

@@ -42,6 +42,7 @@ impl Settings {
             max_row: size(&mut faults, "max-row", &self.limits.max_row),
             max_batch: size(&mut faults, "max-batch", &self.limits.max_batch),
             buffer: size(&mut faults, "buffer", &self.limits.buffer),
+            max_connections: count(&mut faults, "max-connections", &self.limits.max_connections),
             max_concurrent: count(&mut faults, "max-concurrent", &self.limits.max_concurrent),
             max_steps: count(&mut faults, "max-steps", &self.limits.max_steps),
             max_points: count(&mut faults, "max-points", &self.limits.max_points),

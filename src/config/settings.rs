@@ -22,7 +22,7 @@ pub struct Settings {
 #[derive(Args, Clone, Debug)]
 #[command(next_help_heading = "Where it listens, and who may ask")]
 pub(super) struct Access {
-    /// Address and port to listen on.
+    /// Address and port to listen on, unless systemd passes on a socket.
     #[arg(
         long,
         env = "LODEFRAME_LISTEN",
@@ -94,6 +94,15 @@ pub(super) struct Limits {
         default_value = "1MiB"
     )]
     pub(super) max_body: String,
+
+    /// Connections held open at once; more are turned away with 503.
+    #[arg(
+        long,
+        env = "LODEFRAME_MAX_CONNECTIONS",
+        value_name = "COUNT",
+        default_value = "4096"
+    )]
+    pub(super) max_connections: String,
 
     /// Requests answered at once; more are turned away with 503.
     #[arg(

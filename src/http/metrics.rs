@@ -16,6 +16,8 @@ use prometheus_client::{
     registry::{Registry, Unit},
 };
 
+use crate::document::Code;
+
 /// Upper bounds of the duration buckets, s: from a single reading to the request timeout.
 const BOUNDS: [f64; 14] = [
     25e-6, 50e-6, 100e-6, 250e-6, 500e-6, 1e-3, 2.5e-3, 5e-3, 10e-3, 50e-3, 250e-3, 1.0, 5.0, 30.0,
@@ -25,7 +27,12 @@ const BOUNDS: [f64; 14] = [
 pub struct Metrics {
     registry: Registry,
     durations: Family<Answered, Histogram, fn() -> Histogram>,
+    problems: Family<Reported, Counter>,
     in_flight: Gauge,
+    /// Connections held open.
+    pub connections: Gauge,
+    /// Connections turned away because too many were open.
+    pub connections_shed: Counter,
     /// Requests turned away because too many were running.
     pub shed: Counter,
     /// Requests answered with 500 because a handler panicked.
@@ -37,6 +44,18 @@ pub struct Metrics {
 struct Answered {
     route: Route,
     class: Class,
+}
+
+/// The label of a problem.
+#[derive(Clone, Debug, PartialEq, Eq, Hash, EncodeLabelSet)]
+struct Reported {
+    code: Code,
+}
+
+impl EncodeLabelValue for Code {
+    fn encode(&self, encoder: &mut LabelValueEncoder) -> Result<(), fmt::Error> {
+        self.name().encode(encoder)
+    }
 }
 
 /// The template of a route, such as `/problems/{code}`, never the path itself.
@@ -97,6 +116,20 @@ impl Metrics {
             Unit::Seconds,
             durations.clone(),
         );
+        let problems = Family::default();
+        registry.register(
+            "problems",
+            "Answers that were a problem, by its code: every limit has one",
+            problems.clone(),
+        );
+        let connections = Gauge::default();
+        registry.register("connections", "Connections held open", connections.clone());
+        let connections_shed = Counter::default();
+        registry.register(
+            "connections_shed",
+            "Connections turned away because too many were open",
+            connections_shed.clone(),
+        );
         let in_flight = Gauge::default();
         registry.register(
             "requests_in_flight",
@@ -120,7 +153,10 @@ impl Metrics {
         Metrics {
             registry,
             durations,
+            problems,
             in_flight,
+            connections,
+            connections_shed,
             shed,
             panics,
         }
@@ -142,6 +178,11 @@ impl Metrics {
         self.durations
             .get_or_create(&Answered { route, class })
             .observe(time.as_secs_f64());
+    }
+
+    /// Counts an answer that is a problem.
+    pub fn problem(&self, code: Code) {
+        self.problems.get_or_create(&Reported { code }).inc();
     }
 
     /// All counters as OpenMetrics text.

@@ -200,6 +200,7 @@ impl Record {
         if response.status().is_client_error() || response.status().is_server_error() {
             let problem = response.extensions_mut().remove::<Problem>();
             let problem = problem.unwrap_or_else(|| Problem::from_status(response.status()));
+            self.state.metrics.problem(problem.code());
             problem.write(self.id, &mut response);
         }
         let headers = response.headers_mut();

@@ -17,10 +17,12 @@
 pub mod accept;
 pub mod body;
 pub mod cache;
+mod doorstep;
 mod frames;
 mod gather;
 mod guard;
 mod handlers;
+pub mod listen;
 pub mod log;
 pub mod metrics;
 pub mod middleware;

@@ -1,6 +1,6 @@
 //! Connections: from a listening socket to the router, and the graceful end.
 
-use std::{io, time::Duration};
+use std::{io, sync::Arc, time::Duration};
 
 use axum::Router;
 use hyper::server::conn::http1;
@@ -12,24 +12,32 @@ use hyper_util::{
 use tokio::{
     io::{AsyncRead, AsyncWrite},
     net::TcpListener,
+    sync::{OwnedSemaphorePermit, Semaphore},
 };
 use tokio_rustls::TlsAcceptor;
 
-use super::log;
-use crate::config::Config;
+use super::{AppState, doorstep::Doorstep, log};
+
+/// Most of a request that a connection holds unread, bytes: room for the largest head that is
+/// answered with a problem, and no more, since every connection may fill it.
+const READ_BUFFER: usize = 64 * 1024;
 
 /// Serves `app` on `listener` until `stop` is done, then lets running requests finish.
 ///
-/// Connections that are still busy after `config.grace` are cut.
+/// Connections that are still busy after `--grace` are cut.
 pub async fn serve(
     listener: TcpListener,
     app: Router,
-    config: &Config,
+    state: &AppState,
     stop: impl Future<Output = ()>,
 ) {
+    let config = &state.config;
     let mut http = http1::Builder::new();
     http.timer(TokioTimer::new())
+        .max_buf_size(READ_BUFFER)
         .header_read_timeout(config.idle_timeout);
+    let places = Arc::new(Semaphore::new(config.max_connections));
+    let doorstep = Doorstep::new();
     let tls = config.tls.clone().map(TlsAcceptor::from);
     let connections = GracefulShutdown::new();
     let mut stop = std::pin::pin!(stop);
@@ -48,16 +56,25 @@ pub async fn serve(
         // Answers are small and complete; waiting to fill a segment only delays them. A socket
         // that refuses the option is about to fail anyway, and says so when it is read.
         let _ = stream.set_nodelay(true);
+        let Ok(permit) = places.clone().try_acquire_owned() else {
+            state.metrics.connections_shed.inc();
+            // A handshake is more work than a client without a place is worth.
+            if tls.is_none() {
+                doorstep.turn_away(stream, config.max_connections);
+            }
+            continue;
+        };
+        let place = Place::new(permit, state.clone());
         let (http, app, watcher) = (http.clone(), app.clone(), connections.watcher());
         match tls.clone() {
             None => {
-                tokio::spawn(converse(stream, http, app, watcher));
+                tokio::spawn(converse(stream, http, app, watcher, place));
             }
             Some(tls) => {
                 let handshake = tokio::time::timeout(config.idle_timeout, tls.accept(stream));
                 tokio::spawn(async move {
                     match handshake.await {
-                        Ok(Ok(stream)) => converse(stream, http, app, watcher).await,
+                        Ok(Ok(stream)) => converse(stream, http, app, watcher, place).await,
                         Ok(Err(error)) => log::event("debug", "no TLS", &error),
                         Err(_) => log::event("debug", "no TLS", &"the client did not go on"),
                     }
@@ -78,12 +95,35 @@ pub async fn serve(
     }
 }
 
+/// The place of one connection, given back when it ends.
+struct Place {
+    state: AppState,
+    _permit: OwnedSemaphorePermit,
+}
+
+impl Place {
+    fn new(permit: OwnedSemaphorePermit, state: AppState) -> Place {
+        state.metrics.connections.inc();
+        Place {
+            state,
+            _permit: permit,
+        }
+    }
+}
+
+impl Drop for Place {
+    fn drop(&mut self) {
+        self.state.metrics.connections.dec();
+    }
+}
+
 /// Answers the requests of one connection.
 async fn converse(
     stream: impl AsyncRead + AsyncWrite + Unpin + Send + 'static,
     http: http1::Builder,
     app: Router,
     watcher: Watcher,
+    _place: Place,
 ) {
     let connection = http.serve_connection(TokioIo::new(stream), TowerToHyperService::new(app));
     if let Err(error) = watcher.watch(connection).await {
