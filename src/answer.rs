@@ -1,5 +1,7 @@
 //! An answer as it is sent: the types behind the JSON, with their meaning and units.
 
+use std::borrow::Cow;
+
 use serde::{Deserialize, Serialize};
 use utoipa::ToSchema;
 
@@ -32,16 +34,16 @@ pub struct Answer {
     pub net: NetTransformation,
     /// The field tensor of the answer, when asked for.
     #[serde(skip_serializing_if = "Option::is_none")]
-    pub tensor: Option<Tensor>,
+    pub tensor: Option<Box<Tensor>>,
     /// Λ of the whole way, v' = Λv for v = (ct, x, y, z), when asked for.
     #[serde(skip_serializing_if = "Option::is_none")]
-    pub matrix: Option<[[f64; 4]; 4]>,
+    pub matrix: Option<Box<[[f64; 4]; 4]>>,
     /// Energy and stress of the answer, when asked for.
     #[serde(skip_serializing_if = "Option::is_none")]
-    pub energy: Option<Energy>,
+    pub energy: Option<Box<Energy>>,
     /// The frame in which E and B are parallel, when asked for.
     #[serde(skip_serializing_if = "Option::is_none")]
-    pub parallel_frame: Option<ParallelFrame>,
+    pub parallel_frame: Option<Box<ParallelFrame>>,
     /// Remarks that a careful colleague would make.
     pub notices: Vec<Notice>,
     /// What the answer was made with.
@@ -52,9 +54,9 @@ pub struct Answer {
 #[derive(Clone, Debug, Serialize, Deserialize, ToSchema)]
 pub struct AnswerUnits {
     /// Unit of E.
-    pub e: String,
+    pub e: Cow<'static, str>,
     /// Unit of B.
-    pub b: String,
+    pub b: Cow<'static, str>,
 }
 
 /// What every frame agrees on.
@@ -66,7 +68,7 @@ pub struct Invariants {
     pub e_dot_cb: Option<f64>,
     /// Kind of field: `electric`, `magnetic`, `null` (both invariants vanish), `balanced` (E = cB, not perpendicular) or `zero`.
     #[schema(example = "magnetic")]
-    pub kind: String,
+    pub kind: Cow<'static, str>,
     /// Self-check: the larger change of the two from question to answer, over the larger E² + c²B². About 1e-16.
     pub residual: f64,
 }
@@ -115,7 +117,7 @@ pub struct Tensor {
     pub dual: [[f64; 4]; 4],
     /// `mostly_minus` (+ − − −) or `mostly_plus` (− + + +).
     #[schema(example = "mostly_minus")]
-    pub signature: String,
+    pub signature: Cow<'static, str>,
 }
 
 /// What the field of the answer holds and carries, in vacuum.
@@ -171,7 +173,7 @@ pub struct NoFrame {
     #[schema(example = false)]
     pub exists: bool,
     /// The reason.
-    pub why: String,
+    pub why: Cow<'static, str>,
 }
 
 /// A remark.
@@ -179,9 +181,9 @@ pub struct NoFrame {
 pub struct Notice {
     /// Stable name.
     #[schema(example = "heavy_cancellation")]
-    pub code: String,
+    pub code: Cow<'static, str>,
     /// In words.
-    pub detail: String,
+    pub detail: Cow<'static, str>,
 }
 
 /// What the answer was made with.
@@ -189,10 +191,10 @@ pub struct Notice {
 pub struct Provenance {
     /// Program and version.
     #[schema(example = "lodeframe 0.1.0")]
-    pub engine: String,
+    pub engine: Cow<'static, str>,
     /// Source of the constants.
     #[schema(example = "CODATA 2022")]
-    pub constants: String,
+    pub constants: Cow<'static, str>,
     /// SHA-256 of the catalogue of frames and its tracks; null without one.
     pub frames: Option<String>,
 }
@@ -211,14 +213,14 @@ impl Answer {
         let remarks = question.notices.iter().chain(&transformed.notices);
         let mut notices: Vec<Notice> = remarks.map(Notice::from).collect();
         let energy = asked(Part::Energy).then(|| transformed.energy()).flatten();
-        if asked(Part::Energy) && energy.is_none() && transformed.precise.is_some() {
+        if asked(Part::Energy) && energy.is_none() && transformed.is_complete() {
             let detail = "energy, Poynting vector or stress is larger than the largest double";
             notices.push(Notice {
                 code: "energy_out_of_range".into(),
                 detail: detail.into(),
             });
         }
-        let unit = |quantity| question.answer_units.get(quantity).code.to_owned();
+        let unit = |quantity| Cow::Borrowed(question.answer_units.get(quantity).code);
         Ok(Answer {
             e: transformed.e,
             b: transformed.b,
@@ -235,16 +237,20 @@ impl Answer {
             net: net(&question.way, question.units.si(Quantity::Velocity)),
             tensor: asked(Part::Tensor)
                 .then(|| tensor(&transformed, question.signature))
-                .flatten(),
-            matrix: asked(Part::Matrix).then(|| rows(question.way.matrix())),
-            energy: energy.map(|found| Energy {
-                density: found.density,
-                poynting: found.poynting,
-                stress: found.stress,
+                .flatten()
+                .map(Box::new),
+            matrix: asked(Part::Matrix).then(|| Box::new(rows(question.way.matrix()))),
+            energy: energy.map(|found| {
+                Box::new(Energy {
+                    density: found.density,
+                    poynting: found.poynting,
+                    stress: found.stress,
+                })
             }),
             parallel_frame: asked(Part::ParallelFrame)
                 .then(|| parallel_frame(&transformed, question))
-                .flatten(),
+                .flatten()
+                .map(Box::new),
             notices,
             provenance: Provenance::of(question.catalogue.as_deref()),
         })
@@ -255,7 +261,7 @@ impl From<&document::Notice> for Notice {
     fn from(notice: &document::Notice) -> Notice {
         Notice {
             code: notice.code.into(),
-            detail: notice.detail.clone(),
+            detail: notice.detail.clone().into(),
         }
     }
 }

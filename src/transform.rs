@@ -8,9 +8,10 @@ use crate::physics::field::{FieldUnits, Measured};
 use crate::physics::invariants::Invariants;
 use crate::physics::missing::{ALL_KNOWN, Known};
 use crate::physics::parallel::{ParallelFrame, parallel_frame};
-use crate::physics::real::{Vec3, round};
+use crate::physics::real::{Vec3, round, scale};
 use crate::physics::reduction::{Calibration, Reduction};
 use crate::physics::resolved::Resolved;
+use crate::physics::scale::Scale;
 
 /// E and B at one event, any component of which may be missing.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -43,8 +44,10 @@ pub struct Transformed {
     pub b: [Option<f64>; 3],
     /// What a unit is.
     pub units: FieldUnits,
-    /// E' in V/m and B' in T to two doubles; `None` when anything is missing.
-    pub precise: Option<(Vec3<Dd>, Vec3<Dd>)>,
+    /// E' and B' to two doubles, in the units of the reading; `None` when anything is missing.
+    precise: Option<(Vec3<Dd>, Vec3<Dd>)>,
+    /// The units of the reading.
+    read_in: FieldUnits,
     /// Invariants of the question; `None` when anything is missing.
     pub invariants: Option<Invariants>,
     /// Remarks.
@@ -100,31 +103,44 @@ pub fn transform(
         b: hide(applied.b, known[1]),
         units: to,
         precise: complete.then_some(applied.precise),
+        read_in: reading.units,
         invariants,
         notices,
     })
 }
 
 impl Transformed {
+    /// Whether no component is missing.
+    pub fn is_complete(&self) -> bool {
+        self.precise.is_some()
+    }
+
+    /// E' in V/m and B' in T to two doubles; `None` when anything is missing.
+    pub fn si(&self) -> Option<(Vec3<Dd>, Vec3<Dd>)> {
+        let (e, b) = self.precise.as_ref()?;
+        let in_si = |vector: &Vec3<Dd>, unit: Scale| scale(&unit.value(()), vector);
+        Some((in_si(e, self.read_in.e), in_si(b, self.read_in.b)))
+    }
+
     /// E'/c and B' in T; `None` when anything is missing.
     pub fn tesla(&self) -> Option<([f64; 3], [f64; 3])> {
-        let (e, b) = self.precise.as_ref()?;
+        let (e, b) = self.si()?;
         let c = Dd::from_f64(crate::physics::constants::C);
-        Some((round(&e.map(|x| x / c)), round(b)))
+        Some((round(&e.map(|x| x / c)), round(&b)))
     }
 
     /// Energy density, Poynting vector and stress of the answer; `None` when anything is
     /// missing or out of range.
     pub fn energy(&self) -> Option<Energy> {
-        let (e, b) = self.precise.as_ref()?;
-        Some(Energy::of(e, b)).filter(Energy::is_finite)
+        let (e, b) = self.si()?;
+        Some(Energy::of(&e, &b)).filter(Energy::is_finite)
     }
 
     /// The frame in which E and B are parallel, as seen from that of the answer; the inner
     /// `None` says that the field is null and there is none.
     pub fn parallel_frame(&self) -> Option<Option<ParallelFrame>> {
-        let (e, b) = self.precise.as_ref()?;
-        Some(parallel_frame(e, b, self.invariants.as_ref()?))
+        let (e, b) = self.si()?;
+        Some(parallel_frame(&e, &b, self.invariants.as_ref()?))
     }
 }
 

@@ -3,6 +3,8 @@
 //! To add a unit, add a row. Codes and factors: The Unified Code for Units of Measure (UCUM)
 //! 2.2; `statV/cm` is our own code for the Gaussian unit of E.
 
+use std::sync::LazyLock;
+
 use crate::physics::scale::Scale;
 
 /// What a unit measures.
@@ -202,11 +204,15 @@ impl Units {
 
 impl Default for Units {
     fn default() -> Units {
-        Units(Quantity::ALL.map(|quantity| {
-            of_quantity(quantity)
-                .next()
-                .expect("the table has a unit of every quantity")
-        }))
+        /// The first row of each quantity.
+        static SI: LazyLock<[&'static Unit; 8]> = LazyLock::new(|| {
+            Quantity::ALL.map(|quantity| {
+                of_quantity(quantity)
+                    .next()
+                    .expect("the table has a unit of every quantity")
+            })
+        });
+        Units(*SI)
     }
 }
 

@@ -20,7 +20,7 @@ use lodeframe::{
     config::Config,
     http::{
         accept::negotiate,
-        body::JsonBody,
+        body::json_body,
         cache::{cached, etag},
         middleware::Observe,
         problem::Problem,
@@ -52,7 +52,7 @@ fn service(config: Config) -> Router {
     Router::new()
         .route("/panic", get(panics))
         .route("/never", get(std::future::pending::<Response>))
-        .route("/echo", post(async |JsonBody(body): JsonBody| body))
+        .route("/echo", post(async |request| json_body(request, 100).await))
         .route("/accept", get(negotiated))
         .route("/kept", get(kept))
         .layer(Observe(state.clone()))

@@ -11,8 +11,11 @@ pub fn units(
     base: Units,
     faults: &mut Faults,
 ) -> Option<Units> {
-    let names: Vec<&str> = quantities.iter().map(|quantity| quantity.name()).collect();
-    let members = faults.members(node, place, &names)?;
+    let mut names = [""; Quantity::ALL.len()];
+    for (name, quantity) in names.iter_mut().zip(quantities) {
+        *name = quantity.name();
+    }
+    let members = faults.members(node, place, &names[..quantities.len()])?;
     let mut units = base;
     for quantity in quantities {
         let name = quantity.name();

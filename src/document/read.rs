@@ -247,8 +247,8 @@ impl Faults {
 
 /// All of the values, or none.
 fn all<T, const N: usize>(values: [Option<T>; N]) -> Option<[T; N]> {
-    let values: Vec<T> = values.into_iter().flatten().collect();
-    values.try_into().ok()
+    let whole = values.iter().all(Option::is_some);
+    whole.then(|| values.map(|value| value.expect("all are there")))
 }
 
 /// The members of an object.

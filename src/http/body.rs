@@ -1,27 +1,37 @@
 //! The body of a request, read whole.
 
+use std::error::Error;
+
 use axum::{
-    body::Body,
-    extract::{FromRequest, Request},
+    BoxError,
+    body::HttpBody,
+    extract::Request,
     http::{HeaderMap, header},
 };
 use bytes::Bytes;
 use http_body_util::{BodyExt, LengthLimitError, Limited};
 
-use super::{AppState, problem::Problem};
+use super::problem::Problem;
 use crate::document::Code;
 
-/// A body that says it is JSON in UTF-8 and is no longer than `--max-body`; not yet parsed.
-pub struct JsonBody(pub Bytes);
-
-impl FromRequest<AppState> for JsonBody {
-    type Rejection = Problem;
-
-    async fn from_request(request: Request, state: &AppState) -> Result<JsonBody, Problem> {
-        let (head, body) = request.into_parts();
-        check_type(&head.headers)?;
-        read(body, state.config.max_body).await.map(JsonBody)
+/// The body of a request that says it is JSON in UTF-8; not yet parsed.
+///
+/// # Errors
+/// It is of another type, longer than `limit` bytes, or breaks off.
+pub async fn json_body(request: Request, limit: usize) -> Result<Bytes, Problem> {
+    check_type(request.headers())?;
+    let mut body = Limited::new(request.into_body(), limit);
+    let first = match body.frame().await {
+        None => return Ok(Bytes::new()),
+        Some(frame) => frame.map_err(|error| broken(error, limit))?,
+    };
+    let first = first.into_data().unwrap_or_default();
+    if body.is_end_stream() {
+        // By far the most usual: all of it came at once.
+        return Ok(first);
     }
+    let rest = body.collect().await.map_err(|error| broken(error, limit))?;
+    Ok([first, rest.to_bytes()].concat().into())
 }
 
 fn check_type(headers: &HeaderMap) -> Result<(), Problem> {
@@ -60,27 +70,22 @@ fn check_type(headers: &HeaderMap) -> Result<(), Problem> {
     }
 }
 
-async fn read(body: Body, limit: usize) -> Result<Bytes, Problem> {
-    match Limited::new(body, limit).collect().await {
-        Ok(collected) => Ok(collected.to_bytes()),
-        Err(error) if error.is::<LengthLimitError>() => Err(too_large(limit)),
-        // The limit reports its own kind of error inside the body's.
-        Err(error)
-            if std::iter::successors(error.source(), |e| e.source())
-                .any(|e| e.is::<LengthLimitError>()) =>
-        {
-            Err(too_large(limit))
-        }
-        Err(_) => Err(Problem::new(
-            Code::Syntax,
-            "The body broke off, or its chunks were not well-formed; send it whole.",
-        )),
+fn broken(error: BoxError, limit: usize) -> Problem {
+    // The limit reports its own kind of error, perhaps inside the body's.
+    let mut cause: Option<&dyn Error> = Some(&*error);
+    while let Some(error) = cause
+        && !error.is::<LengthLimitError>()
+    {
+        cause = error.source();
     }
-}
-
-fn too_large(limit: usize) -> Problem {
+    if cause.is_some() {
+        return Problem::new(
+            Code::BodyTooLarge,
+            format!("The body is longer than the {limit} bytes that a single question may have."),
+        );
+    }
     Problem::new(
-        Code::BodyTooLarge,
-        format!("The body is longer than the {limit} bytes that a single question may have."),
+        Code::Syntax,
+        "The body broke off, or its chunks were not well-formed; send it whole.",
     )
 }

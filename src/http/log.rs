@@ -3,7 +3,9 @@
 //! It holds route templates, never paths or queries; no token and no field value reaches it.
 
 use std::{
-    fmt, io,
+    cell::RefCell,
+    fmt::{self, Write},
+    io,
     sync::OnceLock,
     time::{Duration, SystemTime},
 };
@@ -89,8 +91,7 @@ fn write(fields: impl FnOnce(&mut Line)) {
         json: log.json,
         text: String::with_capacity(256),
     };
-    let time = humantime::format_rfc3339_micros(SystemTime::now());
-    line.word("time", &time.to_string());
+    line.time(SystemTime::now());
     fields(&mut line);
     line.text.push_str(if log.json { "}\n" } else { "\n" });
     log.lines.line(line.text.as_bytes());
@@ -127,9 +128,34 @@ impl Line {
         self.text.push_str(quote);
     }
 
+    /// The time in UTC to the microsecond (RFC 3339).
+    fn time(&mut self, now: SystemTime) {
+        thread_local! {
+            /// The last second written, since writing one takes as long as the rest of a line.
+            static SECOND: RefCell<(u64, String)> = const { RefCell::new((0, String::new())) };
+        }
+        let since = now.duration_since(SystemTime::UNIX_EPOCH);
+        let since = since.unwrap_or_default();
+        SECOND.with_borrow_mut(|(second, text)| {
+            if *second != since.as_secs() {
+                *second = since.as_secs();
+                *text = humantime::format_rfc3339_seconds(now).to_string();
+                text.pop(); // The Z, which comes after the fraction.
+            }
+            self.word("time", text);
+        });
+        let end = if self.json {
+            self.text.pop();
+            "Z\""
+        } else {
+            "Z"
+        };
+        let _ = write!(self.text, ".{:06}{end}", since.subsec_micros());
+    }
+
     fn number(&mut self, name: &'static str, value: u64) {
         self.name(name);
-        self.text.push_str(&value.to_string());
+        let _ = write!(self.text, "{value}");
     }
 
     /// Any text, in quotes and escaped.

@@ -3,8 +3,8 @@
 //! # How to add an endpoint
 //!
 //! 1. Write `handlers/<resource>.rs` with an `async fn` for each operation. It takes
-//!    [`State<AppState>`](axum::extract::State) and, as needed, [`JsonBody`](body::JsonBody) or
-//!    [`RawQuery`](axum::extract::RawQuery), and answers `Result<Response, Problem>`. Turn faults
+//!    [`State<AppState>`](axum::extract::State) and, as needed, the request for
+//!    [`json_body`](body::json_body) or [`RawQuery`](axum::extract::RawQuery), and answers `Result<Response, Problem>`. Turn faults
 //!    into a problem with [`Problem::from_faults`](problem::Problem::from_faults).
 //! 2. Describe it with `#[utoipa::path(..)]`: tag, operation id, the answer with a true example,
 //!    and [`CommonProblems`](problem::CommonProblems) among the responses.

@@ -94,6 +94,9 @@ impl Motion {
         let below = |what, value, bound| Err(Impossible::BelowRest { what, value, bound });
         match *self {
             Motion::Velocity { .. } | Motion::Turning { .. } => {
+                if self.velocity_fits_dd() && self.is_clearly_slower() {
+                    return Ok(());
+                }
                 let w = if self.velocity_fits_dd() {
                     one_less_beta2(&self.velocity::<Dd>(()), self.beta().value(())).to_f64()
                 } else {
@@ -224,7 +227,9 @@ impl Motion {
         match *self {
             Motion::Velocity { .. } | Motion::Turning { .. } => {
                 self.velocity_fits_dd()
-                    && one_less_beta2(&self.velocity::<Dd>(()), self.beta().value(())).hi > SMALL_W
+                    && (self.is_clearly_slower()
+                        || one_less_beta2(&self.velocity::<Dd>(()), self.beta().value(())).hi
+                            > SMALL_W)
             }
             Motion::Speed { beta, .. } => beta == 0.0 || beta.abs() > 1e-60,
             Motion::Gamma { gamma, .. } => gamma < 1e60,
@@ -308,6 +313,20 @@ impl Motion {
             } => angular_velocity.iter().chain(position).all(sane),
             _ => true,
         }
+    }
+
+    /// Whether β is so far below one that plain doubles can tell 1−β² to be above [`SMALL_W`].
+    fn is_clearly_slower(&self) -> bool {
+        let [x, y, z] = match *self {
+            Motion::Velocity { value, .. } => value,
+            Motion::Turning {
+                angular_velocity: [a, b, c],
+                position: [x, y, z],
+                ..
+            } => [b * z - c * y, c * x - a * z, a * y - b * x],
+            _ => return false,
+        };
+        (x * x + y * y + z * z).sqrt() * self.beta().to_f64() < 0.9
     }
 
     /// The velocity in its own unit.

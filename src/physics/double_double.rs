@@ -193,6 +193,24 @@ impl Real for Dd {
         let (hi, lo) = fast_two_sum(hi, rest as f64);
         Dd { hi, lo }
     }
+    fn ratio(num: u128, den: u128, (): ()) -> Dd {
+        const EXACT: u128 = 1 << 53;
+        if num < EXACT && den < EXACT {
+            // What a quotient digit leaves of two doubles is itself a double: no rounding here.
+            let (num, den) = (num as u64 as f64, den as u64 as f64);
+            let less = |rest: f64, digit: f64| {
+                let (p, e) = two_prod(digit, den);
+                (rest - p) - e
+            };
+            let q1 = num / den;
+            let rest = less(num, q1);
+            let q2 = rest / den;
+            let q3 = less(rest, q2) / den;
+            let (hi, lo) = fast_two_sum(q1, q2);
+            return Dd { hi, lo }.plus(q3);
+        }
+        Dd::integer(num, ()) / Dd::integer(den, ())
+    }
     fn pi((): ()) -> Dd {
         Dd::PI
     }

@@ -1,6 +1,7 @@
 //! The field of one event, and how a net transformation acts on it.
 
 use super::constants::SPEED_OF_LIGHT;
+use super::double_double::Dd;
 use super::lorentz::Net;
 use super::real::{Real, Vec3, add, cross, dot, scale, vector};
 use super::reduction::Reduction;
@@ -34,6 +35,12 @@ impl FieldUnits {
         e: Scale::ONE,
         b: Scale::ONE,
     };
+
+    /// One unit of E, and of B times c, in V/m.
+    pub fn volts_per_metre<R: Real>(self, context: R::Context) -> [R; 2] {
+        let cb = self.b.times(Scale::ratio(SPEED_OF_LIGHT, 1));
+        [self.e.value(context), cb.value(context)]
+    }
 
     /// How many units of E one unit of cB is.
     pub fn cb_over_e(self) -> Scale {
@@ -74,36 +81,30 @@ impl Measured {
         self.reduction.magnitudes([self.e, self.b])
     }
 
-    /// E and cB in V/m divided by 2ⁿ.
-    pub fn field<R: Real>(&self, n: i32, context: R::Context) -> Field<R> {
-        let e = self.units.e.value::<R>(context);
-        let cb = FieldUnits {
-            e: Scale::ONE,
-            ..self.units
-        }
-        .cb_over_e()
-        .value::<R>(context);
-        let part = |x: Vec3<R>, unit: &R| x.map(|x| x.scale2(-n) * unit.clone());
-        let [e_own, b_own] = self.vectors::<R>(context);
+    /// E and cB in V/m divided by 2ⁿ; `volts` is [`FieldUnits::volts_per_metre`].
+    pub fn field<R: Real>(&self, n: i32, volts: &[R; 2], context: R::Context) -> Field<R> {
+        let part = |x: Vec3<R>, unit: &R| {
+            if n == 0 {
+                x.map(|x| x * unit.clone())
+            } else {
+                x.map(|x| x.scale2(-n) * unit.clone())
+            }
+        };
+        let [e, b] = self.vectors::<R>(context);
         Field {
-            e: part(e_own, &e),
-            cb: part(b_own, &cb),
+            e: part(e, &volts[0]),
+            cb: part(b, &volts[1]),
         }
     }
 
     /// About log2 of the largest component of E and cB in V/m; `None` when all are zero.
-    pub fn exponent(&self) -> Option<i32> {
-        let cb = FieldUnits {
-            e: Scale::ONE,
-            ..self.units
-        }
-        .cb_over_e();
-        let part = |x: &[f64; 3], unit: Scale| {
+    pub fn exponent(&self, volts: &[Dd; 2]) -> Option<i32> {
+        let part = |x: &[f64; 3], unit: f64| {
             let largest = x.iter().fold(0.0f64, |m, x| m.max(*x));
-            (largest > 0.0).then(|| libm::ilogb(largest) + libm::ilogb(unit.to_f64()))
+            (largest > 0.0).then(|| libm::ilogb(largest) + libm::ilogb(unit))
         };
         let [e_size, b_size] = self.magnitudes();
-        part(&e_size, self.units.e).max(part(&b_size, cb))
+        part(&e_size, volts[0].hi).max(part(&b_size, volts[1].hi))
     }
 }
 

@@ -64,12 +64,23 @@ pub fn of_field<R: Real>(field: &Field<R>) -> [R; 3] {
 impl Invariants {
     /// Of a question; the answer is the same field in another frame.
     pub fn of(question: &Measured, answer: &Measured) -> Invariants {
-        let n = question.exponent().max(answer.exponent()).unwrap_or(0);
-        if let Some(found) = in_dd(question, answer, n) {
+        let volts = question.units.volts_per_metre::<Dd>(());
+        let volts = if answer.units == question.units {
+            [volts; 2]
+        } else {
+            [volts, answer.units.volts_per_metre(())]
+        };
+        let exponents = [question.exponent(&volts[0]), answer.exponent(&volts[1])];
+        let n = exponents[0].max(exponents[1]).unwrap_or(0);
+        // Squares of numbers of everyday size need no scaling.
+        let n = if n.abs() < 100 { 0 } else { n };
+        if let Some(found) = in_dd(question, answer, &volts, n) {
             return found;
         }
-        let q = of_field(&question.field::<Big>(n, BITS));
-        let a = of_field(&answer.field::<Big>(n, BITS));
+        let [q, a] = [question, answer].map(|field| {
+            let volts = field.units.volts_per_metre(BITS);
+            of_field(&field.field::<Big>(n, &volts, BITS))
+        });
         let floor = q[2].scale2(-500);
         let clean = |x: &Big| {
             if (x.abs() - floor.clone()).is_negative() {
@@ -83,8 +94,14 @@ impl Invariants {
     }
 }
 
-fn in_dd(question: &Measured, answer: &Measured, n: i32) -> Option<Invariants> {
-    let (q, a) = (question.field::<Dd>(n, ()), answer.field::<Dd>(n, ()));
+fn in_dd(
+    question: &Measured,
+    answer: &Measured,
+    volts: &[[Dd; 2]; 2],
+    n: i32,
+) -> Option<Invariants> {
+    let q = question.field(n, &volts[0], ());
+    let a = answer.field(n, &volts[1], ());
     let held = |x: &Dd| x.hi == 0.0 || x.hi.abs() > 1e-60;
     if ![&q.e, &q.cb, &a.e, &a.cb].into_iter().flatten().all(held) {
         return None;
@@ -133,7 +150,11 @@ fn finish<R: Real>(q: &[R; 3], residual: f64, n: i32) -> Invariants {
         Kind::Balanced
     };
     let value = |x: &R| {
-        let x = x.scale2(2 * n).to_f64() + 0.0;
+        let x = if n == 0 {
+            x.to_f64()
+        } else {
+            x.scale2(2 * n).to_f64()
+        } + 0.0;
         x.is_finite().then_some(x)
     };
     let scaled = ([difference, product], n);

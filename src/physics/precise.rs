@@ -26,7 +26,7 @@ pub struct Applied {
     pub e: [f64; 3],
     /// B' in the unit of the answer.
     pub b: [f64; 3],
-    /// E' and B' in V/m and T to the precision of two doubles.
+    /// E' and B' in the units of the reading, to the precision of two doubles.
     pub precise: (Vec3<Dd>, Vec3<Dd>),
     /// For E' and B': log2 of the size of what was summed over that of the result (at least 0);
     /// infinite where terms cancel exactly.
@@ -55,17 +55,13 @@ impl Resolved {
             };
             let (result, size) = (&results[which], sizes[which]);
             let (rounded, precise, _) = if kept(result, size.max(chain_sizes[which])) {
-                let (rounded, precise) = finish(result, unit, target, ());
-                (rounded, precise, 0.0)
+                (finish(result, unit, target, ()), *result, 0.0)
             } else {
                 self.apply_big(field, which, unit, target)
             };
-            let lost = if size == 0.0 {
-                0.0
-            } else {
-                libm::log2(size * unit.to_f64() / length(&precise))
-            };
-            (rounded, precise, lost.max(0.0))
+            let lost = size / length(&precise);
+            let lost = if lost > 1.0 { libm::log2(lost) } else { 0.0 };
+            (rounded, precise, lost)
         };
         let (e, precise_e, lost_e) = part(0, field.units.e, to.e);
         let (b, precise_b, lost_b) = part(1, field.units.b, to.b);
@@ -147,7 +143,8 @@ impl Resolved {
             if let Some(reached) = exponent(&result)
                 && size - reached <= (bits + self.net_bits()) as i64 - GUARD
             {
-                let (rounded, precise) = finish(&result, unit, target, context);
+                let rounded = finish(&result, unit, target, context);
+                let precise = result.each_ref().map(Big::to_dd);
                 return (rounded, precise, ((size - reached) as f64 - 3.0).max(0.0));
             }
             if bits >= self.bits_of_zero(field) {
@@ -202,24 +199,16 @@ fn kept(result: &Vec3<Dd>, size: f64) -> bool {
     length(result) >= KEPT * size
 }
 
-/// The vector in the unit of the answer, rounded once, and in SI to two doubles.
-fn finish<R: Real>(
-    vector: &Vec3<R>,
-    unit: Scale,
-    target: Scale,
-    context: R::Context,
-) -> ([f64; 3], Vec3<Dd>) {
-    let in_unit = |scale: Scale| -> Vec3<R> {
-        if scale == Scale::ONE {
-            return vector.clone();
-        }
-        let factor = scale.value::<R>(context);
-        vector.clone().map(|x| x * factor.clone())
+/// The vector in the unit of the answer, rounded once.
+fn finish<R: Real>(vector: &Vec3<R>, unit: Scale, target: Scale, context: R::Context) -> [f64; 3] {
+    let rounded = if unit == target {
+        round(vector)
+    } else {
+        let factor = unit.over(target).value::<R>(context);
+        round(&vector.each_ref().map(|x| x.clone() * factor.clone()))
     };
     // Adding zero turns −0 into 0.
-    let rounded = round(&in_unit(unit.over(target))).map(|x| x + 0.0);
-    let si = in_unit(unit);
-    (rounded, std::array::from_fn(|i| si[i].to_dd()))
+    rounded.map(|x| x + 0.0)
 }
 
 /// The size of what is summed for E' and B', in the units of the reading.

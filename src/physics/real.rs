@@ -22,6 +22,14 @@ pub trait Real:
     fn new(value: f64, context: Self::Context) -> Self;
     /// An integer, to full precision.
     fn integer(value: u128, context: Self::Context) -> Self;
+    /// A ratio of integers, to full precision.
+    fn ratio(num: u128, den: u128, context: Self::Context) -> Self {
+        let num = Self::integer(num, context);
+        if den == 1 {
+            return num;
+        }
+        num / Self::integer(den, context)
+    }
     /// π to full precision.
     fn pi(context: Self::Context) -> Self;
     /// The nearest double (ties to even); infinite past the largest one.
@@ -67,12 +75,14 @@ pub trait Real:
 pub type Vec3<R> = [R; 3];
 
 /// a × b.
+#[inline]
 pub fn cross<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> Vec3<R> {
     let component = |j: usize, k: usize| a[j].clone() * b[k].clone() - a[k].clone() * b[j].clone();
     [component(1, 2), component(2, 0), component(0, 1)]
 }
 
 /// a · b.
+#[inline]
 pub fn dot<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> R {
     a[0].clone() * b[0].clone() + a[1].clone() * b[1].clone() + a[2].clone() * b[2].clone()
 }

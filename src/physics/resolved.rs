@@ -87,7 +87,7 @@ impl Resolved {
             tally.growth = net
                 .boost
                 .as_ref()
-                .map_or(0.0, |_| libm::log2(2.0 * gamma(&net)));
+                .map_or(0.0, |_| f64::from(libm::ilogb(gamma(&net)) + 2));
             return Ok(Resolved {
                 steps,
                 tally,

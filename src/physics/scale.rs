@@ -68,10 +68,7 @@ impl Scale {
         if self == Scale::ONE {
             return R::new(1.0, context);
         }
-        let mut value = R::integer(self.num, context);
-        if self.den != 1 {
-            value = value / R::integer(self.den, context);
-        }
+        let mut value = R::ratio(self.num, self.den, context);
         for _ in 0..self.pi {
             value = value * R::pi(context);
         }

@@ -94,7 +94,10 @@ impl Sweep {
             for notice in answer.notices {
                 if notices.iter().all(|known| known.code != notice.code) {
                     let detail = format!("at {here}: {}", notice.detail);
-                    notices.push(Notice { detail, ..notice });
+                    notices.push(Notice {
+                        detail: detail.into(),
+                        ..notice
+                    });
                 }
             }
             provenance = Some(answer.provenance);

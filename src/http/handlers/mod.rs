@@ -21,7 +21,9 @@ use super::accept;
 
 /// JSON as an answer.
 pub(super) fn json(value: &impl serde::Serialize) -> Response {
-    let text = serde_json::to_vec(value).expect("answers have a JSON form");
+    // Most answers fit without growing.
+    let mut text = Vec::with_capacity(1024);
+    serde_json::to_writer(&mut text, value).expect("answers have a JSON form");
     (
         [(header::CONTENT_TYPE, HeaderValue::from_static(accept::JSON))],
         text,

@@ -1,7 +1,7 @@
 //! One reading restated: `POST` with the question as JSON, `GET` with the same question as a URL.
 
 use axum::{
-    extract::{RawQuery, State},
+    extract::{RawQuery, Request, State},
     http::HeaderMap,
     response::Response,
 };
@@ -14,7 +14,7 @@ use crate::{
     http::{
         AppState,
         accept::{JSON, SVG, negotiate},
-        body::JsonBody,
+        body::json_body,
         cache::{IMMUTABLE, cached, etag},
         problem::{CommonProblems, Problem, ProblemDocument, Source},
         schema::{self, Query, WayQuery},
@@ -65,10 +65,10 @@ use crate::{
 )]
 pub(crate) async fn transform(
     State(state): State<AppState>,
-    headers: HeaderMap,
-    JsonBody(body): JsonBody,
+    request: Request,
 ) -> Result<Response, Problem> {
-    negotiate(&headers, &[JSON])?;
+    negotiate(request.headers(), &[JSON])?;
+    let body = json_body(request, state.config.max_body).await?;
     let refuse = |faults| Problem::from_faults(faults, Source::Body);
     let node = Node::from_json(&body).map_err(|fault| refuse(vec![fault]))?;
     let question = Question::read(&node, &state.deployment).map_err(refuse)?;
