@@ -138,6 +138,26 @@ fn an_idle_connection_does_not_hold_up_the_end() {
 }
 
 #[test]
+fn a_connection_is_closed_once_it_idles_and_not_while_it_asks() {
+    let running = Running::start(&["--idle-timeout", "1s"]);
+    let mut stream = running.connect();
+    let mut answer = [0; 4096];
+    for _ in 0..5 {
+        // Each request moves the deadline: together they take longer than one idle time.
+        stream
+            .write_all(format!("{GET}\r\n").as_bytes())
+            .expect("it reads");
+        assert!(stream.read(&mut answer).expect("it answers") > 0);
+        std::thread::sleep(Duration::from_millis(300));
+    }
+    let mut rest = Vec::new();
+    stream.read_to_end(&mut rest).expect("it closes by itself");
+    assert!(rest.is_empty(), "{rest:?}");
+    running.terminate();
+    assert_eq!(running.end().0, Some(0));
+}
+
+#[test]
 fn the_log_has_a_line_a_request_and_no_secret() {
     let trace = "00-4bf92f3577b34da6a3ce929d0e0e4736-00f067aa0ba902b7-01";
     for (form, expected) in [

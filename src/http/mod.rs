@@ -22,6 +22,7 @@ mod frames;
 mod gather;
 mod guard;
 mod handlers;
+mod lazy_timer;
 pub mod listen;
 pub mod log;
 pub mod metrics;

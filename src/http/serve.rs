@@ -5,7 +5,7 @@ use std::{io, sync::Arc, time::Duration};
 use axum::Router;
 use hyper::server::conn::http1;
 use hyper_util::{
-    rt::{TokioIo, TokioTimer},
+    rt::TokioIo,
     server::graceful::{GracefulShutdown, Watcher},
     service::TowerToHyperService,
 };
@@ -16,7 +16,7 @@ use tokio::{
 };
 use tokio_rustls::TlsAcceptor;
 
-use super::{AppState, doorstep::Doorstep, log};
+use super::{AppState, doorstep::Doorstep, lazy_timer::LazyTimer, log};
 
 /// Most of a request that a connection holds unread, bytes: room for the largest head that is
 /// answered with a problem, and no more, since every connection may fill it.
@@ -33,7 +33,7 @@ pub async fn serve(
 ) {
     let config = &state.config;
     let mut http = http1::Builder::new();
-    http.timer(TokioTimer::new())
+    http.timer(LazyTimer)
         .max_buf_size(READ_BUFFER)
         .header_read_timeout(config.idle_timeout);
     let places = Arc::new(Semaphore::new(config.max_connections));
