@@ -16,6 +16,7 @@
 //! | [`answer`] | what is answered, as JSON |
 //! | [`pool`] | threads for heavy work |
 //! | [`sweep`] | the same question over a range of speeds or angles |
+//! | [`series`] | rows of readings in, the same rows restated out, in several formats |
 //! | [`picture`] | SVG pictures of answers |
 //! | [`config`] | every flag and variable, with its default |
 //! | [`http`] | paths, handlers, problems, middleware; the only part that knows axum |
@@ -30,6 +31,7 @@ pub mod physics;
 pub mod picture;
 pub mod pool;
 pub mod question;
+pub mod series;
 pub mod sweep;
 pub mod transform;
 pub mod units;

@@ -13,6 +13,7 @@ use crate::physics::resolved::Resolved;
 use crate::physics::tensor::Signature;
 use crate::transform::Reading;
 use crate::units::{Quantity, Units};
+use way::Way;
 
 /// The names a question may have at its top level.
 pub const KNOWN: [&str; 15] = [
@@ -89,8 +90,22 @@ impl Question {
     /// # Errors
     /// Every fault found in it.
     pub fn read(node: &Node, deployment: &Deployment) -> Result<Question, Vec<Fault>> {
+        Question::read_along(node, deployment, |members, units, faults| {
+            way::read(members, units, deployment, faults)
+        })
+    }
+
+    /// Reads a question whose way is read by other rules.
+    ///
+    /// # Errors
+    /// Every fault found in it.
+    pub(crate) fn read_along(
+        node: &Node,
+        deployment: &Deployment,
+        way: impl FnOnce(Members, &Units, &mut Faults) -> Option<Way>,
+    ) -> Result<Question, Vec<Fault>> {
         let mut faults = Faults::default();
-        let question = read(node, deployment, &mut faults);
+        let question = read(node, deployment, way, &mut faults);
         match question {
             Some(question) if faults.0.is_empty() => Ok(question),
             _ => Err(faults.0),
@@ -110,7 +125,12 @@ fn field_units(units: &Units) -> FieldUnits {
     }
 }
 
-fn read(node: &Node, deployment: &Deployment, faults: &mut Faults) -> Option<Question> {
+fn read(
+    node: &Node,
+    deployment: &Deployment,
+    way: impl FnOnce(Members, &Units, &mut Faults) -> Option<Way>,
+    faults: &mut Faults,
+) -> Option<Question> {
     let root = Place::ROOT;
     let members = faults.members(node, &root, &KNOWN)?;
     let units = match members.get("units") {
@@ -124,7 +144,7 @@ fn read(node: &Node, deployment: &Deployment, faults: &mut Faults) -> Option<Que
     let reading_units = units.unwrap_or_default();
     let e = partial("e", members, faults);
     let b = partial("b", members, faults);
-    let way = way::read(members, &reading_units, deployment, faults);
+    let way = way(members, &reading_units, faults);
     let (sensor, calibrated) = match way.as_ref().and_then(|way| way.sensor) {
         Some((sensor, calibrated)) => (sensor, calibrated),
         None => (Sensor::default(), reading_units),
@@ -212,7 +232,7 @@ fn partial(name: &str, members: Members, faults: &mut Faults) -> Option<[Option<
 }
 
 /// A sensor has no value on an axis that it does not measure.
-fn measured_axes(
+pub(crate) fn measured_axes(
     name: &str,
     values: Option<[Option<f64>; 3]>,
     channel: Option<Channel>,

@@ -17,6 +17,7 @@ mod picture;
 mod pool;
 mod problems;
 mod schema;
+mod series;
 mod start;
 mod support;
 mod sweep;

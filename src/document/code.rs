@@ -164,6 +164,9 @@ codes! {
     BodyTooLarge "body_too_large" 413 "The body is too large",
         "The body is longer than the limit the detail names.",
         "Ask in smaller parts, or use the series for many readings.";
+    RowTooLong "row_too_long" 413 "A row that is too long",
+        "A row of a series is longer than the service holds at once. What came before it is answered; nothing after it.",
+        "Check that rows end with a line (LF or CRLF), and leave out long texts; whoever runs the service can allow longer rows.";
     UriTooLong "uri_too_long" 414 "The address is too long",
         "The path and query are longer than the limit the detail names.",
         "Ask the same question as JSON by POST.";

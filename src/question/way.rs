@@ -11,54 +11,69 @@ use crate::physics::resolved::Resolved;
 use crate::units::Units;
 
 /// The ways to name the target; exactly one is needed.
-const WAYS: [&str; 5] = ["steps", "velocity", "boost", "rotation", "from"];
+pub(crate) const WAYS: [&str; 5] = ["steps", "velocity", "boost", "rotation", "from"];
 
 /// The way, resolved.
 #[derive(Debug)]
-pub(super) struct Way {
+pub(crate) struct Way {
     /// From the frame of the reading to the target.
-    pub(super) resolved: Arc<Resolved>,
+    pub(crate) resolved: Arc<Resolved>,
     /// The sensor that the reading comes from, and the units it is calibrated to.
-    pub(super) sensor: Option<(Sensor, Units)>,
+    pub(crate) sensor: Option<(Sensor, Units)>,
     /// What is to be said about the way.
-    pub(super) notices: Vec<Notice>,
+    pub(crate) notices: Vec<Notice>,
 }
 
 /// Reads the way.
-pub(super) fn read(
+pub(crate) fn read(
     members: Members,
     units: &Units,
     deployment: &Deployment,
     faults: &mut Faults,
 ) -> Option<Way> {
     let root = Place::ROOT;
-    let inverse = match members.get("inverse") {
-        Some(node) => faults.boolean(node, &root.field("inverse")),
-        None => Some(false),
-    };
     for name in ["to", "time"] {
         if members.get(name).is_some() && members.get("from").is_none() {
             let detail = format!("{name:?} goes with \"from\", which is not given");
             faults.note(&root.field(name), Code::ConflictingFields, detail);
         }
     }
-    let (form, node) = faults.exactly_one(members, &root, &WAYS)?;
-    let place = root.field(form);
+    let (form, _) = faults.exactly_one(members, &root, &WAYS)?;
+    if form == "from" {
+        return named(members, inverse(members, faults), deployment, faults);
+    }
+    of_steps(steps(members, units, deployment, faults)?, faults)
+}
+
+/// Reads `inverse`: whether the whole way is taken backwards.
+pub(crate) fn inverse(members: Members, faults: &mut Faults) -> Option<bool> {
+    match members.get("inverse") {
+        Some(node) => faults.boolean(node, &Place::ROOT.field("inverse")),
+        None => Some(false),
+    }
+}
+
+/// Reads a way of steps, in any form but by names; backwards if `inverse`.
+pub(crate) fn steps(
+    members: Members,
+    units: &Units,
+    deployment: &Deployment,
+    faults: &mut Faults,
+) -> Option<Vec<Step>> {
+    let inverse = inverse(members, faults);
+    let (form, node) = faults.exactly_one(members, &Place::ROOT, &WAYS)?;
+    let place = Place::ROOT.field(form);
     let steps = match form {
-        "from" => return named(members, inverse, deployment, faults),
         "steps" => chain::steps(node, &place, units, deployment.steps, faults)?,
         "velocity" => vec![step::boost::velocity(node, &place, units, faults)?],
         "boost" => vec![step::boost::read(node, &place, units, faults)?],
         _ => vec![step::rotate::read(node, &place, units, faults)?],
     };
-    of_steps(
-        if inverse? {
-            chain::inverse(steps)
-        } else {
-            steps
-        },
-        faults,
-    )
+    Some(if inverse? {
+        chain::inverse(steps)
+    } else {
+        steps
+    })
 }
 
 fn of_steps(steps: Vec<Step>, faults: &mut Faults) -> Option<Way> {

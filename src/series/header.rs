@@ -1,0 +1,190 @@
+//! The header of a table: what each column is, and every slip in it refused before the first row.
+
+use crate::document::{Code, Fault, Path};
+
+use super::Series;
+use super::names::{self, COLUMNS, Role};
+use super::way::{Taken, Way};
+
+/// What a column is for.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) enum Use {
+    /// One of ours, and needed.
+    Ours(Role),
+    /// It only passes through, or goes along to another format as the cell of this number.
+    Passes(Option<usize>),
+}
+
+/// The columns of a table, in their order.
+#[derive(Clone, Debug)]
+pub(super) struct Header {
+    pub(super) names: Vec<String>,
+    pub(super) uses: Vec<Use>,
+}
+
+impl Header {
+    /// Looks at the names of the columns. `cells` names those that go along to another format.
+    ///
+    /// # Errors
+    /// Every fault found in them.
+    pub(super) fn read(
+        names: Vec<String>,
+        series: &Series,
+        cells: &[String],
+    ) -> Result<Header, Vec<Fault>> {
+        let mut faults = Vec::new();
+        for (i, name) in names.iter().enumerate() {
+            match names::role(name) {
+                Some(_) if names[..i].contains(name) => {
+                    let detail = format!("there are two columns {name:?}");
+                    faults.push(at(name, Code::RepeatedField, detail));
+                }
+                Some(Role::Uncertainty(_)) => {
+                    let detail = "the uncertainties of rows are not restated; give the column \
+                                  another name to pass it through";
+                    faults.push(at(name, Code::UnknownField, detail));
+                }
+                Some(_) => {}
+                None => {
+                    if let Some(slip) = names::slip(name, true) {
+                        faults.push(at(name, Code::UnknownField, slip));
+                    }
+                }
+            }
+        }
+        let has = |name: &str| names.iter().any(|own| own == name);
+        groups(&has, series, &mut faults);
+        for name in series.keep.iter().filter(|name| !has(name)) {
+            let detail = format!("keep names {name:?}, and there is no such column");
+            faults.push(at(name, Code::MissingField, detail));
+        }
+        let uses = names.iter().map(|name| match names::role(name) {
+            Some(role) if needed(role, series) => Use::Ours(role),
+            _ => Use::Passes(cells.iter().position(|cell| cell == name)),
+        });
+        let uses = uses.collect();
+        if faults.is_empty() {
+            Ok(Header { names, uses })
+        } else {
+            Err(faults)
+        }
+    }
+
+    /// The components of the field, in the order of their columns.
+    pub(super) fn fields_in_order(&self) -> Vec<usize> {
+        let fields = self.uses.iter().filter_map(|what| match what {
+            Use::Ours(Role::Field(i)) => Some(*i),
+            _ => None,
+        });
+        fields.collect()
+    }
+
+    /// Whether there are columns of E (0) or B (3).
+    pub(super) fn has_field(&self, first: usize) -> bool {
+        self.uses.contains(&Use::Ours(Role::Field(first)))
+    }
+}
+
+/// Whether the numbers of a column count.
+fn needed(role: Role, series: &Series) -> bool {
+    match role {
+        Role::Time => series.takes_time(),
+        Role::Angle => series.takes(Taken::Angle),
+        _ => true,
+    }
+}
+
+/// Refuses columns that belong together and do not stand together, are missing, or would be
+/// left aside without a word.
+fn groups(has: &dyn Fn(&str) -> bool, series: &Series, faults: &mut Vec<Fault>) {
+    let own = matches!(series.way, Way::Own { .. });
+    let all = |of: &dyn Fn(Role) -> bool| -> Vec<&'static str> {
+        let columns = COLUMNS.iter().filter(|(_, role)| of(*role));
+        columns.map(|(name, _)| *name).collect()
+    };
+    let e = all(&|role| matches!(role, Role::Field(0..3)));
+    let b = all(&|role| matches!(role, Role::Field(3..6)));
+    let velocity = all(&|role| matches!(role, Role::Velocity(_)));
+    let attitude = all(&|role| matches!(role, Role::Quaternion(_)));
+    let some = |columns: &[&str]| columns.iter().any(|name| has(name));
+    let moves = own && some(&velocity);
+    let turns = own && some(&attitude);
+    let both = series.needs_both() || moves;
+    let neither = !some(&e) && !some(&b);
+    let wanted = [
+        (&e, both || neither, "E is needed"),
+        (&b, both || neither, "B is needed"),
+        (
+            &velocity,
+            series.takes(Taken::Velocity),
+            "the way says \"row\" for a velocity",
+        ),
+        (
+            &attitude,
+            series.takes(Taken::Quaternion),
+            "the way says \"row\" for a quaternion",
+        ),
+    ];
+    for (columns, wanted, why) in wanted {
+        let missing: Vec<&str> = columns.iter().copied().filter(|name| !has(name)).collect();
+        if missing.is_empty() || !(wanted || some(columns)) {
+            continue;
+        }
+        let why = if some(columns) {
+            "they belong together"
+        } else {
+            why
+        };
+        let detail = format!(
+            "the columns {} are needed, {why}; {} missing. Leave cells empty where nothing was \
+             measured",
+            columns.join(", "),
+            match &missing[..] {
+                [one] => format!("{one} is"),
+                many => format!("{} are", many.join(", ")),
+            }
+        );
+        faults.push(at(missing[0], Code::MissingField, detail));
+    }
+    if series.takes(Taken::Angle) && !has("angle") {
+        let detail = "the way says \"row\" for an angle, and there is no column \"angle\"";
+        faults.push(at("angle", Code::MissingField, detail));
+    }
+    if series.takes_time() && !has("time") {
+        let detail = "the way changes with time, and there is no column \"time\"";
+        faults.push(at("time", Code::MissingField, detail));
+    }
+    if own && moves == turns {
+        let (code, detail) = if moves {
+            let detail = "rows bring a velocity and an attitude, and nothing says which comes \
+                          first; give the way in the query, such as steps=[{\"rotate\":\
+                          {\"quaternion\":\"row\"}},{\"boost\":{\"velocity\":\"row\"}}]";
+            (Code::ConflictingFields, detail)
+        } else {
+            let detail = "there is no way to the target: give one in the query, or let each row \
+                          bring a velocity (vx, vy, vz) or an attitude (qw, qx, qy, qz)";
+            (Code::MissingField, detail)
+        };
+        faults.push(Fault::whole(code, detail));
+    }
+    let used = |role| match role {
+        Role::Velocity(_) => own || series.takes(Taken::Velocity),
+        Role::Quaternion(_) => own || series.takes(Taken::Quaternion),
+        Role::Angle => series.takes(Taken::Angle),
+        _ => true,
+    };
+    for (name, _) in COLUMNS
+        .iter()
+        .filter(|(name, role)| has(name) && !used(*role))
+    {
+        let detail = format!(
+            "{name:?} is a motion of the row, which the way of the query does not use: say \"row\" \
+             there, leave out the way of the query, or give the column another name"
+        );
+        faults.push(at(name, Code::ConflictingFields, detail));
+    }
+}
+
+fn at(name: &str, code: Code, detail: impl Into<String>) -> Fault {
+    Fault::at(&Path::default().field(name), code, detail)
+}

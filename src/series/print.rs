@@ -1,0 +1,274 @@
+//! Answers as text: in the text of their own rows, or printed anew in another format.
+
+use super::block::Block;
+use super::carry::Carried;
+use super::csv::push_field;
+use super::header::Header;
+use super::number;
+use super::outlet::Done;
+use super::scan::Span;
+use super::{csv, ndjson, problem};
+
+/// What an answer has in another format than the question.
+#[derive(Clone, Debug)]
+pub(super) struct Columns {
+    /// Whether there is E, and B.
+    pub(super) field: [bool; 2],
+    /// The names of what goes along: the time, if there is one, and what is kept.
+    pub(super) cells: Vec<String>,
+    /// How lines of CSV end.
+    pub(super) line_end: &'static [u8],
+}
+
+impl Columns {
+    /// The header row of CSV.
+    pub(super) fn header(&self) -> Vec<u8> {
+        let mut out = Vec::new();
+        let (time, kept) = self.time_and_kept();
+        let names = ["ex", "ey", "ez", "bx", "by", "bz"];
+        let field = names.iter().enumerate().filter(|(i, _)| self.field[i / 3]);
+        let names = time.iter().map(String::as_str);
+        let names = names.chain(field.map(|(_, name)| *name));
+        let names = names.chain(kept.iter().map(String::as_str));
+        for name in names.chain(["problem"]) {
+            if !out.is_empty() {
+                out.push(b',');
+            }
+            push_field(&mut out, name.as_bytes());
+        }
+        out.extend_from_slice(self.line_end);
+        out
+    }
+
+    fn time_and_kept(&self) -> (&[String], &[String]) {
+        let time = self.cells.first().is_some_and(|name| name == "time");
+        self.cells.split_at(usize::from(time))
+    }
+}
+
+/// Goes through the rows of a block, and stops after the first bad one where that ends the series.
+fn each_row(
+    block: &Block,
+    stop: bool,
+    done: &mut Done,
+    mut write: impl FnMut(usize, Option<&[crate::document::Fault]>, &mut Done),
+) {
+    let mut bad = block.bad.iter().peekable();
+    for row in 0..block.rows {
+        let faults = bad
+            .next_if(|(own, _)| *own == row)
+            .map(|(_, faults)| &faults[..]);
+        write(row, faults, done);
+        done.counts.read += 1;
+        if faults.is_none() {
+            done.counts.answered += 1;
+            continue;
+        }
+        done.counts.refused += 1;
+        if stop {
+            done.stopped = true;
+            return;
+        }
+    }
+}
+
+/// A vector of the answer as JSON; null as a whole when the row is bad.
+fn push_vector(out: &mut Vec<u8>, block: &Block, first: usize, row: usize, bad: bool) {
+    if bad {
+        out.extend_from_slice(b"null");
+        return;
+    }
+    for i in 0..3 {
+        out.push(if i == 0 { b'[' } else { b',' });
+        let value = block.field[first + i][row];
+        if value.is_nan() {
+            out.extend_from_slice(b"null");
+        } else {
+            number::print(out, value);
+        }
+    }
+    out.push(b']');
+}
+
+/// The problem of a bad row, and the place for its number.
+fn push_problem(done: &mut Done, row: usize, faults: &[crate::document::Fault]) {
+    done.bytes.extend_from_slice(b"\"row\":");
+    done.numbers.push((done.bytes.len(), row));
+    done.bytes.extend_from_slice(b",\"problem\":");
+    let problem = problem::as_json(faults);
+    serde_json::to_writer(&mut done.bytes, &problem).expect("a Vec takes any text");
+    done.bytes.extend_from_slice(b"}\n");
+}
+
+/// NDJSON rows in their own text, e and b replaced.
+pub(super) fn ndjson_in_place(
+    text: &[u8],
+    lines: &[ndjson::Line],
+    block: &Block,
+    stop: bool,
+    done: &mut Done,
+) {
+    each_row(block, stop, done, |row, faults, done| {
+        let line = &lines[row];
+        let text = &text[line.from..line.from + line.length];
+        if let Some(faults) = faults
+            && !line.object
+        {
+            done.bytes.push(b'{');
+            push_problem(done, row, faults);
+            return;
+        }
+        let mut parts = [(line.e, 0), (line.b, 3)];
+        if parts[1].0.from < parts[0].0.from {
+            parts.swap(0, 1);
+        }
+        let mut copied = 0;
+        for (span, first) in parts.into_iter().filter(|(span, _)| !span.is_none()) {
+            done.bytes
+                .extend_from_slice(&text[copied..span.from as usize]);
+            push_vector(&mut done.bytes, block, first, row, faults.is_some());
+            copied = span.to as usize;
+        }
+        match faults {
+            None => {
+                done.bytes.extend_from_slice(&text[copied..]);
+                done.bytes.push(b'\n');
+            }
+            Some(faults) => {
+                done.bytes.extend_from_slice(&text[copied..text.len() - 1]);
+                done.bytes.push(b',');
+                push_problem(done, row, faults);
+            }
+        }
+    });
+}
+
+/// CSV rows in their own text, the fields of e and b replaced.
+pub(super) fn csv_in_place(
+    text: &[u8],
+    lines: &[csv::Line],
+    header: &Header,
+    line_end: &[u8],
+    block: &Block,
+    stop: bool,
+    done: &mut Done,
+) {
+    // In the order in which they stand in a row.
+    let order: Vec<usize> = header.fields_in_order();
+    each_row(block, stop, done, |row, faults, done| {
+        let line = &lines[row];
+        let out = &mut done.bytes;
+        if line.whole {
+            let text = &text[line.from..line.from + line.length];
+            let mut copied = 0;
+            for i in &order {
+                let span: Span = line.field[*i];
+                out.extend_from_slice(&text[copied..span.from as usize]);
+                let value = block.field[*i][row];
+                if !value.is_nan() {
+                    number::print(out, value);
+                }
+                copied = span.to as usize;
+            }
+            out.extend_from_slice(&text[copied..]);
+        } else {
+            out.extend(std::iter::repeat_n(b',', header.names.len() - 1));
+        }
+        out.push(b',');
+        if let Some(faults) = faults {
+            push_field(out, problem::as_text(faults).as_bytes());
+        }
+        out.extend_from_slice(line_end);
+    });
+}
+
+/// Rows printed anew as NDJSON.
+pub(super) fn ndjson(
+    columns: &Columns,
+    block: &Block,
+    carried: &Carried,
+    stop: bool,
+    done: &mut Done,
+) {
+    let (time, kept) = columns.time_and_kept();
+    let kept: Vec<Vec<u8>> = kept.iter().map(|name| json_text(name.as_bytes())).collect();
+    each_row(block, stop, done, |row, faults, done| {
+        let out = &mut done.bytes;
+        out.push(b'{');
+        let name = |out: &mut Vec<u8>, name: &[u8]| {
+            if out.last() != Some(&b'{') {
+                out.push(b',');
+            }
+            out.extend_from_slice(name);
+            out.push(b':');
+        };
+        if !time.is_empty()
+            && let Some(cell) = carried.cell(row, 0)
+        {
+            name(out, b"\"time\"");
+            match number::json(cell) {
+                Some((_, length)) if length == cell.len() => out.extend_from_slice(cell),
+                _ => out.extend_from_slice(&json_text(cell)),
+            }
+        }
+        for (which, letter) in [b"\"e\"", b"\"b\""].into_iter().enumerate() {
+            if columns.field[which] {
+                name(out, letter);
+                push_vector(out, block, 3 * which, row, faults.is_some());
+            }
+        }
+        for (i, letter) in kept.iter().enumerate() {
+            if let Some(cell) = carried.cell(row, time.len() + i) {
+                name(out, letter);
+                out.extend_from_slice(&json_text(cell));
+            }
+        }
+        match faults {
+            None => out.extend_from_slice(b"}\n"),
+            Some(faults) => {
+                out.push(b',');
+                push_problem(done, row, faults);
+            }
+        }
+    });
+}
+
+/// Rows printed anew as CSV.
+pub(super) fn csv(
+    columns: &Columns,
+    block: &Block,
+    carried: &Carried,
+    stop: bool,
+    done: &mut Done,
+) {
+    let (time, kept) = columns.time_and_kept();
+    each_row(block, stop, done, |row, faults, done| {
+        let out = &mut done.bytes;
+        let cell = |out: &mut Vec<u8>, column: usize| {
+            push_field(out, carried.cell(row, column).unwrap_or_default());
+            out.push(b',');
+        };
+        for column in 0..time.len() {
+            cell(out, column);
+        }
+        for i in (0..6).filter(|i| columns.field[i / 3]) {
+            let value = block.field[i][row];
+            if !value.is_nan() {
+                number::print(out, value);
+            }
+            out.push(b',');
+        }
+        for column in 0..kept.len() {
+            cell(out, time.len() + column);
+        }
+        if let Some(faults) = faults {
+            push_field(out, problem::as_text(faults).as_bytes());
+        }
+        out.extend_from_slice(columns.line_end);
+    });
+}
+
+/// A text as a JSON string; what is not UTF-8 is replaced.
+fn json_text(text: &[u8]) -> Vec<u8> {
+    serde_json::to_vec(&String::from_utf8_lossy(text)).expect("a text has a JSON form")
+}
