@@ -5,7 +5,7 @@ use axum::{
     http::{Request, StatusCode},
     response::IntoResponse,
 };
-use lodeframe::document::Code;
+use lodeframe::document::{Code, Faults};
 use serde_json::json;
 
 use crate::support::{get, send, service};
@@ -37,6 +37,54 @@ async fn long_addresses_and_headers_are_problems() {
     let answer = get("/health/live", &[("x-one", &long), ("x-two", &long)]).await;
     assert_eq!(answer.status, StatusCode::REQUEST_HEADER_FIELDS_TOO_LARGE);
     answer.problem("headers_too_large");
+}
+
+async fn asked(body: String) -> serde_json::Value {
+    let request = Request::post("/v1/transform").header("content-type", "application/json");
+    let request = request.body(Body::from(body)).expect("a request");
+    send(service(), request).await.json()
+}
+
+#[tokio::test]
+async fn many_faults_are_listed_up_to_a_number() {
+    let names = |count| {
+        (0..count)
+            .map(|i| format!("\"n{i}\":1"))
+            .collect::<Vec<_>>()
+            .join(",")
+    };
+    let few = asked(format!("{{{}}}", names(20))).await;
+    assert_eq!(
+        few["errors"].as_array().map(Vec::len),
+        Some(20 + 2),
+        "and no reading, no way"
+    );
+    let many = asked(format!("{{{}}}", names(1000))).await;
+    assert_eq!(many["errors"].as_array().map(Vec::len), Some(Faults::MOST));
+    let detail = many["detail"].as_str().expect("a text");
+    assert!(detail.starts_with("100 faults or more"), "{detail}");
+}
+
+#[tokio::test]
+async fn a_fault_shows_the_ends_of_what_is_too_long_to_read() {
+    let long = "ä".repeat(100_000);
+    let problem = asked(format!(
+        "{{\"e\":[1,2,3],\"velocity\":[0,0,1],\"x{long}y\":1,\"units\":{{\"b\":\"x{long}y\"}}}}"
+    ))
+    .await;
+    let errors = problem["errors"].as_array().expect("a list");
+    assert_eq!(errors.len(), 2, "{problem}");
+    for error in errors {
+        let detail = error["detail"].as_str().expect("a text");
+        assert!(
+            detail.starts_with("\"xä") && detail.contains("ä ... "),
+            "{detail}"
+        );
+        assert!(detail.chars().count() < 1100);
+    }
+    // A name that long points to the object that holds it.
+    assert_eq!(errors[0]["pointer"], "");
+    assert_eq!(errors[1]["pointer"], "/units/b");
 }
 
 #[tokio::test]

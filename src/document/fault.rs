@@ -52,6 +52,19 @@ impl Path {
         self.with(Segment::Index(index))
     }
 
+    /// The path as far as its names can be read; past that, the value that holds them.
+    fn without_long_names(&self) -> Path {
+        let long =
+            |segment: &&Segment| matches!(segment, Segment::Field(name) if name.len() > LONG);
+        Path(
+            self.0
+                .iter()
+                .take_while(|segment| !long(segment))
+                .cloned()
+                .collect(),
+        )
+    }
+
     fn with(&self, segment: Segment) -> Path {
         let mut segments = self.0.clone();
         segments.push(segment);
@@ -75,8 +88,8 @@ impl Fault {
     pub fn at(path: &Path, code: Code, detail: impl Into<String>) -> Fault {
         Fault {
             code,
-            detail: detail.into(),
-            path: Some(path.clone()),
+            detail: short(detail.into()),
+            path: Some(path.without_long_names()),
         }
     }
 
@@ -84,8 +97,21 @@ impl Fault {
     pub fn whole(code: Code, detail: impl Into<String>) -> Fault {
         Fault {
             code,
-            detail: detail.into(),
+            detail: short(detail.into()),
             path: None,
         }
     }
+}
+
+/// Most characters of a detail, which is for people to read, and bytes of a name in a path.
+const LONG: usize = 1000;
+
+/// The text without its middle, when what it quotes is too long to be read.
+fn short(text: String) -> String {
+    if text.chars().nth(LONG).is_none() {
+        return text;
+    }
+    let head: String = text.chars().take(LONG / 2).collect();
+    let end: String = text.chars().rev().take(LONG / 2).collect();
+    format!("{head} ... {}", end.chars().rev().collect::<String>())
 }

@@ -131,15 +131,15 @@ impl<'de> Visitor<'de> for NodeVisitor {
         Ok(Node::Text(Cow::Owned(value.to_owned())))
     }
     fn visit_seq<A: SeqAccess<'de>>(self, mut seq: A) -> Result<Node<'de>, A::Error> {
-        // Most lists are vectors of three.
-        let mut items = Vec::with_capacity(4);
+        // Nothing is set aside before it is needed: a body may hold any number of empty lists.
+        let mut items = Vec::new();
         while let Some(item) = seq.next_element()? {
             items.push(item);
         }
         Ok(Node::List(items))
     }
     fn visit_map<A: MapAccess<'de>>(self, mut map: A) -> Result<Node<'de>, A::Error> {
-        let mut members = Vec::with_capacity(8);
+        let mut members = Vec::new();
         while let Some(Key(name)) = map.next_key()? {
             members.push((name, map.next_value()?));
         }

@@ -12,9 +12,14 @@ use super::node::{Node, Place};
 pub struct Faults(pub Vec<Fault>);
 
 impl Faults {
+    /// So many faults are noted; whoever made more mends these first.
+    pub const MOST: usize = 100;
+
     /// Notes a fault at a place.
     pub fn note(&mut self, place: &Place, code: Code, detail: impl Into<String>) {
-        self.0.push(Fault::at(&place.path(), code, detail));
+        if self.0.len() < Faults::MOST {
+            self.0.push(Fault::at(&place.path(), code, detail));
+        }
     }
 
     fn wrong_type<T>(&mut self, node: &Node, place: &Place, expected: &str) -> Option<T> {
@@ -167,19 +172,20 @@ impl Faults {
             let expected = format!("an object with {}", known.join(", "));
             return self.wrong_type(node, place, &expected);
         };
-        for (i, (name, _)) in members.iter().enumerate() {
+        // Only known names are compared with those before: a body may hold any number of others.
+        let mut seen = 0_u64;
+        for (name, _) in members {
             let place = place.field(name);
-            if !known.contains(&name.as_ref()) {
+            let Some(i) = known.iter().position(|known| known == name) else {
                 let detail = format!("{name:?} is not known here; known are {}", known.join(", "));
                 self.note(&place, Code::UnknownField, detail);
+                continue;
+            };
+            if seen & 1 << i != 0 {
+                let detail = format!("{name:?} is given twice");
+                self.note(&place, Code::RepeatedField, detail);
             }
-            if members[..i].iter().any(|(before, _)| before == name) {
-                self.note(
-                    &place,
-                    Code::RepeatedField,
-                    format!("{name:?} is given twice"),
-                );
-            }
+            seen |= 1 << i;
         }
         Some(Members(members))
     }

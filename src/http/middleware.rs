@@ -87,7 +87,7 @@ pin_project! {
         // `None` when the request is refused before it reaches its handler.
         #[pin]
         inner: Option<F>,
-        refusal: Option<Problem>,
+        refusal: Option<Response>,
         // Set only when the handler has to wait; most answers are ready at once.
         timeout: Option<Pin<Box<tokio::time::Sleep>>>,
         record: Record,
@@ -101,7 +101,7 @@ impl<F: Future<Output = Result<Response, Infallible>>> Future for Answering<F> {
         let this = self.project();
         let Some(inner) = this.inner.as_pin_mut() else {
             let refusal = this.refusal.take().expect("polled after it was ready");
-            return Poll::Ready(Ok(this.record.finish(refusal.into_response())));
+            return Poll::Ready(Ok(this.record.finish(refusal)));
         };
         // A panic leaves nothing half-changed that others could see: handlers share only counters.
         let response = match catch_unwind(AssertUnwindSafe(|| inner.poll(cx))) {
@@ -128,8 +128,12 @@ fn timed_out(limit: Duration) -> Response {
         "The request did not arrive whole within {} s.",
         limit.as_secs_f64()
     );
-    let mut response = Problem::new(Code::RequestTimeout, detail).into_response();
-    // What is still to come of the request is not read any more.
+    closing(Problem::new(Code::RequestTimeout, detail))
+}
+
+/// The problem as the last answer of its connection: what else comes on it is not read.
+fn closing(problem: Problem) -> Response {
+    let mut response = problem.into_response();
     let close = HeaderValue::from_static("close");
     response.headers_mut().insert(header::CONNECTION, close);
     response
@@ -166,33 +170,32 @@ impl Record {
     }
 
     /// Why the request is answered without looking at what it asks.
-    fn refusal(&self, request: &Request) -> Option<Problem> {
+    fn refusal(&self, request: &Request) -> Option<Response> {
         let most = self.state.config.max_concurrent;
         if self.running > most as i64 {
             self.state.metrics.shed.inc();
-            return Some(Problem::new(
-                Code::Overloaded,
-                format!(
-                    "{most} requests are running, as many as the service takes on; try again after a second."
-                ),
-            ));
+            let detail = format!(
+                "{most} requests are running, as many as the service takes on; try again after a second."
+            );
+            return Some(Problem::new(Code::Overloaded, detail).into_response());
         }
         let uri = request.uri();
         let length = uri.path().len() + uri.query().map_or(0, |query| query.len() + 1);
         if length > MAX_URI {
-            return Some(Problem::new(
-                Code::UriTooLong,
-                format!(
-                    "The path and query have {length} bytes; at most {MAX_URI} are read. Send the question as JSON by POST."
-                ),
-            ));
+            let detail = format!(
+                "The path and query have {length} bytes; at most {MAX_URI} are read. Send the question as JSON by POST."
+            );
+            return Some(Problem::new(Code::UriTooLong, detail).into_response());
         }
-        let length = size(request.headers());
+        let Headers { length, ambiguous } = Headers::of(request.headers());
+        if ambiguous {
+            let detail = "The request has several Host headers, or a Transfer-Encoding other than chunked; send one Host, and the body as it is.";
+            return Some(closing(Problem::new(Code::Syntax, detail)));
+        }
         (length > MAX_HEADERS).then(|| {
-            Problem::new(
-                Code::HeadersTooLarge,
-                format!("The headers have {length} bytes; at most {MAX_HEADERS} are read."),
-            )
+            let detail =
+                format!("The headers have {length} bytes; at most {MAX_HEADERS} are read.");
+            Problem::new(Code::HeadersTooLarge, detail).into_response()
         })
     }
 
@@ -245,11 +248,31 @@ impl Drop for Record {
     }
 }
 
-fn size(headers: &HeaderMap) -> usize {
-    headers
-        .iter()
-        .map(|(name, value)| name.as_str().len() + value.len() + 4)
-        .sum()
+/// What one pass over the headers finds.
+#[derive(Default)]
+struct Headers {
+    /// Bytes of names and values.
+    length: usize,
+    /// Whether two readers could take the request for different ones (RFC 9112 §3.2 and §6.1).
+    ambiguous: bool,
+}
+
+impl Headers {
+    fn of(headers: &HeaderMap) -> Headers {
+        let mut found = Headers::default();
+        let (mut hosts, mut codings) = (0, 0);
+        for (name, value) in headers {
+            found.length += name.as_str().len() + value.len() + 4;
+            if name == header::HOST {
+                hosts += 1;
+            } else if name == header::TRANSFER_ENCODING {
+                codings += 1;
+                found.ambiguous |= !value.as_bytes().eq_ignore_ascii_case(b"chunked");
+            }
+        }
+        found.ambiguous |= hosts > 1 || codings > 1;
+        found
+    }
 }
 
 fn id_header(id: Uuid) -> HeaderValue {

@@ -12,7 +12,7 @@ use serde::Serialize;
 use utoipa::{IntoResponses, ToSchema};
 use uuid::Uuid;
 
-use crate::document::{Code, Fault, Path};
+use crate::document::{Code, Fault, Faults, Path};
 
 /// The media type of a problem document.
 pub const PROBLEM_JSON: &str = "application/problem+json";
@@ -63,6 +63,10 @@ impl Problem {
             .expect("a question without a fault is no problem");
         let detail = match faults.len() {
             1 => first.detail.clone(),
+            count if count >= Faults::MOST => format!(
+                "{count} faults or more; the first of them are listed in errors. {}",
+                first.detail
+            ),
             count => format!("{count} faults, all listed in errors. {}", first.detail),
         };
         let problem = Problem::new(first.code, detail);

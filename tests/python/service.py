@@ -35,12 +35,12 @@ class Reply:
 
 
 class Service:
-    """A release binary started with `flags` on a free port of the loopback address."""
+    """A release binary started with `flags` on a port of the loopback address, by default a free one."""
 
-    def __init__(self, log, *flags):
+    def __init__(self, log, *flags, port=0):
         self.log = log
         self.process = subprocess.Popen(
-            [BINARY, "serve", "--listen", "127.0.0.1:0", *flags],
+            [BINARY, "serve", "--listen", f"127.0.0.1:{port}", *flags],
             stdin=subprocess.DEVNULL, stdout=log.open("wb"), stderr=subprocess.STDOUT,
         )
         self.host, self.port = "127.0.0.1", self._announced_port()
@@ -80,6 +80,7 @@ class Service:
         """One request on this thread's kept connection, which is opened anew once it was closed."""
         kept = getattr(self._kept, "connection", None)
         for connection in filter(None, (kept, http.client.HTTPConnection(self.host, self.port, timeout=30))):
+            self._kept.connection = None
             try:
                 connection.request(method, path, body, headers or {})
                 answer = connection.getresponse()
