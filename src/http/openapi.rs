@@ -88,6 +88,7 @@ fn answer_examples() -> Vec<(&'static str, Value)> {
     };
     let full = answer(examples::turned_axes());
     let plane_wave = answer(examples::plane_wave());
+    let swept = serde_json::to_value(examples::swept()).expect("an answer has a JSON form");
     vec![
         ("AnswerUnits", full["units"].clone()),
         ("Invariants", full["invariants"].clone()),
@@ -98,6 +99,8 @@ fn answer_examples() -> Vec<(&'static str, Value)> {
         ("FoundFrame", full["parallel_frame"].clone()),
         ("NoFrame", plane_wave["parallel_frame"].clone()),
         ("Notice", plane_wave["notices"][0].clone()),
+        ("Columns", swept["e"].clone()),
+        ("Swept", swept),
         ("Provenance", full["provenance"].clone()),
         ("Answer", full),
     ]
