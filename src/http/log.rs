@@ -4,8 +4,7 @@
 
 use std::{
     cell::RefCell,
-    fmt::{self, Write},
-    io,
+    fmt, io,
     sync::OnceLock,
     time::{Duration, SystemTime},
 };
@@ -150,12 +149,17 @@ impl Line {
         } else {
             "Z"
         };
-        let _ = write!(self.text, ".{:06}{end}", since.subsec_micros());
+        // Seven digits without the first: the six that a fraction of a second has.
+        let fraction = 1_000_000 + since.subsec_micros();
+        self.text.push('.');
+        self.text
+            .push_str(&itoa::Buffer::new().format(fraction)[1..]);
+        self.text.push_str(end);
     }
 
     fn number(&mut self, name: &'static str, value: u64) {
         self.name(name);
-        let _ = write!(self.text, "{value}");
+        self.text.push_str(itoa::Buffer::new().format(value));
     }
 
     /// Any text, in quotes and escaped.
