@@ -25,7 +25,7 @@ const ORDER: [&str; 14] = [
 ];
 
 /// What the physics may use from outside.
-const PURE: [&str; 8] = [
+const PURE: [&str; 9] = [
     "std",
     "core",
     "dashu",
@@ -33,6 +33,7 @@ const PURE: [&str; 8] = [
     "dashu_int",
     "libm",
     "nalgebra",
+    "rand_xoshiro",
     "thiserror",
 ];
 

@@ -12,6 +12,7 @@ mod laws;
 mod layering;
 mod life;
 mod middleware;
+mod monte_carlo;
 mod openapi;
 mod picture;
 mod pool;

@@ -13,6 +13,7 @@ pub mod field;
 pub mod invariants;
 pub mod lorentz;
 pub mod missing;
+pub mod monte_carlo;
 pub mod parallel;
 pub mod precise;
 pub mod real;

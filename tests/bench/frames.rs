@@ -8,9 +8,11 @@ use std::fs::{self, File};
 use std::hint::black_box;
 use std::io::{BufWriter, Write};
 use std::path::Path;
-use std::time::Instant;
 
 use lodeframe::frames::{Link, Time, Walker, load};
+
+mod stopwatch;
+use stopwatch::Stopwatch;
 
 const FRAMES: usize = 1_000;
 const ROWS: usize = 1_000_000;
@@ -60,29 +62,6 @@ fn main() {
             black_box(walker.at(Some(time)).expect("inside"));
         }),
     );
-}
-
-/// Time on the clock and time on a processor: on a shared machine the second says more.
-struct Stopwatch(Instant, f64);
-
-impl Stopwatch {
-    fn start() -> Stopwatch {
-        Stopwatch(Instant::now(), busy_seconds())
-    }
-
-    fn seconds(&self) -> [f64; 2] {
-        [self.0.elapsed().as_secs_f64(), busy_seconds() - self.1]
-    }
-}
-
-/// Time that this thread has run on a processor, in s.
-fn busy_seconds() -> f64 {
-    let text = fs::read_to_string("/proc/thread-self/schedstat").unwrap_or_default();
-    let nanoseconds = text
-        .split(' ')
-        .next()
-        .and_then(|first| first.parse::<f64>().ok());
-    nanoseconds.map_or(f64::NAN, |nanoseconds| nanoseconds / 1e9)
 }
 
 /// Chains of ten frames that hang from the one that moves.
