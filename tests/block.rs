@@ -30,10 +30,9 @@ const DEGREES: Scale = Scale::pi(1, 180);
 
 /// What the single reading says.
 fn alone(steps: Vec<Step>, [e, b]: [[f64; 3]; 2], setting: &Setting) -> Answer {
-    let given = |v: [f64; 3]| v.map(|x| (!x.is_nan()).then_some(x));
     let reading = Reading {
-        e: given(e),
-        b: given(b),
+        e: e.map(|x| (!x.is_nan()).then_some(x)),
+        b: b.map(|x| (!x.is_nan()).then_some(x)),
         units: setting.units,
         calibration: setting.calibration,
         e_dot_b_zero: None,
@@ -60,26 +59,25 @@ fn check(steps: &[RowStep], rows: &[Row], setting: Setting) {
         quaternion: std::array::from_fn(|i| &motion[3 + i][..]),
         angle: &motion[7],
     };
-    let mut answers = Columns::default();
-    let refused = Rows::new(steps.to_vec(), setting).solve(readings, motions, &mut answers);
-    let mut refused_of_rows = refused.iter();
-    for (i, row) in rows.iter().enumerate() {
-        let expected = single(steps, row, &setting);
-        same(i, row, &expected, &answers, &mut refused_of_rows);
+    let expected: Vec<Answer> = rows
+        .iter()
+        .map(|row| single(steps, row, &setting))
+        .collect();
+    let of_rows = Rows::new(steps.to_vec(), setting);
+    for way in [of_rows.clone(), of_rows.portable()] {
+        let mut answers = Columns::default();
+        let refused = way.solve(readings, motions, &mut answers);
+        same(rows, &expected, &answers, &refused);
     }
-    assert_eq!(refused_of_rows.next(), None, "refused in order, each once");
     if let Some(fixed) = fixed(steps)
         && let Ok(way) = Resolved::new(fixed)
     {
-        let mut of_block = Columns::default();
-        let block = Block::new(Arc::new(way), setting);
-        assert_eq!(block.solve(readings, &mut of_block), refused);
-        let bits = |columns: &Columns| -> Vec<Vec<u64>> {
-            let all = columns.e.iter().chain(&columns.b);
-            all.map(|column| column.iter().map(|x| x.to_bits()).collect())
-                .collect()
-        };
-        assert_eq!(bits(&of_block), bits(&answers));
+        let of_block = Block::new(Arc::new(way), setting);
+        for block in [of_block.clone(), of_block.portable()] {
+            let mut answers = Columns::default();
+            let refused = block.solve(readings, &mut answers);
+            same(rows, &expected, &answers, &refused);
+        }
     }
 }
 
@@ -139,25 +137,23 @@ fn fixed(steps: &[RowStep]) -> Option<Vec<Step>> {
 }
 
 #[track_caller]
-fn same<'r>(
-    i: usize,
-    row: &Row,
-    expected: &Answer,
-    answers: &Columns,
-    refused: &mut impl Iterator<Item = &'r (usize, Impossible)>,
-) {
-    let numbers = match expected {
-        Ok(numbers) => *numbers,
-        Err(why) => {
-            assert_eq!(refused.next(), Some(&(i, why.clone())), "{row:?}");
-            [[f64::NAN; 3]; 2]
+fn same(rows: &[Row], expected: &[Answer], answers: &Columns, refused: &[(usize, Impossible)]) {
+    let mut refused = refused.iter();
+    for (i, (row, expected)) in rows.iter().zip(expected).enumerate() {
+        let numbers = match expected {
+            Ok(numbers) => *numbers,
+            Err(why) => {
+                assert_eq!(refused.next(), Some(&(i, why.clone())), "{row:?}");
+                [[f64::NAN; 3]; 2]
+            }
+        };
+        let found = [&answers.e, &answers.b].map(|v| v.each_ref().map(|column| column[i]));
+        for (found, expected) in found.as_flattened().iter().zip(numbers.as_flattened()) {
+            let same = found.to_bits() == expected.to_bits() || found.is_nan() && expected.is_nan();
+            assert!(same, "row {i}, {row:?}: {found:e} is not {expected:e}");
         }
-    };
-    let found = [&answers.e, &answers.b].map(|v| v.each_ref().map(|column| column[i]));
-    for (found, expected) in found.as_flattened().iter().zip(numbers.as_flattened()) {
-        let same = found.to_bits() == expected.to_bits() || found.is_nan() && expected.is_nan();
-        assert!(same, "row {i}, {row:?}: {found:e} is not {expected:e}");
     }
+    assert_eq!(refused.next(), None, "refused in order, each once");
 }
 
 fn unit(v: [f64; 3]) -> [f64; 3] {

@@ -25,7 +25,7 @@ const ORDER: [&str; 14] = [
 ];
 
 /// What the physics may use from outside.
-const PURE: [&str; 9] = [
+const PURE: [&str; 10] = [
     "std",
     "core",
     "dashu",
@@ -33,6 +33,7 @@ const PURE: [&str; 9] = [
     "dashu_int",
     "libm",
     "nalgebra",
+    "pulp",
     "rand_xoshiro",
     "thiserror",
 ];

@@ -156,7 +156,7 @@ impl Time {
 
     fn fraction(self) -> Dd {
         let [hi, lo] = self.fraction;
-        Dd { hi, lo }
+        Dd::of(hi, lo)
     }
 
     /// The time in the notation of a clock, to the nearest double of its fraction.

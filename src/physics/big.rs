@@ -142,7 +142,7 @@ impl Real for Big {
     fn to_dd(&self) -> Dd {
         let hi = self.to_f64();
         let lo = (self.clone() - Big::new(hi, self.bits)).to_f64();
-        Dd { hi, lo }
+        Dd::of(hi, lo)
     }
     fn context(&self) -> usize {
         self.bits

@@ -4,11 +4,15 @@
 
 use std::sync::Arc;
 
+use super::double_double::{Arithmetic, Dd, Portable};
 use super::error::Impossible;
-use super::field::{FieldUnits, Measured};
-use super::missing::ALL_KNOWN;
+use super::field::{FieldUnits, Kernel, Measured};
+use super::lanes::{LANES, Work, dispatch, tame};
+use super::missing::{ALL_KNOWN, Known};
+use super::real::Vec3;
 use super::reduction::{Calibration, Reduction};
 use super::resolved::Resolved;
+use super::restated::{self, Answers, Fields, Units};
 
 /// E and B of many readings, component by component, all of one length; a NaN is missing.
 #[derive(Clone, Copy, Debug, Default)]
@@ -47,12 +51,32 @@ pub struct Setting {
 pub struct Block {
     way: Arc<Resolved>,
     setting: Setting,
+    units: Units<Portable>,
+    /// The transformation, if two doubles hold it.
+    kernel: Option<Kernel<Dd>>,
+    portable: bool,
 }
 
 impl Block {
     /// Prepares a way that is the same for all rows.
     pub fn new(way: Arc<Resolved>, setting: Setting) -> Block {
-        Block { way, setting }
+        let kernel = Kernel::new(way.net(), setting.units, ());
+        let fits = way.fits_dd() && setting.is_tame() && kernel.numbers().all(|x| tame(x.hi));
+        Block {
+            way,
+            setting,
+            units: Units::of(&setting),
+            kernel: fits.then_some(kernel),
+            portable: false,
+        }
+    }
+
+    /// The same without the instructions that only some processors have: the same bits, slower.
+    pub fn portable(self) -> Block {
+        Block {
+            portable: true,
+            ..self
+        }
     }
 
     /// E' and B' of every reading, in place of what `answers` held. What depends on a missing
@@ -63,11 +87,68 @@ impl Block {
     pub fn solve(&self, readings: Readings, answers: &mut Columns) -> Refused {
         let mut refused = Refused::new();
         answers.resize(readings.len());
-        for row in 0..readings.len() {
-            let answer = self.setting.solve(&self.way, readings.row(row));
-            answers.set(row, answer, &mut refused);
+        let (mut fields, mut lanes) = (Fields::ZERO, Answers::NONE);
+        let mut last = (ALL_KNOWN, ALL_KNOWN);
+        for start in (0..readings.len()).step_by(LANES) {
+            if let Some(kernel) = &self.kernel {
+                let chained = self.way.chained();
+                dispatch(
+                    Pass {
+                        block: self,
+                        motion: kernel.motion.as_ref().map(|motion| (motion, chained)),
+                        matrix: kernel.matrix.as_ref(),
+                        readings: &readings,
+                        start,
+                        fields: &mut fields,
+                        answers: &mut lanes,
+                    },
+                    self.portable,
+                );
+            }
+            for i in 0..answers.take(&lanes, start) {
+                let (row, reading) = (start + i, readings.row(start + i));
+                if lanes.lacks(i) {
+                    answers.set(row, self.setting.solve(&self.way, reading), &mut refused);
+                } else if fields.is_incomplete(i) {
+                    // Gaps are usually the same from row to row.
+                    let given = self.setting.given(reading);
+                    if last.0 != given {
+                        last = (given, self.way.known(self.setting.units, given));
+                    }
+                    answers.hide(row, last.1);
+                }
+            }
         }
         refused
+    }
+}
+
+/// The work on some rows of a block.
+struct Pass<'p> {
+    block: &'p Block,
+    motion: Option<(&'p restated::Motion<Portable>, f64)>,
+    matrix: Option<&'p [Vec3<Dd>; 3]>,
+    readings: &'p Readings<'p>,
+    start: usize,
+    fields: &'p mut Fields,
+    answers: &'p mut Answers,
+}
+
+impl Work for Pass<'_> {
+    #[inline(always)]
+    fn run<A: Arithmetic>(self) {
+        let setting = &self.block.setting;
+        self.fields.load::<A>(self.readings, self.start, setting);
+        let motion = self.motion.map(|((d, k, p, q), chained)| {
+            let motion = (d.map(Dd::by), k.by(), p.by(), q.by());
+            move |_| (motion, chained)
+        });
+        let matrix = self.matrix.map(|rows| {
+            let matrix = rows.map(|row| row.map(Dd::by));
+            move |_| matrix
+        });
+        let units = self.block.units.by::<A>();
+        self.answers.fill(self.fields, units, motion, matrix);
     }
 }
 
@@ -80,7 +161,7 @@ impl Setting {
         if row.as_flattened().iter().any(|x| x.is_infinite()) {
             return Err(Impossible::Infinite);
         }
-        let given = row.map(|v| v.map(|x| !x.is_nan()));
+        let given = self.given(row);
         let [e, b] = row.map(|v| v.map(|x| if x.is_nan() { 0.0 } else { x }));
         let [calibration_e, calibration_b] = self.calibration;
         let reduction = Reduction {
@@ -97,11 +178,7 @@ impl Setting {
         let applied = way.apply(&measured, self.to)?;
         let mut answer = [applied.e, applied.b];
         if given != ALL_KNOWN {
-            let known: [_; 2] = std::array::from_fn(|which| {
-                let given = given[which];
-                self.calibration[which].map_or(given, |calibration| calibration.known(given))
-            });
-            let known = way.known(self.units, known);
+            let known = way.known(self.units, given);
             for (answer, known) in answer.iter_mut().zip(known) {
                 for (x, known) in answer.iter_mut().zip(known) {
                     *x = if known { *x } else { f64::NAN };
@@ -109,6 +186,20 @@ impl Setting {
             }
         }
         Ok(answer)
+    }
+
+    /// Which components of the field a row gives.
+    fn given(&self, row: [[f64; 3]; 2]) -> Known {
+        std::array::from_fn(|which| {
+            let given = row[which].map(|x| !x.is_nan());
+            self.calibration[which].map_or(given, |calibration| calibration.known(given))
+        })
+    }
+
+    /// Whether its numbers stay well inside the range of doubles.
+    pub(super) fn is_tame(&self) -> bool {
+        let each = self.calibration.iter().flatten();
+        each.flat_map(Calibration::numbers).all(tame)
     }
 }
 
@@ -140,6 +231,27 @@ impl Columns {
     pub(super) fn resize(&mut self, len: usize) {
         for column in self.e.iter_mut().chain(&mut self.b) {
             column.resize(len, f64::NAN);
+        }
+    }
+
+    /// Takes the answers of rows from `start` on, as many as there are, and says how many.
+    pub(super) fn take(&mut self, lanes: &Answers, start: usize) -> usize {
+        let count = LANES.min(self.e[0].len() - start);
+        let parts = [(&mut self.e, &lanes.e), (&mut self.b, &lanes.b)];
+        for (columns, lanes) in parts {
+            for (column, lanes) in columns.iter_mut().zip(lanes) {
+                column[start..start + count].copy_from_slice(&lanes[..count]);
+            }
+        }
+        count
+    }
+
+    /// Leaves of a row what is known.
+    fn hide(&mut self, row: usize, [e, b]: Known) {
+        for i in 0..3 {
+            for (column, known) in [(&mut self.e[i], e[i]), (&mut self.b[i], b[i])] {
+                column[row] = if known { column[row] } else { f64::NAN };
+            }
         }
     }
 

@@ -9,7 +9,8 @@ use super::big::Big;
 use super::constants::SPEED_OF_LIGHT;
 use super::double_double::Dd;
 use super::error::Impossible;
-use super::real::{Real, Vec3, cross, exponent_spread, norm2, round, scale, vector};
+use super::pure_boost::{Boost, one_less_beta2};
+use super::real::{Real, Vec3, cross, exponent_spread, norm2, round, vector};
 use super::scale::Scale;
 
 /// The motion of the next frame as seen in the current one, in the form it was given.
@@ -65,25 +66,12 @@ pub enum Motion {
     },
 }
 
-/// A boost ready to be applied, in the arithmetic R.
-#[derive(Clone, Debug)]
-pub struct Boost<R> {
-    /// d, along the velocity.
-    pub direction: Vec3<R>,
-    /// s, with γβ (as a vector) = s d.
-    pub stretch: R,
-    /// γ.
-    pub gamma: R,
-    /// γ − 1, to its own full precision.
-    pub gamma_less_one: R,
-}
-
 /// Bits that hold any sum of squares of doubles exactly.
 const EXACT_BITS: usize = 4608;
 /// Bits that tell γ of a speed next to c from another by more than enough.
 const GROWTH_BITS: usize = 256;
 /// Below this 1−β² is taken from more digits than two doubles have.
-const SMALL_W: f64 = 0.0625;
+pub(super) const SMALL_W: f64 = 0.0625;
 
 impl Motion {
     /// Refuses what no frame can do.
@@ -158,18 +146,7 @@ impl Motion {
         };
         match *self {
             Motion::Velocity { .. } | Motion::Turning { .. } => {
-                let d = self.velocity(context);
-                let beta: R = self.beta().value(context);
-                let root = one_less_beta2(&d, beta.clone()).sqrt();
-                let gamma = one.clone() / root.clone();
-                let beta2 = norm2(&d) * beta.square();
-                let gamma_less_one = beta2 / (root.clone() * (one + root.clone()));
-                Boost {
-                    direction: d,
-                    stretch: beta / root,
-                    gamma,
-                    gamma_less_one,
-                }
+                Boost::by_velocity(self.velocity(context), self.beta().value(context))
             }
             Motion::Speed { direction: d, beta } => {
                 let (direction, length) = direction(d);
@@ -358,11 +335,6 @@ impl Motion {
     }
 }
 
-/// 1 − (unit·|v|)².
-fn one_less_beta2<R: Real>(velocity: &Vec3<R>, unit: R) -> R {
-    unit.of(1.0) - norm2(velocity) * unit.square()
-}
-
 fn points_somewhere(direction: [f64; 3]) -> Result<(), Impossible> {
     if direction == [0.0; 3] {
         return Err(Impossible::NoDirection { what: "direction" });
@@ -379,52 +351,4 @@ pub(crate) fn unit_exponent(d: [f64; 3]) -> [f64; 3] {
     // In two halves: the power may be past the range of doubles.
     let n = -libm::ilogb(largest);
     d.map(|x| libm::scalbn(libm::scalbn(x, n / 2), n - n / 2))
-}
-
-impl<R: Real> Boost<R> {
-    fn along(direction: Vec3<R>, length: R, gamma: R, gamma_less_one: R) -> Boost<R> {
-        let gamma_beta = (gamma_less_one.clone() * (gamma.clone() + gamma.of(1.0))).sqrt();
-        Boost {
-            direction,
-            stretch: gamma_beta / length,
-            gamma,
-            gamma_less_one,
-        }
-    }
-
-    /// The boost that undoes this one.
-    pub fn inverse(self) -> Boost<R> {
-        Boost {
-            stretch: -self.stretch,
-            ..self
-        }
-    }
-
-    /// k = s²/(γ+1) = (γ−1)/d².
-    pub fn curvature(&self) -> R {
-        self.stretch.square() / (self.gamma.clone() + self.gamma.of(1.0))
-    }
-
-    /// γβ as a vector.
-    pub fn gamma_beta(&self) -> Vec3<R> {
-        scale(&self.stretch, &self.direction)
-    }
-
-    /// β as a vector.
-    pub fn beta(&self) -> Vec3<R> {
-        // Both brought near one first, so that no product leaves the range.
-        let n = self.gamma.exponent().unwrap_or(0) as i32;
-        let per_gamma = self.stretch.scale2(-n) / self.gamma.scale2(-n);
-        scale(&per_gamma, &self.direction)
-    }
-
-    /// The boost with its numbers to the precision of two doubles.
-    pub fn to_dd(&self) -> Boost<Dd> {
-        Boost {
-            direction: std::array::from_fn(|i| self.direction[i].to_dd()),
-            stretch: self.stretch.to_dd(),
-            gamma: self.gamma.to_dd(),
-            gamma_less_one: self.gamma_less_one.to_dd(),
-        }
-    }
 }

@@ -3,6 +3,8 @@
 use super::constants::SPEED_OF_LIGHT;
 use super::double_double::Dd;
 use super::lorentz::Net;
+use super::pure_boost::Boost;
+use super::quaternion::Quaternion;
 use super::real::{Real, Vec3, add, cross, dot, scale, vector};
 use super::reduction::Reduction;
 use super::scale::Scale;
@@ -126,38 +128,56 @@ impl<R: Real> Kernel<R> {
     /// Prepares a net transformation for fields in these units.
     pub fn new(net: &Net<R>, units: FieldUnits, context: R::Context) -> Kernel<R> {
         let ratio = units.cb_over_e().value::<R>(context);
-        let cb_over_e = ratio.to_f64();
-        let motion = net.boost.as_ref().map(|boost| {
-            let stretch = boost.stretch.clone();
-            let (p, q) = (stretch.clone() * ratio.clone(), stretch / ratio);
-            (boost.direction.clone(), boost.curvature(), p, q)
-        });
         let turn = net.turn.as_ref().filter(|turn| !turn.is_identity());
         Kernel {
-            motion,
-            matrix: turn.map(|turn| turn.matrix()),
-            cb_over_e,
+            motion: net.boost.as_ref().map(|boost| Self::motion(boost, &ratio)),
+            matrix: turn.map(Quaternion::matrix),
+            cb_over_e: ratio.to_f64(),
         }
     }
 
+    /// d, k, p and q of a boost.
+    #[inline(always)]
+    pub(super) fn motion(boost: &Boost<R>, cb_over_e: &R) -> (Vec3<R>, R, R, R) {
+        let p = boost.stretch.clone() * cb_over_e.clone();
+        let q = boost.stretch.clone() / cb_over_e.clone();
+        (boost.direction.clone(), boost.curvature(), p, q)
+    }
+
+    /// Every number in it.
+    pub(super) fn numbers(&self) -> impl Iterator<Item = &R> {
+        let of_motion = self
+            .motion
+            .iter()
+            .flat_map(|(d, k, p, q)| d.iter().chain([k, p, q]));
+        of_motion.chain(self.matrix.iter().flatten().flatten())
+    }
+
     /// E' and B' in the units of E and B.
+    #[inline(always)]
     pub fn apply(&self, e: &Vec3<R>, b: &Vec3<R>) -> (Vec3<R>, Vec3<R>) {
         let (e, b) = match &self.motion {
             Some((d, k, p, q)) => {
                 let (xe, xb) = (cross(d, e), cross(d, b));
-                let across = |x: &Vec3<R>| scale(k, &cross(x, d));
-                let e2 = add(&add(e, &across(&xe)), &scale(p, &xb));
-                let b2 = add(&add(b, &across(&xb)), &scale(&-q.clone(), &xe));
-                (e2, b2)
+                (
+                    moved(e, scale(k, &cross(&xe, d)), scale(p, &xb)),
+                    moved(b, scale(k, &cross(&xb, d)), scale(&-q.clone(), &xe)),
+                )
             }
             None => (e.clone(), b.clone()),
         };
         match &self.matrix {
-            Some(m) => (
-                m.each_ref().map(|row| dot(row, &e)),
-                m.each_ref().map(|row| dot(row, &b)),
+            Some([x, y, z]) => (
+                [dot(x, &e), dot(y, &e), dot(z, &e)],
+                [dot(x, &b), dot(y, &b), dot(z, &b)],
             ),
             None => (e, b),
         }
     }
+}
+
+/// A field with what its own part across the motion and the other field add to it.
+#[inline(always)]
+fn moved<R: Real>(own: &Vec3<R>, across: Vec3<R>, other: Vec3<R>) -> Vec3<R> {
+    add(&add(own, &across), &other)
 }

@@ -9,10 +9,12 @@ use std::sync::Arc;
 
 use nalgebra::Matrix4;
 
-use super::boost::{Boost, Motion};
+use super::boost::Motion;
 use super::double_double::Dd;
+use super::pure_boost::Boost;
+use super::quaternion::Quaternion;
 use super::real::{Real, norm2};
-use super::rotation::{Quaternion, Turn};
+use super::rotation::Turn;
 use super::uncertain::Uncertain;
 
 /// One step of a way, from the current frame to the next.
@@ -163,15 +165,8 @@ impl<R: Real> Net<R> {
             };
         }
         if let (None, Some(turn)) = (&self.boost, &self.turn) {
-            // Seen on the axes before the turn, it is the same boost along a direction turned back.
-            let direction = turn.carry(&boost.direction);
-            let stretch = boost.stretch / turn.norm2();
             return Net {
-                boost: Some(Boost {
-                    direction,
-                    stretch,
-                    ..boost
-                }),
+                boost: Some(before_turn(boost, turn)),
                 direction_as_given: false,
                 ..self
             };
@@ -253,8 +248,20 @@ impl<R: Real> Net<R> {
     }
 }
 
+/// A boost that follows a turn, as seen on the axes before it: the same along a direction turned
+/// back.
+#[inline(always)]
+pub(super) fn before_turn<R: Real>(boost: Boost<R>, turn: &Quaternion<R>) -> Boost<R> {
+    Boost {
+        direction: turn.carry(&boost.direction),
+        stretch: boost.stretch / turn.norm2(),
+        ..boost
+    }
+}
+
 /// Scales a quaternion by a power of two so that long chains stay in range.
-fn normalised<R: Real>(q: Quaternion<R>) -> Quaternion<R> {
+#[inline(always)]
+pub(super) fn normalised<R: Real>(q: Quaternion<R>) -> Quaternion<R> {
     let n = q.norm2().exponent().map_or(0, |e| -(e / 2)) as i32;
     if n == 0 {
         q

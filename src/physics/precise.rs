@@ -13,7 +13,7 @@ use super::resolved::Resolved;
 use super::scale::Scale;
 
 /// Result over what was summed, below which two doubles no longer suffice.
-const KEPT: f64 = 1.0 / (1u64 << 40) as f64;
+pub(super) const KEPT: f64 = 1.0 / (1u64 << 40) as f64;
 /// The numbers of bits tried in turn.
 const LEVELS: [usize; 4] = [256, 640, 1536, 4608];
 /// Bits below the size of what was summed that a result at least keeps.
@@ -79,21 +79,25 @@ impl Resolved {
         })
     }
 
+    /// By how much what is summed in composing the net transformation may exceed the field; zero
+    /// when nothing is.
+    pub(super) fn chained(&self) -> f64 {
+        match &self.net().boost {
+            Some(boost) if !self.net().direction_as_given => 2.0 * boost.gamma.hi * self.slack(),
+            _ => 0.0,
+        }
+    }
+
     /// For chains, a bound of the size of what is summed that counts in the composition of the
     /// net transformation: no product of its rounded direction vanishes exactly.
     fn chain_sizes(&self, kernel: &Kernel<Dd>, field: &Measured) -> [f64; 2] {
-        let Some(boost) = self
-            .net()
-            .boost
-            .as_ref()
-            .filter(|_| !self.net().direction_as_given)
-        else {
+        let factor = self.chained();
+        if factor == 0.0 {
             return [0.0; 2];
-        };
+        }
         let [e, b] = field
             .magnitudes()
             .map(|x| libm::hypot(libm::hypot(x[0], x[1]), x[2]));
-        let factor = 2.0 * boost.gamma.hi * self.slack();
         [
             factor * (e + kernel.cb_over_e * b),
             factor * (b + e / kernel.cb_over_e),

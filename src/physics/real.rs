@@ -75,46 +75,73 @@ pub trait Real:
 pub type Vec3<R> = [R; 3];
 
 /// a × b.
-#[inline]
+#[inline(always)]
 pub fn cross<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> Vec3<R> {
-    let component = |j: usize, k: usize| a[j].clone() * b[k].clone() - a[k].clone() * b[j].clone();
-    [component(1, 2), component(2, 0), component(0, 1)]
+    [
+        minor(&a[1], &b[2], &a[2], &b[1]),
+        minor(&a[2], &b[0], &a[0], &b[2]),
+        minor(&a[0], &b[1], &a[1], &b[0]),
+    ]
+}
+
+/// a b − c d.
+#[inline(always)]
+fn minor<R: Real>(a: &R, b: &R, c: &R, d: &R) -> R {
+    a.clone() * b.clone() - c.clone() * d.clone()
 }
 
 /// a · b.
-#[inline]
+#[inline(always)]
 pub fn dot<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> R {
     a[0].clone() * b[0].clone() + a[1].clone() * b[1].clone() + a[2].clone() * b[2].clone()
 }
 
 /// |a|².
+#[inline(always)]
 pub fn norm2<R: Real>(a: &Vec3<R>) -> R {
     dot(a, a)
 }
 
 /// s a.
-pub fn scale<R: Real>(s: &R, a: &Vec3<R>) -> Vec3<R> {
-    a.clone().map(|x| s.clone() * x)
+#[inline(always)]
+pub fn scale<R: Real>(s: &R, [x, y, z]: &Vec3<R>) -> Vec3<R> {
+    [
+        s.clone() * x.clone(),
+        s.clone() * y.clone(),
+        s.clone() * z.clone(),
+    ]
 }
 
 /// a + b.
-pub fn add<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> Vec3<R> {
-    std::array::from_fn(|i| a[i].clone() + b[i].clone())
+#[inline(always)]
+pub fn add<R: Real>([a, b, c]: &Vec3<R>, [x, y, z]: &Vec3<R>) -> Vec3<R> {
+    [
+        a.clone() + x.clone(),
+        b.clone() + y.clone(),
+        c.clone() + z.clone(),
+    ]
 }
 
 /// a − b.
-pub fn sub<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> Vec3<R> {
-    std::array::from_fn(|i| a[i].clone() - b[i].clone())
+#[inline(always)]
+pub fn sub<R: Real>([a, b, c]: &Vec3<R>, [x, y, z]: &Vec3<R>) -> Vec3<R> {
+    [
+        a.clone() - x.clone(),
+        b.clone() - y.clone(),
+        c.clone() - z.clone(),
+    ]
 }
 
 /// Three doubles as a vector.
-pub fn vector<R: Real>(a: [f64; 3], context: R::Context) -> Vec3<R> {
-    a.map(|x| R::new(x, context))
+#[inline(always)]
+pub fn vector<R: Real>([x, y, z]: [f64; 3], context: R::Context) -> Vec3<R> {
+    [R::new(x, context), R::new(y, context), R::new(z, context)]
 }
 
 /// The nearest doubles.
-pub fn round<R: Real>(a: &Vec3<R>) -> [f64; 3] {
-    std::array::from_fn(|i| a[i].to_f64())
+#[inline(always)]
+pub fn round<R: Real>([x, y, z]: &Vec3<R>) -> [f64; 3] {
+    [x.to_f64(), y.to_f64(), z.to_f64()]
 }
 
 /// How many powers of two lie between the largest and the smallest of these numbers, zeros aside.

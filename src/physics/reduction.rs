@@ -26,6 +26,7 @@ pub struct Reduction {
 
 impl Calibration {
     /// matrix · (raw − offset).
+    #[inline(always)]
     pub fn apply<R: Real>(&self, raw: [f64; 3], context: R::Context) -> Vec3<R> {
         let net: Vec3<R> =
             std::array::from_fn(|i| R::new(raw[i], context) - R::new(self.offset[i], context));
@@ -33,7 +34,8 @@ impl Calibration {
     }
 
     /// The size of what is summed for each component.
-    fn magnitude(&self, raw: [f64; 3]) -> [f64; 3] {
+    #[inline(always)]
+    pub(super) fn magnitude(&self, raw: [f64; 3]) -> [f64; 3] {
         let net: [f64; 3] = std::array::from_fn(|i| (raw[i] - self.offset[i]).abs());
         self.matrix
             .map(|row| (0..3).map(|j| row[j].abs() * net[j]).sum())
@@ -46,7 +48,7 @@ impl Calibration {
             .map(|row| (0..3).all(|j| raw[j] || row[j] == 0.0))
     }
 
-    fn numbers(&self) -> impl Iterator<Item = f64> {
+    pub(super) fn numbers(&self) -> impl Iterator<Item = f64> {
         let matrix = self.matrix.into_iter().flatten();
         matrix.chain(self.offset)
     }

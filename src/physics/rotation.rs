@@ -5,7 +5,8 @@
 
 use super::double_double::Dd;
 use super::error::Impossible;
-use super::real::{Real, Vec3, dot, exponent_spread, norm2, vector};
+use super::quaternion::Quaternion;
+use super::real::{Real, Vec3, cross, dot, exponent_spread, norm2, vector};
 use super::scale::Scale;
 use super::spin::Spin;
 
@@ -42,15 +43,6 @@ pub enum Turn {
 
 /// Largest departure of |q|² and MMᵀ from one that is taken as rounding and mended.
 pub const ROUNDING_LIMIT: f64 = 2e-6;
-
-/// w + xi + yj + zk, of any length but zero.
-#[derive(Clone, Debug)]
-pub struct Quaternion<R> {
-    /// Real part.
-    pub w: R,
-    /// Vector part.
-    pub v: Vec3<R>,
-}
 
 impl Turn {
     /// How far a quaternion or matrix is from a rotation: ||q|²−1| or the largest element of
@@ -99,7 +91,7 @@ impl Turn {
                     }
                 }
                 within("the largest element of |M Mt - 1|", departure)?;
-                let determinant = dot(&rows[0], &super::real::cross(&rows[1], &rows[2])).to_f64();
+                let determinant = dot(&rows[0], &cross(&rows[1], &rows[2])).to_f64();
                 if determinant < 0.0 {
                     return Err(Impossible::Mirror { determinant });
                 }
@@ -108,18 +100,18 @@ impl Turn {
         }
     }
 
+    /// Whether two doubles hold the turn by an angle.
+    pub(super) fn angle_fits_dd(angle: f64, radians: Scale) -> bool {
+        angle == 0.0 || (1e-60..1e5).contains(&angle.abs()) || radians.pi == 1 && angle.abs() > 1.0
+    }
+
     /// Whether two doubles hold everything in [`quaternion`](Self::quaternion).
     pub fn fits_dd(&self) -> bool {
-        let small = |angle: f64, radians: Scale| {
-            angle == 0.0
-                || (1e-60..1e5).contains(&angle.abs())
-                || radians.pi == 1 && angle.abs() > 1.0
-        };
         match self {
-            Turn::AxisAngle { angle, radians, .. } => small(*angle, *radians),
+            Turn::AxisAngle { angle, radians, .. } => Turn::angle_fits_dd(*angle, *radians),
             Turn::Euler {
                 angles, radians, ..
-            } => angles.iter().all(|a| small(*a, *radians)),
+            } => angles.iter().all(|a| Turn::angle_fits_dd(*a, *radians)),
             Turn::Spinning(spin) => spin.fits_dd(),
             Turn::Quaternion(_) | Turn::Matrix(_) => true,
         }
@@ -204,187 +196,54 @@ pub(super) fn about_axis<R: Real>(
     (w, s): (R, R),
     context: R::Context,
 ) -> Quaternion<R> {
-    let axis = vector::<R>(super::boost::unit_exponent(axis), context);
-    let length = norm2(&axis).sqrt();
+    let (axis, length) = unit_axis::<R>(axis, context);
     Quaternion {
         w: w * length,
         v: axis.map(|x| x * s.clone()),
     }
 }
 
-/// Cosine and sine of half an angle, up to a common factor. Quarter turns are split off in the
-/// unit itself where that is exact (degrees, revolutions): 90 deg is then a turn without error.
+/// An axis brought near length one, and its length.
+pub(super) fn unit_axis<R: Real>(axis: [f64; 3], context: R::Context) -> (Vec3<R>, R) {
+    let axis = vector::<R>(super::boost::unit_exponent(axis), context);
+    let length = norm2(&axis).sqrt();
+    (axis, length)
+}
+
+/// Cosine and sine of half an angle, up to a common factor.
 fn half_angle<R: Real>(angle: f64, radians: Scale, context: R::Context) -> (R, R) {
-    let (rest, quarters) = if radians.pi == 1 {
+    let (rest, quarters) = split_quarters(angle, radians);
+    half_of_quarters(R::new(rest, context) * radians.value(context), quarters)
+}
+
+/// An angle as a rest and some quarter turns, split off in the unit itself where that is exact
+/// (degrees, revolutions): 90 deg is then a turn without error.
+pub(super) fn split_quarters(angle: f64, radians: Scale) -> (f64, i32) {
+    if radians.pi == 1 {
         libm::remquo(angle, radians.den as f64 / (2.0 * radians.num as f64))
     } else {
         (angle, 0)
-    };
-    half_of_quarters(R::new(rest, context) * radians.value(context), quarters)
+    }
 }
 
 /// Cosine and sine of half of an angle and some quarter turns, up to a common factor.
 pub(super) fn half_of_quarters<R: Real>(angle: R, quarters: i32) -> (R, R) {
     let (sin, cos) = angle.scale2(-1).sin_cos();
-    match quarters.rem_euclid(4) {
-        0 => (cos, sin),
-        1 => (cos.clone() - sin.clone(), cos + sin),
-        2 => (-sin, cos),
-        _ => (-(cos.clone() + sin.clone()), cos - sin),
-    }
+    advance_half(cos, sin, f64::from(quarters.rem_euclid(4)))
 }
 
-impl<R: Real> Quaternion<R> {
-    /// The Hamilton product: the turn `other`, then this one, both about fixed axes.
-    pub fn times(&self, other: &Quaternion<R>) -> Quaternion<R> {
-        let w = self.w.clone() * other.w.clone() - dot(&self.v, &other.v);
-        let cross = super::real::cross(&self.v, &other.v);
-        let v = std::array::from_fn(|i| {
-            self.w.clone() * other.v[i].clone()
-                + other.w.clone() * self.v[i].clone()
-                + cross[i].clone()
-        });
-        Quaternion { w, v }
+/// Cosine and sine of half an angle after 0 to 3 quarter turns more, up to a common factor.
+#[inline(always)]
+pub(super) fn advance_half<R: Real>(cos: R, sin: R, quarters: f64) -> (R, R) {
+    let odd = quarters == 1.0 || quarters == 3.0;
+    let (cos, sin) = if odd {
+        (cos.clone() - sin.clone(), cos + sin)
+    } else {
+        (cos, sin)
+    };
+    if quarters >= 2.0 {
+        (-sin, cos)
+    } else {
+        (cos, sin)
     }
-
-    /// The turn back.
-    pub fn conjugate(&self) -> Quaternion<R> {
-        Quaternion {
-            w: self.w.clone(),
-            v: self.v.clone().map(|x| -x),
-        }
-    }
-
-    /// |q|².
-    pub fn norm2(&self) -> R {
-        self.w.square() + norm2(&self.v)
-    }
-
-    /// |q|² R v: the vector carried along by the turn, and stretched.
-    pub fn carry(&self, v: &Vec3<R>) -> Vec3<R> {
-        let across = super::real::cross(&self.v, v);
-        let along = dot(&self.v, v).scale2(1);
-        let own = self.w.square() - norm2(&self.v);
-        let twice = self.w.scale2(1);
-        std::array::from_fn(|i| {
-            own.clone() * v[i].clone()
-                + along.clone() * self.v[i].clone()
-                + twice.clone() * across[i].clone()
-        })
-    }
-
-    /// Whether it turns nothing.
-    pub fn is_identity(&self) -> bool {
-        self.v.iter().all(R::is_zero)
-    }
-
-    /// M = R⁻¹, which multiplies components.
-    pub fn matrix(&self) -> [Vec3<R>; 3] {
-        let (w2, norm2) = (self.w.square(), self.norm2());
-        let squares = self.v.clone().map(|x| x.square());
-        std::array::from_fn(|i| {
-            std::array::from_fn(|j| {
-                let element = if i == j {
-                    let (a, b) = ((i + 1) % 3, (i + 2) % 3);
-                    w2.clone() + squares[i].clone() - squares[a].clone() - squares[b].clone()
-                } else {
-                    let k = 3 - i - j;
-                    let outer = self.v[i].clone() * self.v[j].clone();
-                    let inner = self.w.clone() * self.v[k].clone();
-                    // R⁻¹ has the sign of w turned against R.
-                    let cyclic = (i + 1) % 3 == j;
-                    (if cyclic { outer + inner } else { outer - inner }).scale2(1)
-                };
-                element / norm2.clone()
-            })
-        })
-    }
-
-    /// The unit quaternion with w ≥ 0, rounded to doubles: w, x, y, z.
-    pub fn rounded(&self) -> [f64; 4] {
-        let length = self.norm2().sqrt();
-        let length = if self.w.is_negative() {
-            -length
-        } else {
-            length
-        };
-        let part = |x: &R| (x.clone() / length.clone()).to_f64() + 0.0;
-        [
-            part(&self.w),
-            part(&self.v[0]),
-            part(&self.v[1]),
-            part(&self.v[2]),
-        ]
-    }
-
-    /// The same to the precision of two doubles.
-    pub fn to_dd(&self) -> Quaternion<Dd> {
-        Quaternion {
-            w: self.w.to_dd(),
-            v: std::array::from_fn(|i| self.v[i].to_dd()),
-        }
-    }
-
-    /// From M = R⁻¹, taken to the nearest rotation (its polar factor).
-    fn from_matrix(m: &[Vec3<R>; 3]) -> Quaternion<R> {
-        let m = polar_factor(m);
-        let trace = m[0][0].clone() + m[1][1].clone() + m[2][2].clone();
-        let one = trace.of(1.0);
-        // 4w² and 4x².. from the diagonal; the largest of the four is well away from zero.
-        let four_w2 = one.clone() + trace.clone();
-        let four_v2: Vec3<R> =
-            std::array::from_fn(|i| one.clone() + m[i][i].clone().scale2(1) - trace.clone());
-        let sizes = [
-            four_w2.to_f64(),
-            four_v2[0].to_f64(),
-            four_v2[1].to_f64(),
-            four_v2[2].to_f64(),
-        ];
-        let largest = (0..4)
-            .max_by(|&a, &b| sizes[a].total_cmp(&sizes[b]))
-            .unwrap_or(0);
-        let odd = |i: usize| {
-            let (j, k) = ((i + 1) % 3, (i + 2) % 3);
-            m[j][k].clone() - m[k][j].clone()
-        };
-        if largest == 0 {
-            return Quaternion {
-                w: four_w2,
-                v: [odd(0), odd(1), odd(2)],
-            };
-        }
-        let i = largest - 1;
-        let v = std::array::from_fn(|j| {
-            if j == i {
-                four_v2[i].clone()
-            } else {
-                m[i][j].clone() + m[j][i].clone()
-            }
-        });
-        Quaternion { w: odd(i), v }
-    }
-}
-
-/// The orthogonal factor of a matrix that is nearly orthogonal, by Newton's iteration
-/// X ← (X + X⁻ᵀ)/2 (Higham, Functions of Matrices, ch. 8), which squares the error each time.
-fn polar_factor<R: Real>(m: &[Vec3<R>; 3]) -> [Vec3<R>; 3] {
-    let mut x = m.clone();
-    // 2e-6 squared ten times over is past any precision kept; two doubles need three.
-    for _ in 0..12 {
-        let cofactors: [Vec3<R>; 3] =
-            std::array::from_fn(|i| super::real::cross(&x[(i + 1) % 3], &x[(i + 2) % 3]));
-        let determinant = dot(&x[0], &cofactors[0]);
-        let next: [Vec3<R>; 3] = std::array::from_fn(|i| {
-            std::array::from_fn(|j| {
-                (x[i][j].clone() + cofactors[i][j].clone() / determinant.clone()).scale2(-1)
-            })
-        });
-        let still =
-            (0..9).all(|n| (next[n / 3][n % 3].clone() - x[n / 3][n % 3].clone()).is_zero());
-        x = next;
-        if still {
-            break;
-        }
-    }
-    x
 }

@@ -5,9 +5,13 @@
 
 use super::block::{Columns, Readings, Refused, Setting};
 use super::boost::Motion;
+use super::double_double::{Arithmetic, Portable};
 use super::error::Impossible;
+use super::lanes::{LANES, Work, dispatch};
 use super::lorentz::{Change, Step};
+use super::passes::{Nets, Pass, passes};
 use super::resolved::Resolved;
+use super::restated::{Answers, Fields, Units};
 use super::rotation::Turn;
 use super::scale::Scale;
 
@@ -58,6 +62,10 @@ pub struct Motions<'a> {
 pub struct Rows {
     steps: Vec<RowStep>,
     setting: Setting,
+    units: Units<Portable>,
+    /// How the steps are taken in two doubles, if those hold them.
+    passes: Option<Vec<Pass>>,
+    portable: bool,
 }
 
 impl From<Step> for RowStep {
@@ -82,7 +90,22 @@ impl RowStep {
 impl Rows {
     /// Prepares a way of steps in their order.
     pub fn new(steps: Vec<RowStep>, setting: Setting) -> Rows {
-        Rows { steps, setting }
+        let passes = passes(&steps).filter(|_| setting.is_tame());
+        Rows {
+            steps,
+            setting,
+            units: Units::of(&setting),
+            passes,
+            portable: false,
+        }
+    }
+
+    /// The same without the instructions that only some processors have: the same bits, slower.
+    pub fn portable(self) -> Rows {
+        Rows {
+            portable: true,
+            ..self
+        }
     }
 
     /// E' and B' of every reading, in place of what `answers` held. What depends on a missing
@@ -94,9 +117,28 @@ impl Rows {
     pub fn solve(&self, readings: Readings, motions: Motions, answers: &mut Columns) -> Refused {
         let mut refused = Refused::new();
         answers.resize(readings.len());
-        for row in 0..readings.len() {
-            let answer = self.solve_row(readings.row(row), motions, row);
-            answers.set(row, answer, &mut refused);
+        let (mut fields, mut lanes, mut nets) = (Fields::ZERO, Answers::NONE, Nets::NONE);
+        for start in (0..readings.len()).step_by(LANES) {
+            if let Some(passes) = &self.passes {
+                let work = Lane {
+                    rows: self,
+                    passes,
+                    readings: &readings,
+                    motions: &motions,
+                    start,
+                    fields: &mut fields,
+                    nets: &mut nets,
+                    answers: &mut lanes,
+                };
+                dispatch(work, self.portable);
+            }
+            for i in 0..answers.take(&lanes, start) {
+                if lanes.lacks(i) || fields.is_incomplete(i) {
+                    let row = start + i;
+                    let answer = self.solve_row(readings.row(row), motions, row);
+                    answers.set(row, answer, &mut refused);
+                }
+            }
         }
         refused
     }
@@ -121,6 +163,32 @@ impl Rows {
             }
         }
         self.setting.solve(&Resolved::new(steps)?, reading)
+    }
+}
+
+/// The work on some rows.
+struct Lane<'p> {
+    rows: &'p Rows,
+    passes: &'p [Pass],
+    readings: &'p Readings<'p>,
+    motions: &'p Motions<'p>,
+    start: usize,
+    fields: &'p mut Fields,
+    nets: &'p mut Nets,
+    answers: &'p mut Answers,
+}
+
+impl Work for Lane<'_> {
+    #[inline(always)]
+    fn run<A: Arithmetic>(self) {
+        let Rows { setting, units, .. } = self.rows;
+        self.fields.load::<A>(self.readings, self.start, setting);
+        self.nets.clear();
+        for pass in self.passes {
+            self.nets
+                .take::<A>(pass, self.motions, self.start, self.fields);
+        }
+        self.nets.answer(self.fields, units.by::<A>(), self.answers);
     }
 }
 

@@ -2,8 +2,9 @@
 
 use super::double_double::Dd;
 use super::error::Impossible;
+use super::quaternion::Quaternion;
 use super::real::{Real, exponent_spread, norm2, vector};
-use super::rotation::{Quaternion, about_axis, half_of_quarters};
+use super::rotation::{about_axis, half_of_quarters};
 use super::scale::Scale;
 
 /// A turn by phase + |ω|·elapsed about ω.
