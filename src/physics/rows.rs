@@ -149,10 +149,21 @@ impl Rows {
         motions: Motions,
         row: usize,
     ) -> Result<[[f64; 3]; 2], Impossible> {
+        match self.way(motions, row)? {
+            Some(way) => self.setting.solve(&way, reading),
+            None => Ok([[f64::NAN; 3]; 2]),
+        }
+    }
+
+    /// The way of one row; `None` when it lacks a number that a step takes.
+    ///
+    /// # Errors
+    /// A number is infinite, or the motion is none that a frame can have.
+    pub fn way(&self, motions: Motions, row: usize) -> Result<Option<Resolved>, Impossible> {
         let mut steps = Vec::with_capacity(self.steps.len());
         for step in &self.steps {
             let Some(step) = motions.step(step, row)? else {
-                return Ok([[f64::NAN; 3]; 2]);
+                return Ok(None);
             };
             steps.push(step);
         }
@@ -162,7 +173,7 @@ impl Rows {
                 Change::Rotate(turn) => turn.check().map(|_| ())?,
             }
         }
-        self.setting.solve(&Resolved::new(steps)?, reading)
+        Resolved::new(steps).map(Some)
     }
 }
 

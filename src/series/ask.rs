@@ -5,6 +5,7 @@ use std::sync::Arc;
 
 use crate::document::{Code, Fault, Faults, Members, Node, Place};
 use crate::frames::{Clock, Sensor};
+use crate::physics::block::Setting;
 use crate::physics::field::FieldUnits;
 use crate::physics::resolved::Resolved;
 use crate::question::{Deployment, Question, way as question_way};
@@ -75,15 +76,24 @@ impl Series {
         self.blank.e_dot_b_zero.is_some()
             || match &self.way {
                 Way::Fixed(way) => way.net().boost.is_some(),
-                Way::Template(template) => template.moves(),
+                Way::Rows(template) => template.moves(),
                 Way::Walk(_) => true,
                 Way::Own { .. } => false,
             }
     }
 
+    /// What is the same in every block.
+    pub(super) fn setting(&self) -> Setting {
+        Setting {
+            units: self.blank.units,
+            to: self.target,
+            calibration: self.blank.calibration,
+        }
+    }
+
     /// Whether rows hold numbers that the way takes.
     pub(super) fn takes(&self, what: Taken) -> bool {
-        matches!(&self.way, Way::Template(template) if template.takes(what))
+        matches!(&self.way, Way::Rows(template) if template.takes(what))
     }
 
     /// Whether the way depends on the time of the row.
@@ -215,10 +225,7 @@ fn read_way(
         gaps.reverse();
     }
     let template = Template::new(gaps.into_iter().zip(steps).collect());
-    let template = template
-        .map_err(|fault| faults.note(&Place::ROOT, fault.code, fault.detail))
-        .ok()?;
-    Some((Way::Template(template), still()))
+    Some((Way::Rows(template), still()))
 }
 
 /// A way that goes nowhere, from no sensor.

@@ -1,16 +1,18 @@
 //! A block of rows as columns of numbers: readings in, answers in their place.
 
+use std::sync::Arc;
+
 use crate::chain;
 use crate::document::{Code, Fault, Path, Segment};
-use crate::frames::{Sensor, Time, Walker};
-use crate::physics::Impossible;
-use crate::physics::field::Measured;
-use crate::physics::reduction::Reduction;
+use crate::frames::{Time, Walker};
+use crate::physics::block::{Columns, Readings, Refused};
 use crate::physics::resolved::Resolved;
+use crate::physics::rows::{Motions, Rows};
+use crate::physics::{self, Impossible};
 use crate::transform::{Reading, transform};
 
 use super::Series;
-use super::way::{RowMotion, Taken, Template, Way};
+use super::way::{RowMotion, Taken, Way};
 
 /// Rows as columns; NaN stands for a missing number. A column that no row has is empty.
 #[derive(Debug, Default)]
@@ -69,70 +71,188 @@ impl Block {
 
     /// Solves every row that is not bad: the columns of the field become those of the answer.
     pub(super) fn solve(&mut self, series: &Series) {
-        let mut walker = match &series.way {
-            Way::Walk(walk) => Some(Walker::new(walk.clone())),
-            _ => None,
+        self.refuse_unmeasured(series);
+        for (row, _) in &self.bad {
+            self.field
+                .iter_mut()
+                .for_each(|column| column[*row] = f64::NAN);
+        }
+        let found = if series.blank.e_dot_b_zero.is_some() {
+            self.solve_each(series)
+        } else {
+            self.solve_all(series)
         };
-        let mut known_bad = self.bad.iter().map(|(row, _)| *row).peekable();
-        let mut apart = self.apart.iter().peekable();
-        let mut found = Vec::new();
-        for row in 0..self.rows {
-            let answer = if known_bad.next_if_eq(&row).is_some() {
-                MISSING
-            } else if let Some((_, answer)) = apart.next_if(|(own, _)| *own == row) {
-                *answer
-            } else {
-                let answered = self.answer(row, series, walker.as_mut());
-                answered.unwrap_or_else(|fault| {
-                    found.push((row, vec![fault]));
-                    MISSING
-                })
-            };
-            for (column, value) in self.field.iter_mut().zip(answer) {
-                column[row] = value;
-            }
+        for (row, answer) in std::mem::take(&mut self.apart) {
+            self.set(row, &answer);
         }
         if !found.is_empty() {
-            self.bad.append(&mut found);
+            self.bad
+                .extend(found.into_iter().map(|(row, fault)| (row, vec![fault])));
             self.bad.sort_by_key(|(row, _)| *row);
         }
     }
 
-    fn answer(
+    /// All rows in one go.
+    fn solve_all(&mut self, series: &Series) -> Vec<(usize, Fault)> {
+        let setting = series.setting();
+        let mut answers = Columns::default();
+        let blame = |found: Refused| found.into_iter().map(|(row, why)| (row, refuse(&why)));
+        let mut found: Vec<(usize, Fault)> = match &series.way {
+            Way::Fixed(way) => {
+                let block = physics::block::Block::new(way.clone(), setting);
+                blame(block.solve(self.readings(), &mut answers)).collect()
+            }
+            Way::Rows(template) => {
+                let rows = template.rows(setting);
+                blame(rows.solve(self.readings(), self.motions(), &mut answers)).collect()
+            }
+            Way::Own { boost, turn } => {
+                let rows = boost.rows(setting);
+                let mut found: Vec<_> =
+                    blame(rows.solve(self.readings(), self.motions(), &mut answers)).collect();
+                if self.quaternion[0].iter().any(|w| !w.is_nan()) {
+                    let mut turned = Columns::default();
+                    let rows = turn.rows(setting);
+                    found.extend(blame(rows.solve(
+                        self.readings(),
+                        self.motions(),
+                        &mut turned,
+                    )));
+                    let turns = |row: &usize| !self.quaternion[0][*row].is_nan();
+                    for row in (0..self.rows).filter(turns) {
+                        let pairs = answers.e.iter_mut().chain(&mut answers.b);
+                        for (column, turned) in pairs.zip(turned.e.iter().chain(&turned.b)) {
+                            column[row] = turned[row];
+                        }
+                    }
+                }
+                found
+            }
+            Way::Walk(_) => return self.solve_each(series),
+        };
+        found.sort_by_key(|(row, _)| *row);
+        let ([ex, ey, ez], [bx, by, bz]) = (answers.e, answers.b);
+        self.field = [ex, ey, ez, bx, by, bz];
+        found
+    }
+
+    /// One row after the other, where each is a case of its own.
+    fn solve_each(&mut self, series: &Series) -> Vec<(usize, Fault)> {
+        let mut walker = match &series.way {
+            Way::Walk(walk) => Some(Walker::new(walk.clone())),
+            _ => None,
+        };
+        let setting = series.setting();
+        let rows = match &series.way {
+            Way::Rows(template) => vec![template.rows(setting)],
+            Way::Own { boost, turn } => vec![boost.rows(setting), turn.rows(setting)],
+            Way::Fixed(_) | Way::Walk(_) => Vec::new(),
+        };
+        let mut found = Vec::new();
+        for row in 0..self.rows {
+            let answer = self
+                .way(row, series, &rows, walker.as_mut())
+                .and_then(|way| match way {
+                    Some(way) => self.transformed(row, series, &way),
+                    None => Ok(MISSING),
+                });
+            match answer {
+                Ok(answer) => self.set(row, &answer),
+                Err(fault) => {
+                    self.set(row, &MISSING);
+                    found.push((row, fault));
+                }
+            }
+        }
+        found
+    }
+
+    /// The way of one row; `None` where it is not known.
+    fn way(
         &self,
         row: usize,
         series: &Series,
+        rows: &[Rows],
         walker: Option<&mut Walker>,
-    ) -> Result<[f64; 6], Fault> {
-        let field = std::array::from_fn(|i| self.field[i][row]);
-        measured_axes(&series.sensor, &field)?;
-        match &series.way {
-            Way::Fixed(way) => apply(series, way, field),
-            Way::Template(template) => by_template(series, template, &self.motion(row), field),
-            Way::Own { boost, turn } => {
-                let motion = self.motion(row);
-                let moves = motion.velocity.iter().any(|x| !x.is_nan());
-                by_template(series, if moves { boost } else { turn }, &motion, field)
+    ) -> Result<Option<Arc<Resolved>>, Fault> {
+        if let Way::Fixed(way) = &series.way {
+            return Ok(Some(way.clone()));
+        }
+        if let Some(walker) = walker {
+            let Some(time) = self.time[row] else {
+                return Ok(None);
+            };
+            let passage = walker.at(Some(time)).map_err(|fault| {
+                let time = Path(vec![Segment::Field("time".into())]);
+                Fault::at(&time, fault.code, fault.detail)
+            })?;
+            return Ok(Some(passage.way));
+        }
+        let turns = rows.len() > 1 && !self.quaternion[0][row].is_nan();
+        let way = rows[usize::from(turns)].way(self.motions(), row);
+        way.map(|way| way.map(Arc::new)).map_err(|why| refuse(&why))
+    }
+
+    /// One row restated, just as a question that stands alone.
+    fn transformed(&self, row: usize, series: &Series, way: &Resolved) -> Result<[f64; 6], Fault> {
+        let [ex, ey, ez, bx, by, bz] = self.field.each_ref().map(|column| {
+            let value = column[row];
+            (!value.is_nan()).then_some(value)
+        });
+        let reading = Reading {
+            e: [ex, ey, ez],
+            b: [bx, by, bz],
+            ..series.blank
+        };
+        let answer = transform(way, &reading, series.target).map_err(|why| refuse(&why))?;
+        Ok(numbers(answer.e, answer.b))
+    }
+
+    /// A sensor has no value on an axis that it does not measure.
+    fn refuse_unmeasured(&mut self, series: &Series) {
+        let channels = [("e", series.sensor.e), ("b", series.sensor.b)];
+        let mut found = Vec::new();
+        for (i, column) in self.field.iter().enumerate() {
+            let (name, channel) = channels[i / 3];
+            if channel.is_none_or(|channel| channel.axes[i % 3]) {
+                continue;
             }
-            Way::Walk(_) => {
-                let (Some(walker), Some(time)) = (walker, self.time[row]) else {
-                    return Ok(MISSING);
-                };
-                let passage = walker.at(Some(time)).map_err(|fault| {
-                    let time = Path(vec![Segment::Field("time".into())]);
-                    Fault::at(&time, fault.code, fault.detail)
-                })?;
-                apply(series, &passage.way, field)
+            for (row, value) in column.iter().enumerate().filter(|(_, x)| !x.is_nan()) {
+                let place = Path(vec![Segment::Field(name.into()), Segment::Index(i % 3)]);
+                let detail = format!(
+                    "the sensor does not measure {}, and the row says {value}; leave it missing",
+                    ["x", "y", "z"][i % 3]
+                );
+                found.push((row, Fault::at(&place, Code::AxisNotMeasured, detail)));
+            }
+        }
+        for (row, fault) in found {
+            match self.bad.binary_search_by_key(&row, |(own, _)| *own) {
+                Ok(place) => self.bad[place].1.push(fault),
+                Err(place) => self.bad.insert(place, (row, vec![fault])),
             }
         }
     }
 
-    fn motion(&self, row: usize) -> RowMotion {
-        let at = |column: &Vec<f64>| column.get(row).copied().unwrap_or(f64::NAN);
-        RowMotion {
-            velocity: self.velocity.each_ref().map(at),
-            quaternion: self.quaternion.each_ref().map(at),
-            angle: at(&self.angle),
+    fn set(&mut self, row: usize, answer: &[f64; 6]) {
+        for (column, value) in self.field.iter_mut().zip(answer) {
+            column[row] = *value;
+        }
+    }
+
+    fn readings(&self) -> Readings<'_> {
+        let [ex, ey, ez, bx, by, bz] = self.field.each_ref().map(|column| &column[..]);
+        Readings {
+            e: [ex, ey, ez],
+            b: [bx, by, bz],
+        }
+    }
+
+    fn motions(&self) -> Motions<'_> {
+        Motions {
+            velocity: self.velocity.each_ref().map(|column| &column[..]),
+            quaternion: self.quaternion.each_ref().map(|column| &column[..]),
+            angle: &self.angle,
         }
     }
 }
@@ -159,71 +279,6 @@ impl Takes {
     }
 }
 
-fn by_template(
-    series: &Series,
-    template: &Template,
-    motion: &RowMotion,
-    field: [f64; 6],
-) -> Result<[f64; 6], Fault> {
-    match template.resolve(motion)? {
-        Some(way) => apply(series, &way, field),
-        None => Ok(MISSING),
-    }
-}
-
-/// A sensor has no value on an axis that it does not measure.
-fn measured_axes(sensor: &Sensor, field: &[f64; 6]) -> Result<(), Fault> {
-    for (i, value) in field.iter().enumerate().filter(|(_, x)| !x.is_nan()) {
-        let (name, channel) = [("e", sensor.e), ("b", sensor.b)][i / 3];
-        if channel.is_some_and(|channel| !channel.axes[i % 3]) {
-            let place = Path(vec![Segment::Field(name.into()), Segment::Index(i % 3)]);
-            let detail = format!(
-                "the sensor does not measure {}, and the row says {value}; leave it missing",
-                ["x", "y", "z"][i % 3]
-            );
-            return Err(Fault::at(&place, Code::AxisNotMeasured, detail));
-        }
-    }
-    Ok(())
-}
-
-/// Restates one reading, just as a question that stands alone.
-fn apply(series: &Series, way: &Resolved, field: [f64; 6]) -> Result<[f64; 6], Fault> {
-    let missing = field.iter().any(|x| x.is_nan());
-    let blank = &series.blank;
-    if missing {
-        let reading = reading(blank, field);
-        let answer = transform(way, &reading, series.target).map_err(|error| refuse(&error))?;
-        return Ok(numbers(answer.e, answer.b));
-    }
-    let [e, b] = halves(field);
-    let measured = Measured {
-        e,
-        b,
-        units: blank.units,
-        reduction: Reduction {
-            e: blank.calibration[0],
-            b: blank.calibration[1],
-            filled: None,
-        },
-    };
-    let applied = way
-        .apply(&measured, series.target)
-        .map_err(|error| refuse(&error))?;
-    let ([ex, ey, ez], [bx, by, bz]) = (applied.e, applied.b);
-    Ok([ex, ey, ez, bx, by, bz])
-}
-
-fn halves([ex, ey, ez, bx, by, bz]: [f64; 6]) -> [[f64; 3]; 2] {
-    [[ex, ey, ez], [bx, by, bz]]
-}
-
-/// A reading of which NaN is missing.
-pub(super) fn reading(blank: &Reading, field: [f64; 6]) -> Reading {
-    let [e, b] = halves(field).map(|v| v.map(|x| (!x.is_nan()).then_some(x)));
-    Reading { e, b, ..*blank }
-}
-
 /// The numbers of an answer, NaN where it has none.
 pub(super) fn numbers(e: [Option<f64>; 3], b: [Option<f64>; 3]) -> [f64; 6] {
     let all = [e, b].map(|v| v.map(|x| x.unwrap_or(f64::NAN)));
@@ -232,13 +287,16 @@ pub(super) fn numbers(e: [Option<f64>; 3], b: [Option<f64>; 3]) -> [f64; 6] {
 }
 
 /// What cannot be answered, blamed on the place that mends it.
-pub(super) fn refuse(error: &Impossible) -> Fault {
-    let code = chain::code(error);
-    let name = match code {
-        Code::FieldInPlane => "b",
-        // The unit is in the query; no member of the row would mend it.
-        _ => return Fault::whole(code, error.to_string()),
+pub(super) fn refuse(why: &Impossible) -> Fault {
+    let place: &[&str] = match why {
+        Impossible::FieldInPlane { .. } => &["b"],
+        Impossible::FasterThanLight { .. } => &["velocity"],
+        Impossible::NotARotation { .. } | Impossible::NoDirection { .. } => {
+            &["rotation", "quaternion"]
+        }
+        // No member of the row alone would mend it.
+        _ => return Fault::whole(chain::code(why), why.to_string()),
     };
-    let place = Path(vec![Segment::Field(name.into())]);
-    Fault::at(&place, code, error.to_string())
+    let place = place.iter().map(|name| Segment::Field((*name).into()));
+    Fault::at(&Path(place.collect()), chain::code(why), why.to_string())
 }

@@ -2,13 +2,14 @@
 
 use std::sync::Arc;
 
-use crate::chain;
-use crate::document::{Fault, Members, Node, Path};
+use crate::document::{Members, Node};
 use crate::frames::Walk;
+use crate::physics::block::Setting;
 use crate::physics::boost::Motion;
 use crate::physics::lorentz::{Change, Step};
 use crate::physics::resolved::Resolved;
 use crate::physics::rotation::Turn;
+use crate::physics::rows::{RowChange, RowStep, Rows};
 use crate::units::{Quantity, Units};
 
 /// How rows get to the target frame.
@@ -17,7 +18,7 @@ pub(super) enum Way {
     /// All in the same way.
     Fixed(Arc<Resolved>),
     /// By steps of which some take their numbers from the row.
-    Template(Template),
+    Rows(Template),
     /// By named frames that move, at the time of the row.
     Walk(Arc<Walk>),
     /// Each row brings its own: most often one of these two.
@@ -40,6 +41,12 @@ pub(super) enum Taken {
     Angle,
 }
 
+/// Steps with gaps that each row fills.
+#[derive(Debug)]
+pub(super) struct Template {
+    steps: Vec<RowStep>,
+}
+
 /// The motion that a row brings; NaN where it is missing.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub(super) struct RowMotion {
@@ -57,169 +64,68 @@ impl RowMotion {
     };
 }
 
-/// Steps with gaps that each row fills.
-#[derive(Debug)]
-pub(super) struct Template {
-    /// Composed one after the other as a single reading would compose the steps, bit for bit.
-    pieces: Vec<Piece>,
-}
-
-#[derive(Debug)]
-enum Piece {
-    Fixed(Resolved),
-    Row(Taken, Step),
-}
-
-impl Taken {
-    /// Where rows hold it, in NDJSON.
-    pub(super) fn path(self) -> Path {
-        match self {
-            Taken::Velocity => Path::default().field("velocity"),
-            Taken::Quaternion => Path::default().field("rotation").field("quaternion"),
-            Taken::Angle => Path::default().field("angle"),
-        }
-    }
-}
-
 impl Template {
     /// Steps, each with what it takes from the row.
-    ///
-    /// # Errors
-    /// What is impossible in the fixed steps.
-    pub(super) fn new(steps: Vec<(Option<Taken>, Step)>) -> Result<Template, Fault> {
-        let resolved = |steps| Resolved::new(steps).map_err(|error| refuse(&error));
-        let mut pieces = Vec::new();
-        let mut head = Vec::new();
-        for (taken, step) in steps {
-            match taken {
-                Some(taken) => {
-                    if !head.is_empty() {
-                        pieces.push(Piece::Fixed(resolved(std::mem::take(&mut head))?));
-                    }
-                    pieces.push(Piece::Row(taken, step));
+    pub(super) fn new(steps: Vec<(Option<Taken>, Step)>) -> Template {
+        let steps = steps.into_iter().map(|(taken, step)| {
+            let inverse = step.inverse;
+            let change = match (taken, step.change) {
+                (Some(_), Change::Boost(Motion::Velocity { beta, .. })) => {
+                    RowChange::Velocity { beta }
                 }
-                // After the first gap each step stays apart: composed before, they would round
-                // otherwise than in a single reading.
-                None if pieces.is_empty() => head.push(step),
-                None => pieces.push(Piece::Fixed(resolved(vec![step])?)),
-            }
+                (Some(_), Change::Rotate(Turn::Quaternion(_))) => RowChange::Quaternion,
+                (Some(_), Change::Rotate(Turn::AxisAngle { axis, radians, .. })) => {
+                    RowChange::Angle { axis, radians }
+                }
+                (_, change) => RowChange::Fixed(change),
+            };
+            RowStep { change, inverse }
+        });
+        Template {
+            steps: steps.collect(),
         }
-        Ok(Template { pieces })
     }
 
     /// One boost by the velocity of the row.
     pub(super) fn boost(units: &Units) -> Template {
-        Template::of(
-            Taken::Velocity,
-            Change::Boost(Motion::Velocity {
-                value: [0.0; 3],
-                beta: Motion::to_beta(units.si(Quantity::Velocity)),
-            }),
-        )
+        let beta = Motion::to_beta(units.si(Quantity::Velocity));
+        Template::of(RowChange::Velocity { beta })
     }
 
     /// One turn by the attitude of the row.
     pub(super) fn turn() -> Template {
-        Template::of(
-            Taken::Quaternion,
-            Change::Rotate(Turn::Quaternion([1.0, 0.0, 0.0, 0.0])),
-        )
+        Template::of(RowChange::Quaternion)
     }
 
-    fn of(taken: Taken, change: Change) -> Template {
-        let step = Step {
-            uncertainty: None,
-            change,
-            inverse: false,
-        };
+    fn of(change: RowChange) -> Template {
+        let inverse = false;
         Template {
-            pieces: vec![Piece::Row(taken, step)],
+            steps: vec![RowStep { change, inverse }],
         }
     }
 
     /// Whether some step takes this from the row.
     pub(super) fn takes(&self, what: Taken) -> bool {
-        let mut pieces = self.pieces.iter();
-        pieces.any(|piece| matches!(piece, Piece::Row(taken, _) if *taken == what))
+        self.steps.iter().any(|step| match step.change {
+            RowChange::Fixed(_) => false,
+            RowChange::Velocity { .. } => what == Taken::Velocity,
+            RowChange::Quaternion => what == Taken::Quaternion,
+            RowChange::Angle { .. } => what == Taken::Angle,
+        })
     }
 
     /// Whether any step moves.
     pub(super) fn moves(&self) -> bool {
-        self.pieces.iter().any(|piece| match piece {
-            Piece::Fixed(part) => part.net().boost.is_some(),
-            Piece::Row(_, step) => step.change.moves(),
+        self.steps.iter().any(|step| match &step.change {
+            RowChange::Fixed(change) => change.moves(),
+            change => matches!(change, RowChange::Velocity { .. }),
         })
     }
 
-    /// The way of a row; `None` when it lacks a number.
-    ///
-    /// # Errors
-    /// A motion that no frame can have.
-    pub(super) fn resolve(&self, row: &RowMotion) -> Result<Option<Resolved>, Fault> {
-        let mut own = Vec::with_capacity(self.pieces.len());
-        for piece in &self.pieces {
-            if let Piece::Row(taken, step) = piece {
-                let Some(step) = filled(*taken, step, row)? else {
-                    return Ok(None);
-                };
-                own.push(Resolved::new(vec![step]).map_err(|error| refuse(&error))?);
-            }
-        }
-        if self.pieces.len() == 1 {
-            return Ok(own.pop());
-        }
-        let mut filled = own.iter();
-        let parts: Vec<&Resolved> = self
-            .pieces
-            .iter()
-            .filter_map(|piece| match piece {
-                Piece::Fixed(part) => Some(part),
-                Piece::Row(..) => filled.next(),
-            })
-            .collect();
-        let way = Resolved::join(parts).map_err(|error| refuse(&error))?;
-        Ok(Some(way))
+    /// Ready for blocks of rows.
+    pub(super) fn rows(&self, setting: Setting) -> Rows {
+        Rows::new(self.steps.clone(), setting)
     }
-}
-
-/// The step with the numbers of the row.
-fn filled(taken: Taken, step: &Step, row: &RowMotion) -> Result<Option<Step>, Fault> {
-    let mut step = step.clone();
-    let checked = match (&mut step.change, taken) {
-        (Change::Boost(motion), Taken::Velocity) => {
-            if row.velocity.iter().any(|x| x.is_nan()) {
-                return Ok(None);
-            }
-            if let Motion::Velocity { value, .. } = motion {
-                *value = row.velocity;
-            }
-            motion.check()
-        }
-        (Change::Rotate(turn), _) => {
-            match turn {
-                Turn::Quaternion(q) if row.quaternion.iter().all(|x| !x.is_nan()) => {
-                    *q = row.quaternion;
-                }
-                Turn::AxisAngle { angle, .. } if !row.angle.is_nan() => *angle = row.angle,
-                _ => return Ok(None),
-            }
-            turn.check().map(|_| ())
-        }
-        _ => Ok(()),
-    };
-    match checked {
-        Ok(()) => Ok(Some(step)),
-        Err(error) => Err(Fault::at(
-            &taken.path(),
-            chain::code(&error),
-            error.to_string(),
-        )),
-    }
-}
-
-/// What is impossible, as a fault of the way as a whole.
-pub(super) fn refuse(error: &crate::physics::Impossible) -> Fault {
-    Fault::whole(chain::code(error), error.to_string())
 }
 
 /// Finds every `"row"` in a way as written, puts a number that any step can have in its place, and
