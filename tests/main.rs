@@ -20,6 +20,7 @@ mod problems;
 mod schema;
 mod series;
 mod start;
+mod stream;
 mod support;
 mod sweep;
 mod times;

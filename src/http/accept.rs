@@ -9,6 +9,8 @@ use crate::document::Code;
 pub const JSON: &str = "application/json";
 /// Columns as text (RFC 4180).
 pub const CSV: &str = "text/csv";
+/// Rows, a JSON object a line.
+pub const NDJSON: &str = "application/x-ndjson";
 /// A picture.
 pub const SVG: &str = "image/svg+xml";
 /// A page for people.

@@ -16,7 +16,7 @@ use prometheus_client::{
     registry::{Registry, Unit},
 };
 
-use crate::document::Code;
+use crate::{document::Code, series::Counts};
 
 /// Upper bounds of the duration buckets, s: from a single reading to the request timeout.
 const BOUNDS: [f64; 14] = [
@@ -28,6 +28,7 @@ pub struct Metrics {
     registry: Registry,
     durations: Family<Answered, Histogram, fn() -> Histogram>,
     problems: Family<Reported, Counter>,
+    rows: Family<Row, Counter>,
     in_flight: Gauge,
     /// Connections held open.
     pub connections: Gauge,
@@ -56,6 +57,12 @@ impl EncodeLabelValue for Code {
     fn encode(&self, encoder: &mut LabelValueEncoder) -> Result<(), fmt::Error> {
         self.name().encode(encoder)
     }
+}
+
+/// How a row of a series was answered.
+#[derive(Clone, Debug, PartialEq, Eq, Hash, EncodeLabelSet)]
+struct Row {
+    outcome: &'static str,
 }
 
 /// The template of a route, such as `/problems/{code}`, never the path itself.
@@ -122,6 +129,12 @@ impl Metrics {
             "Answers that were a problem, by its code: every limit has one",
             problems.clone(),
         );
+        let rows = Family::default();
+        registry.register(
+            "rows",
+            "Rows of series that ended, by how they were answered",
+            rows.clone(),
+        );
         let connections = Gauge::default();
         registry.register("connections", "Connections held open", connections.clone());
         let connections_shed = Counter::default();
@@ -154,6 +167,7 @@ impl Metrics {
             registry,
             durations,
             problems,
+            rows,
             in_flight,
             connections,
             connections_shed,
@@ -170,6 +184,13 @@ impl Metrics {
     /// Counts a request out.
     pub fn leave(&self) {
         self.in_flight.dec();
+    }
+
+    /// Counts the rows of a series.
+    pub fn rows(&self, counts: Counts) {
+        for (outcome, rows) in [("answered", counts.answered), ("refused", counts.refused)] {
+            self.rows.get_or_create(&Row { outcome }).inc_by(rows);
+        }
     }
 
     /// Records how long an answer took.

@@ -29,6 +29,9 @@ const MAX_URI: usize = 8 * 1024;
 /// Largest header section, bytes of names and values.
 const MAX_HEADERS: usize = 16 * 1024;
 
+/// The path whose bodies never need end, and which watches over their pauses itself.
+const STREAM: &str = "/v1/series";
+
 const REQUEST_ID: HeaderName = HeaderName::from_static("x-request-id");
 const TRACEPARENT: HeaderName = HeaderName::from_static("traceparent");
 
@@ -76,6 +79,7 @@ where
             inner: refusal.is_none().then(|| self.inner.call(request)),
             refusal,
             timeout: None,
+            streams: record.route.as_str() == STREAM,
             record,
         }
     }
@@ -90,6 +94,8 @@ pin_project! {
         refusal: Option<Response>,
         // Set only when the handler has to wait; most answers are ready at once.
         timeout: Option<Pin<Box<tokio::time::Sleep>>>,
+        // Whether it may take as long as it likes.
+        streams: bool,
         record: Record,
     }
 }
@@ -106,6 +112,7 @@ impl<F: Future<Output = Result<Response, Infallible>>> Future for Answering<F> {
         // A panic leaves nothing half-changed that others could see: handlers share only counters.
         let response = match catch_unwind(AssertUnwindSafe(|| inner.poll(cx))) {
             Ok(Poll::Ready(Ok(response))) => response,
+            Ok(Poll::Pending) if *this.streams => return Poll::Pending,
             Ok(Poll::Pending) => {
                 let limit = this.record.state.config.request_timeout;
                 let timeout = this

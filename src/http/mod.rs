@@ -33,6 +33,7 @@ pub mod router;
 pub mod schema;
 pub mod serve;
 mod state;
+mod stream;
 
 pub use router::app;
 pub use state::AppState;

@@ -24,6 +24,8 @@ pub enum Source {
     Body,
     /// In the URL: faults have a `parameter`.
     Query,
+    /// As a table of rows: faults have a `column`.
+    Table,
 }
 
 /// What went wrong with a request, before it has its request id.
@@ -195,16 +197,17 @@ pub struct ProblemPart {
 impl ProblemPart {
     fn new(fault: Fault, source: Source) -> ProblemPart {
         let path = fault.path;
-        let (pointer, parameter) = match source {
-            Source::Body => (Some(path.unwrap_or_default().pointer()), None),
-            Source::Query => (None, path.as_ref().map(Path::parameter)),
+        let (pointer, parameter, column) = match source {
+            Source::Body => (Some(path.unwrap_or_default().pointer()), None, None),
+            Source::Query => (None, path.as_ref().map(Path::parameter), None),
+            Source::Table => (None, None, path.as_ref().map(Path::parameter)),
         };
         ProblemPart {
             code: fault.code.name(),
             detail: fault.detail,
             pointer,
             parameter,
-            column: None,
+            column,
         }
     }
 }

@@ -50,6 +50,7 @@ fn guarded() -> OpenApiRouter<AppState> {
             handlers::transform::transform_by_url
         ))
         .routes(routes!(handlers::sweep::sweep))
+        .routes(routes!(handlers::series::series))
         .routes(routes!(handlers::frames::list_frames))
         .routes(routes!(handlers::frames::show_frame))
         .routes(routes!(handlers::frames::transformation))

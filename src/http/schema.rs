@@ -4,7 +4,7 @@
 pub mod examples;
 mod query;
 
-pub use query::{Query, RangeQuery, WayQuery};
+pub use query::{Query, RangeQuery, ReadingQuery, SeriesQuery, WayQuery};
 
 use serde::{Deserialize, Serialize};
 use utoipa::ToSchema;

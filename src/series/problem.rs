@@ -1,6 +1,6 @@
 //! What is wrong with one row, as it stands in the answer.
 
-use serde_json::{Value, json};
+use serde::Serialize;
 
 use crate::document::{Fault, Path, Segment};
 
@@ -10,23 +10,40 @@ fn first(faults: &[Fault]) -> &Fault {
     misunderstood.unwrap_or(&faults[0])
 }
 
-/// The problem as JSON, with the members of a problem document (RFC 9457) that a row can have.
-pub(super) fn as_json(faults: &[Fault]) -> Value {
+/// A problem document (RFC 9457), as far as a row has one.
+#[derive(Serialize)]
+struct Problem<'f> {
+    r#type: String,
+    title: &'f str,
+    status: u16,
+    detail: &'f str,
+    errors: Vec<Part<'f>>,
+}
+
+#[derive(Serialize)]
+struct Part<'f> {
+    code: &'f str,
+    detail: &'f str,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pointer: Option<String>,
+}
+
+/// The problem as JSON.
+pub(super) fn as_json(faults: &[Fault]) -> String {
     let first = first(faults);
-    let errors = faults.iter().map(|fault| {
-        let mut error = json!({"code": fault.code.name(), "detail": fault.detail});
-        if let Some(path) = &fault.path {
-            error["pointer"] = path.pointer().into();
-        }
-        error
+    let errors = faults.iter().map(|fault| Part {
+        code: fault.code.name(),
+        detail: &fault.detail,
+        pointer: fault.path.as_ref().map(Path::pointer),
     });
-    json!({
-        "type": format!("/problems/{}", first.code),
-        "title": first.code.title(),
-        "status": first.code.status(),
-        "detail": first.detail,
-        "errors": errors.collect::<Vec<_>>(),
-    })
+    let problem = Problem {
+        r#type: format!("/problems/{}", first.code),
+        title: first.code.title(),
+        status: first.code.status(),
+        detail: &first.detail,
+        errors: errors.collect(),
+    };
+    serde_json::to_string(&problem).expect("texts and numbers have a JSON form")
 }
 
 /// The problem as one line of text: each fault by its code, its column and what is wrong.

@@ -1,5 +1,7 @@
 """Every command of the README is run as it stands, and answers what the README shows below it."""
 
+import csv
+import io
 import json
 import re
 import subprocess
@@ -11,8 +13,11 @@ from service import ROOT
 ADDRESS = "http://127.0.0.1:7410"
 README = (ROOT / "README.md").read_text()
 
-# A curl command in its fence, and the answer in the next one.
+# A curl command in its fence, and the answer in the next one: JSON, or rows that are shown as they are.
 EXAMPLES = re.findall(r"```sh\n(curl [^`]*)```\n```json\n([^`]*)```", README)
+ROWS = re.findall(r"```sh\n(curl [^`]*)```\n```(?:ndjson|csv)\n([^`]*)```", README)
+# One whose answer is too long to be shown.
+FLIGHT = re.search(r"```sh\n(curl [^`]*readings\.csv[^`]*)```\n\n", README).group(1)
 
 
 def forget_ids(answer):
@@ -21,7 +26,28 @@ def forget_ids(answer):
 
 
 def test_every_curl_command_of_the_readme_shows_its_answer():
-    assert len(EXAMPLES) == README.count("```sh\ncurl ") >= 5
+    assert len(EXAMPLES) + len(ROWS) + 1 == README.count("```sh\ncurl ")
+    assert len(EXAMPLES) >= 5 and len(ROWS) >= 2
+
+
+@pytest.mark.parametrize("command, shown", ROWS, ids=["ndjson", "csv"])
+def test_rows_are_answered_as_shown(service, command, shown):
+    done = subprocess.run(command.replace(ADDRESS, service.url), shell=True, check=True,
+                          capture_output=True, text=True, timeout=30)
+    assert done.stdout == shown
+
+
+def test_the_flight_is_restated(demo):
+    done = subprocess.run(FLIGHT.replace(ADDRESS, demo.url), shell=True, check=True, cwd=ROOT,
+                          capture_output=True, text=True, timeout=30)
+    rows = list(csv.DictReader(io.StringIO(done.stdout)))
+    with open(ROOT / "deploy" / "demo" / "readings.csv") as file:
+        assert len(rows) == sum(1 for line in file) - 1
+    # The field that make.py put on the ground, to the rounding of the telemetry.
+    for row in rows:
+        assert not row["problem"]
+        assert float(row["ex"]) == pytest.approx(12.0, abs=0.01)
+        assert float(row["bz"]) == pytest.approx(-53000.0, abs=2)
 
 
 @pytest.mark.parametrize("command, shown", EXAMPLES, ids=[f"example {i + 1}" for i in range(len(EXAMPLES))])

@@ -8,6 +8,7 @@ pub(super) mod openapi;
 pub(super) mod page;
 pub(super) mod problems;
 pub(super) mod reference;
+pub(super) mod series;
 pub(super) mod sweep;
 pub(super) mod transform;
 pub(super) mod units;

@@ -17,7 +17,7 @@ use crate::{
         body::json_body,
         cache::{IMMUTABLE, cached, etag},
         problem::{CommonProblems, Problem, ProblemDocument, Source},
-        schema::{self, Query, WayQuery},
+        schema::{self, Query, ReadingQuery, WayQuery},
     },
     physics::Impossible,
     picture,
@@ -83,7 +83,7 @@ pub(crate) async fn transform(
 /// vectors are comma lists, `steps` is JSON text, and a literal `+` is written `%2B`.
 #[utoipa::path(
     get, path = "/v1/transform", tag = "fields", operation_id = "transform_by_url",
-    params(Query, WayQuery),
+    params(ReadingQuery, Query, WayQuery),
     responses(
         (status = 200, description = "The same field in the target frame, as JSON or as a picture",
             content(

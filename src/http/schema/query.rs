@@ -2,18 +2,25 @@
 
 use utoipa::IntoParams;
 
-/// The question as parameters, but for its way: each is a path into the JSON question, joined by
-/// dots.
+/// The reading of a question by URL.
 #[derive(IntoParams)]
 #[into_params(parameter_in = Query)]
 #[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
-pub struct Query {
+pub struct ReadingQuery {
     /// Electric field: three numbers joined by commas; an empty one is missing.
     #[param(required = false, example = "0,1.2,0")]
     e: String,
     /// Magnetic flux density: three numbers joined by commas; an empty one is missing.
     #[param(required = false, example = "0,0,45000")]
     b: String,
+}
+
+/// The question as parameters, but for its reading and most of its way: each is a path into the
+/// JSON question, joined by dots.
+#[derive(IntoParams)]
+#[into_params(parameter_in = Query)]
+#[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
+pub struct Query {
     /// Unit of E; likewise `units.angle`, `units.angular_velocity`, `units.energy`, `units.length`.
     #[param(required = false, rename = "units.e", example = "mV/m")]
     units_e: String,
@@ -75,6 +82,46 @@ pub struct WayQuery {
     /// Convention of the tensor: mostly_minus or mostly_plus.
     #[param(required = false)]
     signature: String,
+}
+
+/// The way of a series, which may take a row's own motion, and how rows are treated.
+#[derive(IntoParams)]
+#[into_params(parameter_in = Query)]
+#[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
+pub struct SeriesQuery {
+    /// The way as one boost: three numbers joined by commas, or `row` for the velocity of each row.
+    #[param(required = false, example = "row")]
+    velocity: String,
+    /// The way as one rotation: `row` for the quaternion of each row; likewise `rotation.inverse`.
+    #[param(required = false, rename = "rotation.quaternion")]
+    rotation_quaternion: String,
+    /// The way as one rotation: its axis.
+    #[param(required = false, rename = "rotation.axis")]
+    rotation_axis: String,
+    /// The angle of that rotation, or `row` for the angle of each row.
+    #[param(required = false, rename = "rotation.angle")]
+    rotation_angle: String,
+    /// The way as one boost: its direction; likewise `boost.beta`, `boost.rapidity` and so on.
+    #[param(required = false, rename = "boost.direction")]
+    boost_direction: String,
+    /// The Lorentz factor of that boost.
+    #[param(required = false, rename = "boost.gamma")]
+    boost_gamma: String,
+    /// The way by names of the catalogue: the frame of the rows. Where it changes with time, each row has its `time`.
+    #[param(required = false)]
+    from: String,
+    /// The target frame, with `from`.
+    #[param(required = false)]
+    to: String,
+    /// Other columns that go along as text when the answer is in another format, joined by commas.
+    #[param(required = false)]
+    keep: String,
+    /// What a bad row does: `continue` (it is answered with a problem and the next one is read) or `stop`.
+    #[param(required = false)]
+    on_error: String,
+    /// Whether NDJSON ends with a line of counts: `on` or `off`.
+    #[param(required = false)]
+    end: String,
 }
 
 /// The range of a sweep, and the step that leaves out the quantity that runs.

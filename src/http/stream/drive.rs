@@ -1,0 +1,305 @@
+//! Drives a series: reads while there is room, has blocks answered, sends them in order.
+
+use std::{collections::VecDeque, future::poll_fn, pin::Pin, task::Poll, time::Duration};
+
+use axum::{
+    body::{Body, HttpBody},
+    http::{HeaderMap, HeaderValue},
+};
+use bytes::Bytes;
+use http_body_util::BodyExt;
+use tokio::{
+    sync::oneshot,
+    task::{JoinError, JoinHandle},
+    time::timeout,
+};
+
+use super::{TRAILERS, unread::Unread};
+use crate::{
+    document::{Code, Fault},
+    http::{
+        AppState,
+        problem::{Problem, Source},
+    },
+    series::{BLOCK, Done, Intake, Job, Outlet, Refusal},
+};
+
+/// A job of no more than this is answered at once, where it is: a hand-over to another thread
+/// would cost as much as the few rows themselves.
+const SMALL: usize = 4 * 1024;
+/// How long what still arrives is read and thrown away once the answer is complete, so that the
+/// client comes to read it before the connection is closed.
+const LINGER: Duration = Duration::from_secs(2);
+
+/// One series under way.
+pub(super) struct Drive {
+    running: Running,
+    intake: Intake,
+    outlet: Outlet,
+    body: Body,
+    /// Whether the body has ended.
+    all_arrived: bool,
+    unread: Unread,
+    /// Told once, how the answer begins.
+    head: Option<oneshot::Sender<Result<(), Problem>>>,
+    /// Blocks being answered, in order.
+    working: VecDeque<JoinHandle<Done>>,
+}
+
+/// Counts the series among the requests that run, for as long as it does.
+struct Running(AppState);
+
+/// Why a series ends before its end.
+enum Failure {
+    /// The rows cannot be understood.
+    Refused(Refusal),
+    /// Nothing was sent, or nothing read, for too long.
+    Idle,
+    /// The body broke off.
+    Broken,
+    /// Nobody reads the answer any more.
+    Gone,
+}
+
+/// What happened next.
+enum Event {
+    Arrived(Option<Result<Bytes, axum::Error>>),
+    Answered(Done),
+    Read,
+    Gone,
+}
+
+impl Drive {
+    pub(super) fn new(
+        state: AppState,
+        intake: Intake,
+        outlet: Outlet,
+        body: Body,
+        unread: Unread,
+        head: oneshot::Sender<Result<(), Problem>>,
+    ) -> Drive {
+        state.metrics.enter();
+        Drive {
+            running: Running(state),
+            intake,
+            outlet,
+            body,
+            all_arrived: false,
+            unread,
+            head: Some(head),
+            working: VecDeque::new(),
+        }
+    }
+
+    /// Drives the series to its end.
+    pub(super) async fn run(mut self, trailers: bool) {
+        let finished = self.rows().await;
+        let counts = self.outlet.counts();
+        self.running.0.metrics.rows(counts);
+        match finished {
+            Ok(()) => {
+                self.begin(Ok(()));
+                self.send(self.outlet.end());
+                let numbers = [counts.read, counts.answered, counts.refused];
+                let pairs = TRAILERS.into_iter().zip(numbers).filter(|_| trailers);
+                let trailers: HeaderMap = pairs
+                    .map(|(name, number)| {
+                        let name = axum::http::HeaderName::from_static(name);
+                        (name, HeaderValue::from(number))
+                    })
+                    .collect();
+                self.unread.end(trailers);
+            }
+            Err(Failure::Gone) => return,
+            Err(failure) => {
+                let refusal = failure.refusal(self.running.0.config.idle_timeout);
+                if self.head.is_some() {
+                    let problem = Problem::from_faults(refusal.faults, Source::Table);
+                    self.begin(Err(problem));
+                } else {
+                    self.send(self.outlet.failed(&refusal));
+                }
+                drop(self.unread);
+            }
+        }
+        let rest = async { while let Some(Ok(_)) = self.body.frame().await {} };
+        if !self.all_arrived {
+            let _ = timeout(LINGER, rest).await;
+        }
+    }
+
+    /// Answers all rows that come.
+    async fn rows(&mut self) -> Result<(), Failure> {
+        let state = self.running.0.clone();
+        let (depth, idle) = (state.pool.threads() + 1, state.config.idle_timeout);
+        let mut ended = false;
+        loop {
+            let mut room = self.working.len() < depth && !self.unread.is_full();
+            if room && !ended {
+                ended = self.read_what_is_there().await?;
+                let job = if ended {
+                    self.intake.last()
+                } else if self.working.is_empty() {
+                    // Nothing else to do, and nothing more at hand: what there is.
+                    self.intake.job(1)
+                } else {
+                    self.intake.job(BLOCK)
+                };
+                if self.take_on(job, &state).await? {
+                    continue;
+                }
+                room = !ended;
+            }
+            if self.outlet.stopped() || (ended && self.working.is_empty()) {
+                return Ok(());
+            }
+            match timeout(idle, self.next(room && !ended)).await {
+                Err(_) => return Err(Failure::Idle),
+                Ok(Event::Gone) => return Err(Failure::Gone),
+                Ok(Event::Read) => {}
+                Ok(Event::Answered(done)) => self.accept(done)?,
+                Ok(Event::Arrived(Some(bytes))) => {
+                    self.intake.push(&bytes.map_err(|_| Failure::Broken)?);
+                }
+                Ok(Event::Arrived(None)) => self.all_arrived = true,
+            }
+        }
+    }
+
+    /// Takes what has arrived already, up to a block; whether it is the end.
+    async fn read_what_is_there(&mut self) -> Result<bool, Failure> {
+        while !self.all_arrived && self.intake.waiting() < BLOCK {
+            let body = &mut self.body;
+            let at_once = poll_fn(|cx| Poll::Ready(Pin::new(&mut *body).poll_frame(cx))).await;
+            match at_once {
+                Poll::Pending => return Ok(false),
+                Poll::Ready(None) => self.all_arrived = true,
+                Poll::Ready(Some(Err(_))) => return Err(Failure::Broken),
+                Poll::Ready(Some(Ok(frame))) => {
+                    self.intake.push(&frame.into_data().unwrap_or_default());
+                }
+            }
+        }
+        Ok(self.all_arrived)
+    }
+
+    /// Hands a job over, or does a small one; whether there was any. What is wrong with the rows
+    /// counts only after those before are answered.
+    async fn take_on(
+        &mut self,
+        job: Result<Option<Job>, Refusal>,
+        state: &AppState,
+    ) -> Result<bool, Failure> {
+        match job {
+            Ok(None) => Ok(false),
+            Ok(Some(job)) if job.bytes() <= SMALL && self.working.is_empty() => {
+                self.accept(job.run())?;
+                Ok(!self.outlet.stopped())
+            }
+            Ok(Some(job)) => {
+                let state = state.clone();
+                let work = async move { state.pool.run(|| job.run()).await };
+                self.working.push_back(tokio::spawn(work));
+                Ok(true)
+            }
+            Err(refusal) => {
+                while let Some(work) = self.working.pop_front() {
+                    self.accept(answered(work.await))?;
+                }
+                if self.outlet.stopped() {
+                    return Ok(false);
+                }
+                Err(Failure::Refused(refusal))
+            }
+        }
+    }
+
+    /// What happens next: `reads` says whether there is room for more of the question.
+    async fn next(&mut self, reads: bool) -> Event {
+        let Drive {
+            body,
+            working,
+            unread,
+            ..
+        } = self;
+        let full = unread.is_full();
+        let first = async {
+            match working.front_mut() {
+                Some(work) => work.await,
+                None => std::future::pending().await,
+            }
+        };
+        tokio::select! {
+            biased;
+            done = first => {
+                working.pop_front();
+                Event::Answered(answered(done))
+            }
+            () = unread.gone() => Event::Gone,
+            frame = body.frame(), if reads => Event::Arrived(frame.map(|frame| {
+                frame.map(|frame| frame.into_data().unwrap_or_default())
+            })),
+            () = unread.fewer(), if full => Event::Read,
+        }
+    }
+
+    /// Sends the next answers.
+    fn accept(&mut self, done: Done) -> Result<(), Failure> {
+        let bytes = self.outlet.accept(done);
+        if bytes.is_empty() {
+            return Ok(());
+        }
+        self.begin(Ok(()));
+        if self.send(bytes) {
+            Ok(())
+        } else {
+            Err(Failure::Gone)
+        }
+    }
+
+    fn send(&self, bytes: Vec<u8>) -> bool {
+        bytes.is_empty() || self.unread.send(Bytes::from(bytes))
+    }
+
+    /// Says how the answer begins, if that was not said before.
+    fn begin(&mut self, how: Result<(), Problem>) {
+        if let Some(head) = self.head.take() {
+            let _ = head.send(how);
+        }
+    }
+}
+
+/// The answer to a block, or its panic.
+fn answered(done: Result<Done, JoinError>) -> Done {
+    done.unwrap_or_else(|failed| std::panic::resume_unwind(failed.into_panic()))
+}
+
+impl Failure {
+    /// What is said of it, in a problem or in the last row.
+    fn refusal(self, idle: Duration) -> Refusal {
+        let fault = match self {
+            Failure::Refused(refusal) => return refusal,
+            Failure::Idle => Fault::whole(
+                Code::RequestTimeout,
+                format!(
+                    "for {} s no row came, or none of the answer was read; send rows without such \
+                     pauses, and read while you send",
+                    idle.as_secs_f64()
+                ),
+            ),
+            Failure::Broken | Failure::Gone => Fault::whole(
+                Code::Syntax,
+                "the body broke off, or its chunks were not well-formed",
+            ),
+        };
+        Refusal {
+            faults: vec![fault],
+        }
+    }
+}
+
+impl Drop for Running {
+    fn drop(&mut self) {
+        self.0.metrics.leave();
+    }
+}
