@@ -1,5 +1,10 @@
 //! An answer as it is sent: the types behind the JSON, with their meaning and units.
 
+mod assess;
+mod uncertainty;
+
+pub use uncertainty::Uncertainty;
+
 use std::borrow::Cow;
 
 use serde::{Deserialize, Serialize};
@@ -28,6 +33,9 @@ pub struct Answer {
     pub b: [Option<f64>; 3],
     /// Units of `e` and `b`.
     pub units: AnswerUnits,
+    /// The uncertainty of `e` and `b`, when anything in the question is uncertain.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub uncertainty: Option<Uncertainty>,
     /// Lorentz invariants of the reading, in V²/m²; null when a component is missing.
     pub invariants: Option<Invariants>,
     /// The whole way as one transformation.
@@ -220,6 +228,7 @@ impl Answer {
                 detail: detail.into(),
             });
         }
+        let uncertainty = assess::uncertainty(question, &transformed, &mut notices);
         let unit = |quantity| Cow::Borrowed(question.answer_units.get(quantity).code);
         Ok(Answer {
             e: transformed.e,
@@ -228,6 +237,7 @@ impl Answer {
                 e: unit(Quantity::E),
                 b: unit(Quantity::B),
             },
+            uncertainty,
             invariants: transformed.invariants.map(|found| Invariants {
                 e2_minus_c2b2: found.e2_minus_c2b2,
                 e_dot_cb: found.e_dot_cb,

@@ -1,6 +1,7 @@
 //! One question: a reading, the way to the target frame, and what the answer should hold.
 
 mod assume;
+mod uncertainty;
 pub mod way;
 
 use std::sync::Arc;
@@ -8,15 +9,17 @@ use std::sync::Arc;
 use crate::chain;
 use crate::document::{Code, Fault, Faults, Members, Node, Notice, Place};
 use crate::frames::{Catalogue, Channel, Sensor};
+use crate::physics::covariance::Covariance;
 use crate::physics::field::FieldUnits;
 use crate::physics::resolved::Resolved;
 use crate::physics::tensor::Signature;
+use crate::physics::uncertain::UncertainReading;
 use crate::transform::Reading;
 use crate::units::{Quantity, Units};
 use way::Way;
 
 /// The names a question may have at its top level.
-pub const KNOWN: [&str; 15] = [
+pub const KNOWN: [&str; 16] = [
     "e",
     "b",
     "units",
@@ -30,6 +33,7 @@ pub const KNOWN: [&str; 15] = [
     "time",
     "inverse",
     "assume",
+    "uncertainty",
     "include",
     "signature",
 ];
@@ -45,13 +49,16 @@ pub enum Part {
     Energy,
     /// The frame in which E and B are parallel.
     ParallelFrame,
+    /// What the uncertainty of each component comes from.
+    Budget,
 }
 
-const PARTS: [(&str, Part); 4] = [
+const PARTS: [(&str, Part); 5] = [
     ("tensor", Part::Tensor),
     ("matrix", Part::Matrix),
     ("energy", Part::Energy),
     ("parallel_frame", Part::ParallelFrame),
+    ("budget", Part::Budget),
 ];
 
 /// What a deployment allows and knows.
@@ -68,6 +75,10 @@ pub struct Deployment {
 pub struct Question {
     /// The reading.
     pub reading: Reading,
+    /// The errors of the reading; `None` when it is exact.
+    pub uncertainty: Option<Arc<UncertainReading>>,
+    /// The sensor it comes from, by name.
+    pub sensor: Option<String>,
     /// The way, resolved.
     pub way: Arc<Resolved>,
     /// Units of the question.
@@ -144,6 +155,7 @@ fn read(
     let reading_units = units.unwrap_or_default();
     let e = partial("e", members, faults);
     let b = partial("b", members, faults);
+    let covariance = uncertainty::of_reading(members, [e, b], faults);
     let way = way(members, &reading_units, faults);
     let (sensor, calibrated) = match way.as_ref().and_then(|way| way.sensor) {
         Some((sensor, calibrated)) => (sensor, calibrated),
@@ -198,8 +210,20 @@ fn read(
         e_dot_b_zero: assume?,
     };
     let way = way?;
+    let calibration = [sensor.e, sensor.b].map(|channel| channel?.uncertainty);
+    let covariance = match covariance? {
+        None if calibration == [None; 2] => None,
+        None => Covariance::of_standard([0.0; 6]).ok(),
+        given => given,
+    };
+    let uncertainty = covariance.map(|field| Arc::new(UncertainReading { field, calibration }));
     Some(Question {
         reading,
+        uncertainty,
+        sensor: way.sensor.and_then(|_| {
+            let name = faults.text(members.get("from")?, &root.field("from"))?;
+            Some(name.to_owned())
+        }),
         way: way.resolved,
         units,
         answer_units: answer_units?,

@@ -46,8 +46,10 @@ pub struct Transformed {
     pub units: FieldUnits,
     /// E' and B' to two doubles, in the units of the reading; `None` when anything is missing.
     precise: Option<(Vec3<Dd>, Vec3<Dd>)>,
-    /// The units of the reading.
-    read_in: FieldUnits,
+    /// The reading as it was taken to be: zeros stand for missing components.
+    pub question: Measured,
+    /// Which components of its field are missing.
+    pub missing: [[bool; 3]; 2],
     /// Invariants of the question; `None` when anything is missing.
     pub invariants: Option<Invariants>,
     /// Remarks.
@@ -103,7 +105,8 @@ pub fn transform(
         b: hide(applied.b, known[1]),
         units: to,
         precise: complete.then_some(applied.precise),
-        read_in: reading.units,
+        question,
+        missing: given.map(|known| known.map(|known| !known)),
         invariants,
         notices,
     })
@@ -119,7 +122,11 @@ impl Transformed {
     pub fn si(&self) -> Option<(Vec3<Dd>, Vec3<Dd>)> {
         let (e, b) = self.precise.as_ref()?;
         let in_si = |vector: &Vec3<Dd>, unit: Scale| scale(&unit.value(()), vector);
-        Some((in_si(e, self.read_in.e), in_si(b, self.read_in.b)))
+        let FieldUnits {
+            e: e_unit,
+            b: b_unit,
+        } = self.question.units;
+        Some((in_si(e, e_unit), in_si(b, b_unit)))
     }
 
     /// E'/c and B' in T; `None` when anything is missing.

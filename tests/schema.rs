@@ -52,6 +52,16 @@ fn schema_and_reader_know_the_same_members() {
         ("UnitsOfAnswer", json!({"answer_units": slip})),
         ("Assume", json!({"assume": slip})),
         ("EDotBZero", json!({"assume": {"e_dot_b_zero": slip}})),
+        ("UncertaintyOfQuestion", json!({"uncertainty": slip})),
+        ("CovarianceOfVector", json!({"uncertainty": {"e": slip}})),
+        (
+            "OfDirectedBoost",
+            json!({"boost": {"direction": [1, 0, 0], "gamma": 2, "uncertainty": slip}}),
+        ),
+        (
+            "OfTurningBoost",
+            json!({"boost": {"angular_velocity": [1, 0, 0], "position": [0, 1, 0], "uncertainty": slip}}),
+        ),
         ("Boost", json!({"boost": slip})),
         ("Rotate", json!({"rotation": slip})),
         (

@@ -1,6 +1,7 @@
 //! The way from one frame to another: steps as written, resolved into one transformation.
 
 pub mod step;
+pub mod uncertainty;
 mod units;
 
 pub use units::units;
@@ -50,6 +51,7 @@ pub fn code(impossible: &Impossible) -> Code {
         Impossible::GammaOverflow { .. } | Impossible::PrecisionExhausted { .. } => {
             Code::PrecisionExhausted
         }
+        Impossible::UncertainAtRest { .. } => Code::UncertainAtRest,
         Impossible::FieldInPlane { .. } => Code::FieldInPlane,
     }
 }

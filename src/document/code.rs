@@ -74,12 +74,18 @@ codes! {
     AngleOutOfRange "angle_out_of_range" 422 "An angle out of its range",
         "The angle makes no sense where it stands.",
         "Give one in the range that the detail names, in units.angle (rad when left out).";
-    NotACovariance "not_a_covariance" 422 "Not a covariance matrix",
-        "A covariance matrix is symmetric and positive semi-definite.",
-        "Check signs and the order of components: ex ey ez bx by bz.";
+    NotSymmetric "not_symmetric" 422 "A covariance matrix that is not symmetric",
+        "The covariance of two quantities is one number, which stands twice in the matrix, on both sides of its diagonal. The two differ.",
+        "Check the elements that the detail names, and the order of components: ex ey ez bx by bz.";
+    NotPositiveSemidefinite "not_positive_semidefinite" 422 "A covariance matrix that gives a negative variance",
+        "No combination of quantities has a variance below zero, so the correlation matrix has no negative eigenvalue; the detail names the smallest one. Down to -1e-6 it is taken as rounding.",
+        "Check signs and the order of components, that elements are in squares of the units, and that no covariance is larger than the product of its two standard uncertainties.";
     NegativeUncertainty "negative_uncertainty" 422 "A negative uncertainty",
         "A standard uncertainty is zero or positive.",
         "Give the standard deviation itself.";
+    UncertainAtRest "uncertain_at_rest" 422 "An uncertain speed at rest",
+        "At gamma = 1 or at no kinetic energy the speed does not follow a small change of gamma or energy to first order, so that no standard uncertainty of it can be propagated.",
+        "Give the uncertainty of a velocity, of beta or of the rapidity.";
     WrongTime "wrong_time" 400 "Not a time of this catalogue",
         "A catalogue of frames writes its times as RFC 3339 throughout, or as seconds from its epoch throughout.",
         "GET /v1/frames says which. RFC 3339 looks like 2031-03-02T05:10:00.25Z; the fraction may have any number of digits.";

@@ -4,6 +4,7 @@ use crate::document::{Code, Faults, Node, Place};
 use crate::physics::Dd;
 use crate::physics::real::{Real, cross, dot, vector};
 use crate::physics::reduction::Calibration;
+use crate::physics::uncertain::UncertainCalibration;
 
 /// How a sensor is mounted and what it reads.
 #[derive(Clone, Copy, Debug, Default, PartialEq)]
@@ -19,10 +20,8 @@ pub struct Sensor {
 pub struct Channel {
     /// From raw numbers to the unit of the catalogue.
     pub calibration: Calibration,
-    /// Standard uncertainties of the elements of the matrix.
-    pub matrix_uncertainty: [[f64; 3]; 3],
-    /// Standard uncertainties of the offset, in raw numbers.
-    pub offset_uncertainty: [f64; 3],
+    /// Standard uncertainties of the calibration; `None` when it is exact.
+    pub uncertainty: Option<UncertainCalibration>,
     /// Which of x, y, z it has.
     pub axes: [bool; 3],
 }
@@ -67,19 +66,15 @@ impl Channel {
         let axes = members.get("axes").map_or(Some([true; 3]), |node| {
             axes(node, &place.field("axes"), faults)
         });
-        let uncertainty = members
-            .get("uncertainty")
-            .map_or(Some(([[0.0; 3]; 3], [0.0; 3])), |node| {
-                uncertainty(node, &place.field("uncertainty"), faults)
-            });
-        let (matrix_uncertainty, offset_uncertainty) = uncertainty?;
+        let uncertainty = members.get("uncertainty").map_or(Some(None), |node| {
+            uncertainty(node, &place.field("uncertainty"), faults).map(Some)
+        });
         let channel = Channel {
             calibration: Calibration {
                 matrix: matrix?,
                 offset: offset?,
             },
-            matrix_uncertainty,
-            offset_uncertainty,
+            uncertainty: uncertainty?,
             axes: axes?,
         };
         channel.check(&place.field("matrix"), faults);
@@ -139,11 +134,7 @@ fn axes(node: &Node, place: &Place, faults: &mut Faults) -> Option<[bool; 3]> {
     Some(has)
 }
 
-fn uncertainty(
-    node: &Node,
-    place: &Place,
-    faults: &mut Faults,
-) -> Option<([[f64; 3]; 3], [f64; 3])> {
+fn uncertainty(node: &Node, place: &Place, faults: &mut Faults) -> Option<UncertainCalibration> {
     let members = faults.members(node, place, &["matrix", "offset"])?;
     let matrix = members.get("matrix").map_or(Some([[0.0; 3]; 3]), |node| {
         faults.matrix(node, &place.field("matrix"))
@@ -161,5 +152,5 @@ fn uncertainty(
         let detail = "a standard uncertainty is 0 or positive";
         faults.note(place, Code::NegativeUncertainty, detail);
     }
-    Some((matrix, offset))
+    Some(UncertainCalibration { matrix, offset })
 }

@@ -89,6 +89,7 @@ fn answer_examples() -> Vec<(&'static str, Value)> {
     let full = answer(examples::turned_axes());
     let plane_wave = answer(examples::plane_wave());
     let swept = serde_json::to_value(examples::swept()).expect("an answer has a JSON form");
+    let uncertain = &answer(examples::uncertain_reading())["uncertainty"];
     vec![
         ("AnswerUnits", full["units"].clone()),
         ("Invariants", full["invariants"].clone()),
@@ -97,6 +98,19 @@ fn answer_examples() -> Vec<(&'static str, Value)> {
         ("Tensor", full["tensor"].clone()),
         ("Energy", full["energy"].clone()),
         ("FoundFrame", full["parallel_frame"].clone()),
+        ("UncertaintyOfAnswer", uncertain.clone()),
+        ("Coverage", uncertain["coverage"].clone()),
+        ("Ellipsoid", uncertain["coverage"]["e"].clone()),
+        ("Magnitudes", uncertain["magnitudes"].clone()),
+        ("Measure", uncertain["magnitudes"]["e"].clone()),
+        ("UncertainInvariants", uncertain["invariants"].clone()),
+        (
+            "UncertainParallelFrame",
+            uncertain["parallel_frame"].clone(),
+        ),
+        ("SecondOrder", uncertain["second_order"].clone()),
+        ("Budget", uncertain["budget"].clone()),
+        ("Share", uncertain["budget"]["e"][0][0].clone()),
         ("NoFrame", plane_wave["parallel_frame"].clone()),
         ("Notice", plane_wave["notices"][0].clone()),
         ("Columns", swept["e"].clone()),

@@ -322,7 +322,7 @@ impl Motion {
         }
     }
 
-    fn beta(&self) -> Scale {
+    pub(super) fn beta(&self) -> Scale {
         match self {
             Motion::Velocity { beta, .. } | Motion::Turning { beta, .. } => *beta,
             _ => Scale::ONE,

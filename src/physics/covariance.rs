@@ -195,6 +195,14 @@ impl<const N: usize> Covariance<N> {
         self.root.as_flattened().iter().all(|x| *x == 0.0)
     }
 
+    /// Standard uncertainties, or the roots of all elements.
+    pub(super) fn sizes(&self) -> Vec<f64> {
+        match &self.given {
+            Given::Standard(standard) => standard.to_vec(),
+            Given::Matrix(matrix) => matrix.iter().flatten().map(|x| x.abs().sqrt()).collect(),
+        }
+    }
+
     /// The smallest eigenvalue of the correlation matrix as given; below zero by rounding only.
     pub fn smallest_eigenvalue(&self) -> f64 {
         self.smallest_eigenvalue

@@ -83,6 +83,15 @@ pub enum Impossible {
         /// The largest accepted.
         limit: f64,
     },
+    /// A γ or energy of a frame at rest, uncertain.
+    #[error(
+        "{what} of a frame at rest is uncertain, but there the speed does not follow a small change \
+         of it to first order; give the uncertainty of a velocity, of beta or of the rapidity"
+    )]
+    UncertainAtRest {
+        /// Name of the quantity.
+        what: &'static str,
+    },
     /// B too close to the plane of the measured components of E.
     #[error(
         "B is {degrees:.2} degrees from the plane of the measured components of E, and min_angle \

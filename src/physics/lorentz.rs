@@ -15,7 +15,7 @@ use super::pure_boost::Boost;
 use super::quaternion::Quaternion;
 use super::real::{Real, norm2};
 use super::rotation::Turn;
-use super::uncertain::Uncertain;
+use super::uncertain::UncertainStep;
 
 /// One step of a way, from the current frame to the next.
 #[derive(Clone, Debug, PartialEq)]
@@ -25,7 +25,7 @@ pub struct Step {
     /// Whether the step is taken backwards.
     pub inverse: bool,
     /// Its errors; `None` when it is exact.
-    pub uncertainty: Option<Arc<Uncertain>>,
+    pub uncertainty: Option<Arc<UncertainStep>>,
 }
 
 impl Step {

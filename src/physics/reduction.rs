@@ -105,14 +105,15 @@ pub fn fill<R: Real>(i: usize, e: &Vec3<R>, b: &Vec3<R>) -> R {
     -(e[j].clone() * b[j].clone() + e[k].clone() * b[k].clone()) / b[i].clone()
 }
 
-/// How E_i from E·B = 0 changes with ex ey ez bx by bz, to first order.
-pub fn fill_sensitivities(i: usize, e: [f64; 3], b: [f64; 3]) -> [f64; 6] {
+/// How E_i from E·B = 0 changes with ex ey ez bx by bz, to first order; `e` holds E_i.
+pub fn fill_sensitivities<R: Real>(i: usize, e: &Vec3<R>, b: &Vec3<R>) -> [R; 6] {
     let (j, k) = ((i + 1) % 3, (i + 2) % 3);
-    let mut by = [0.0; 6];
-    by[j] = -b[j] / b[i];
-    by[k] = -b[k] / b[i];
-    by[3 + j] = -e[j] / b[i];
-    by[3 + k] = -e[k] / b[i];
-    by[3 + i] = -e[i] / b[i];
+    let per_b = |x: &R| -(x.clone() / b[i].clone());
+    let mut by = std::array::from_fn(|_| b[i].of(0.0));
+    by[j] = per_b(&b[j]);
+    by[k] = per_b(&b[k]);
+    by[3 + j] = per_b(&e[j]);
+    by[3 + k] = per_b(&e[k]);
+    by[3 + i] = per_b(&e[i]);
     by
 }

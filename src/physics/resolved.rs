@@ -16,6 +16,8 @@ const BITS: usize = 256;
 const MAX_GROWTH: f64 = 2048.0;
 /// Up to this growth a chain is composed in two doubles.
 const DD_GROWTH: f64 = 20.0;
+/// Up to this growth two doubles have room for squares of products of one step.
+const DD_STEP_GROWTH: f64 = 66.0;
 /// Below this net γ two doubles have room for its products.
 const DD_GAMMA: f64 = 1e60;
 
@@ -42,6 +44,8 @@ struct Tally {
     turned: f64,
     /// The largest departure of a quaternion or matrix that was mended.
     mended: f64,
+    /// Whether any step is not known exactly.
+    uncertain: bool,
 }
 
 impl Resolved {
@@ -150,9 +154,29 @@ impl Resolved {
         self.slack
     }
 
+    /// log2 of what the steps multiply a field up by, one after the other.
+    pub(super) fn growth(&self) -> f64 {
+        self.tally.growth
+    }
+
     /// Whether two doubles have room for products of the net γ.
     pub(super) fn fits_dd(&self) -> bool {
         gamma(&self.net) < DD_GAMMA
+    }
+
+    /// Whether any step is not known exactly.
+    pub fn is_uncertain(&self) -> bool {
+        self.tally.uncertain
+    }
+
+    /// Whether two doubles hold the steps and any part of the way to full precision.
+    pub(super) fn composes_in_dd(&self) -> bool {
+        let limit = if self.tally.moving < 2 {
+            DD_STEP_GROWTH
+        } else {
+            DD_GROWTH
+        };
+        self.tally.fits && self.tally.growth <= limit
     }
 
     /// Λ of the net transformation, rounded to doubles.
@@ -188,6 +212,7 @@ impl Tally {
         fits: true,
         turned: 1.0,
         mended: 0.0,
+        uncertain: false,
     };
 
     /// Of one step, its growth aside.
@@ -202,6 +227,7 @@ impl Tally {
             fits: step.change.fits_dd(),
             turned,
             mended,
+            uncertain: step.uncertainty.is_some(),
         }
     }
 
@@ -212,6 +238,7 @@ impl Tally {
             fits: self.fits && next.fits,
             turned: self.turned.max(next.turned),
             mended: self.mended.max(next.mended),
+            uncertain: self.uncertain || next.uncertain,
         }
     }
 

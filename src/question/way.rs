@@ -2,7 +2,7 @@
 
 use std::sync::Arc;
 
-use super::Deployment;
+use super::{Deployment, uncertainty};
 use crate::chain::{self, step};
 use crate::document::{Code, Faults, Members, Notice, Place};
 use crate::frames::{Sensor, Time, Walk};
@@ -40,6 +40,7 @@ pub(crate) fn read(
     }
     let (form, _) = faults.exactly_one(members, &root, &WAYS)?;
     if form == "from" {
+        uncertainty::of_other_ways(members, form, faults);
         return named(members, inverse(members, faults), deployment, faults);
     }
     of_steps(steps(members, units, deployment, faults)?, faults)
@@ -63,11 +64,16 @@ pub(crate) fn steps(
     let inverse = inverse(members, faults);
     let (form, node) = faults.exactly_one(members, &Place::ROOT, &WAYS)?;
     let place = Place::ROOT.field(form);
-    let steps = match form {
-        "steps" => chain::steps(node, &place, units, deployment.steps, faults)?,
-        "velocity" => vec![step::boost::velocity(node, &place, units, faults)?],
-        "boost" => vec![step::boost::read(node, &place, units, faults)?],
-        _ => vec![step::rotate::read(node, &place, units, faults)?],
+    uncertainty::of_other_ways(members, form, faults);
+    let steps = if form == "steps" {
+        chain::steps(node, &place, units, deployment.steps, faults)?
+    } else {
+        let step = match form {
+            "velocity" => step::boost::velocity(node, &place, units, faults),
+            "boost" => step::boost::read(node, &place, units, faults),
+            _ => step::rotate::read(node, &place, units, faults),
+        };
+        vec![uncertainty::of_step(members, form, step, units, faults)?]
     };
     Some(if inverse? {
         chain::inverse(steps)

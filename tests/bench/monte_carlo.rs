@@ -14,7 +14,7 @@ use lodeframe::physics::monte_carlo::summary::{Summary, tails};
 use lodeframe::physics::monte_carlo::trials::{Block, Trials};
 use lodeframe::physics::resolved::Resolved;
 use lodeframe::physics::rotation::Turn;
-use lodeframe::physics::uncertain::{Uncertain, UncertainReading};
+use lodeframe::physics::uncertain::{Errors, UncertainReading, UncertainStep};
 
 mod stopwatch;
 use stopwatch::Stopwatch;
@@ -61,6 +61,11 @@ fn main() {
     }
 }
 
+fn uncertain(errors: Errors) -> Option<Arc<UncertainStep>> {
+    let source = String::new();
+    Some(Arc::new(UncertainStep { errors, source }))
+}
+
 fn boost() -> Step {
     let errors = Covariance::of_standard([0.01, 0.02, 0.03]).expect("positive");
     Step {
@@ -69,7 +74,7 @@ fn boost() -> Step {
             beta: Motion::to_beta(Scale::ratio(1000, 1)),
         }),
         inverse: true,
-        uncertainty: Some(Arc::new(Uncertain::Velocity(errors))),
+        uncertainty: uncertain(Errors::Velocity(errors)),
     }
 }
 
@@ -83,9 +88,9 @@ fn turn() -> Step {
             radians: degrees,
         }),
         inverse: false,
-        uncertainty: Some(Arc::new(Uncertain::Axes {
+        uncertainty: uncertain(Errors::Axes {
             angles,
             radians: degrees,
-        })),
+        }),
     }
 }

@@ -12,7 +12,7 @@ use lodeframe::physics::{
     reduction::{Calibration, Reduction},
     resolved::Resolved,
     rotation::Turn,
-    uncertain::{Uncertain, UncertainCalibration, UncertainReading},
+    uncertain::{Errors, UncertainCalibration, UncertainReading, UncertainStep},
 };
 
 /// One unit for the errors of every quantity: a power of two, so that numbers of the form
@@ -28,11 +28,14 @@ struct Case {
     draws: Vec<f64>,
 }
 
-fn step(change: Change, inverse: bool, uncertainty: Option<Uncertain>) -> Step {
+fn step(change: Change, inverse: bool, uncertainty: Option<Errors>) -> Step {
     Step {
         change,
         inverse,
-        uncertainty: uncertainty.map(Arc::new),
+        uncertainty: uncertainty.map(|errors| {
+            let source = String::new();
+            Arc::new(UncertainStep { errors, source })
+        }),
     }
 }
 
@@ -52,11 +55,7 @@ fn velocity(beta: [f64; 3], unit: f64, z: [f64; 3], inverse: bool) -> Case {
     let exactly = (0..3).all(|i| (with_errors[i] - beta[i]) / unit == z[i]);
     assert!(exactly, "no rounding in the question");
     Case {
-        step: step(
-            motion(beta),
-            inverse,
-            Some(Uncertain::Velocity(three(unit))),
-        ),
+        step: step(motion(beta), inverse, Some(Errors::Velocity(three(unit)))),
         drawn: vec![step(motion(with_errors), inverse, None)],
         draws: z.to_vec(),
     }
@@ -73,7 +72,7 @@ fn turned(angle: f64, unit: f64, z: [f64; 3], length: f64, inverse: bool) -> Cas
         })
     };
     let stated = turn([1.0, -2.0, 0.5], angle, DEGREES);
-    let errors = Uncertain::Axes {
+    let errors = Errors::Axes {
         angles: three(unit),
         radians: RADIANS,
     };
@@ -104,7 +103,7 @@ fn directed(
     let angle = TURN * z[1];
     // About the second of the axes across x, which is z.
     let direction = [libm::cos(angle), libm::sin(angle), 0.0];
-    let uncertain = Uncertain::Directed {
+    let uncertain = Errors::Directed {
         value: sigma,
         direction: TURN,
         radians: RADIANS,
@@ -130,7 +129,7 @@ fn turning() -> Case {
     let z: [f64; 6] = [3.0, 5.0, -7.0, 2.0, -1.0, 4.0];
     let unit = 1.0 / 1024.0;
     let moved = |v: [f64; 3], first: usize| std::array::from_fn(|i| v[i] + unit * z[first + i]);
-    let uncertain = Uncertain::Turning {
+    let uncertain = Errors::Turning {
         angular_velocity: three(unit),
         position: three(unit),
     };

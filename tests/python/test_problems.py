@@ -18,6 +18,10 @@ def turn(**form):
     return {"e": [0, 1, 0], "b": [0, 0, 1], "rotation": form}
 
 
+def uncertain(**stated):
+    return GOOD | {"uncertainty": stated}
+
+
 SWEEP = "/v1/sweep?e=0,1,0&b=0,0,1&boost.direction=1,0,0&over=beta"
 
 # Faults of a question: code, question, the place that is named (RFC 6901).
@@ -45,6 +49,25 @@ FAULTS = [
     ("below_rest", boost(direction=[1, 0, 0], gamma=0.5), "/boost/gamma"),
     ("below_rest", boost(direction=[1, 0, 0], kinetic_energy=-1, particle="proton"), "/boost/kinetic_energy"),
     ("not_a_rotation", turn(quaternion={"w": 1, "x": 1, "y": 0, "z": 0}), "/rotation/quaternion"),
+    ("negative_uncertainty", uncertain(e=[0.1, -0.1, 0.1]), "/uncertainty/e/1"),
+    ("negative_uncertainty", uncertain(velocity={"covariance": [[1, 0, 0], [0, -1, 0], [0, 0, 1]]}),
+     "/uncertainty/velocity/covariance/1/1"),
+    ("negative_uncertainty", boost(direction=[1, 0, 0], gamma=2, uncertainty={"value": -1}), "/boost/uncertainty/value"),
+    ("not_symmetric", uncertain(b={"covariance": [[1, 0.1, 0], [0.2, 1, 0], [0, 0, 1]]}),
+     "/uncertainty/b/covariance/0/1"),
+    ("not_positive_semidefinite", uncertain(covariance=[[1 if i == j else -0.5 for j in range(6)] for i in range(6)]),
+     "/uncertainty/covariance"),
+    ("not_positive_semidefinite", uncertain(e={"covariance": [[4, 3, 0], [3, 1, 0], [0, 0, 1]]}),
+     "/uncertainty/e/covariance"),
+    ("uncertain_at_rest", boost(direction=[1, 0, 0], gamma=1, uncertainty={"value": 0.1}), "/boost/uncertainty"),
+    ("wrong_length", uncertain(e=[0.1, 0.1]), "/uncertainty/e"),
+    ("wrong_length", uncertain(covariance=[[1, 0], [0, 1]]), "/uncertainty/covariance"),
+    ("missing_field", uncertain(e=[0.1, None, 0.1]), "/uncertainty/e/1"),
+    ("conflicting_fields", uncertain(rotation=[0.1, 0.1, 0.1]), "/uncertainty/rotation"),
+    ("conflicting_fields", uncertain(e=[0.1, 0.1, 0.1], covariance=[[0] * 6] * 6), "/uncertainty/e"),
+    ("conflicting_fields", boost(beta=[0.1, 0, 0], uncertainty=[0, 0, 0]) | {"uncertainty": {"boost": [0, 0, 0]}},
+     "/uncertainty/boost"),
+    ("unknown_field", uncertain(time=1), "/uncertainty/time"),
     ("unknown_frame", {"e": [0, 1, 0], "from": "probe", "to": "ground"}, "/from"),
     ("angle_out_of_range", GOOD | {"assume": {"e_dot_b_zero": {"min_angle": 15}}}, "/assume/e_dot_b_zero/min_angle"),
     ("field_in_plane", {"e": [1, 2, None], "b": [1, 1, 0], "velocity": [0, 0, 0],
@@ -89,8 +112,6 @@ OUT_OF_REACH = {
     "internal": "only a fault of the service itself brings it about",
     "too_many_requests": "no limit of requests for each client can be set",
     "unauthorized": "tokens cannot be asked for",
-    "not_a_covariance": "a question cannot state uncertainties",
-    "negative_uncertainty": "a question cannot state uncertainties",
 } | dict.fromkeys(
     ("unknown_parent", "frame_cycle", "several_roots", "sensor_not_leaf", "singular_matrix", "unsorted_times",
      "repeated_time", "gap_too_long", "attitude_jump", "unreadable_file"),

@@ -1,18 +1,20 @@
 //! The step `boost`: to a frame that moves, its axes kept parallel.
 
-use crate::chain::code;
+use crate::chain::{code, uncertainty};
 use crate::document::{Code, Faults, Members, Node, Place};
 use crate::physics::Impossible;
 use crate::physics::boost::Motion;
 use crate::physics::constants::PARTICLES;
+use crate::physics::covariance::Covariance;
 use crate::physics::lorentz::{Change, Step};
 use crate::physics::scale::Scale;
+use crate::physics::uncertain::Errors;
 use crate::units::{Quantity, Units};
 
 const FORMS: [&str; 4] = ["velocity", "direction", "beta", "angular_velocity"];
 /// The speeds that go with a direction; `beta` is then a number.
 const SPEEDS: [&str; 4] = ["beta", "gamma", "rapidity", "kinetic_energy"];
-const KNOWN: [&str; 10] = [
+const KNOWN: [&str; 11] = [
     "velocity",
     "beta",
     "direction",
@@ -23,6 +25,7 @@ const KNOWN: [&str; 10] = [
     "angular_velocity",
     "position",
     "inverse",
+    "uncertainty",
 ];
 
 /// Reads the body of the step.
@@ -36,7 +39,7 @@ pub fn read(node: &Node, place: &Place, units: &Units, faults: &mut Faults) -> O
         }
         checked.ok().map(|()| Change::Boost(motion))
     });
-    super::with_inverse(motion, members.get("inverse"), place, faults)
+    super::finish(motion, members, errors, place, units, faults)
 }
 
 /// The member that an impossible motion is the fault of.
@@ -58,6 +61,43 @@ fn blamed(members: Members, impossible: &Impossible) -> &'static str {
         }
         _ => given(&FORMS).unwrap_or("velocity"),
     }
+}
+
+/// Reads what is uncertain about a boost: of a vector its components, of a direction with a speed
+/// both, of a point of a turning body its angular velocity and its position.
+pub fn errors(
+    boost: Members,
+    node: &Node,
+    place: &Place,
+    units: &Units,
+    faults: &mut Faults,
+) -> Option<Errors> {
+    if boost.get("direction").is_some() {
+        let members = faults.members(node, place, &["value", "direction"])?;
+        let mut sigma = |name| match members.get(name) {
+            Some(node) => uncertainty::number(node, &place.field(name), faults),
+            None => Some(0.0),
+        };
+        let (value, direction) = (sigma("value"), sigma("direction"));
+        return Some(Errors::Directed {
+            value: value?,
+            direction: direction?,
+            radians: units.si(Quantity::Angle),
+        });
+    }
+    if boost.get("angular_velocity").is_some() {
+        let members = faults.members(node, place, &["angular_velocity", "position"])?;
+        let mut vector = |name| match members.get(name) {
+            Some(node) => uncertainty::vector(node, &place.field(name), faults),
+            None => Covariance::of_standard([0.0; 3]).ok(),
+        };
+        let (angular_velocity, position) = (vector("angular_velocity"), vector("position"));
+        return Some(Errors::Turning {
+            angular_velocity: angular_velocity?,
+            position: position?,
+        });
+    }
+    uncertainty::vector(node, place, faults).map(Errors::Velocity)
 }
 
 /// Reads a velocity that stands alone, as `velocity` does in a question.

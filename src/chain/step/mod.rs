@@ -4,8 +4,12 @@
 pub mod boost;
 pub mod rotate;
 
-use crate::document::{Faults, Node, Place};
+use std::sync::Arc;
+
+use crate::chain::code;
+use crate::document::{Faults, Members, Node, Place};
 use crate::physics::lorentz::{Change, Step};
+use crate::physics::uncertain::{Errors, UncertainStep};
 use crate::units::Units;
 
 /// Reads what stands under the name of the step.
@@ -23,20 +27,54 @@ pub fn read(node: &Node, place: &Place, units: &Units, faults: &mut Faults) -> O
     read(body, &place.field(kind), units, faults)
 }
 
-/// Reads `inverse` and joins it with the change.
-fn with_inverse(
+/// Reads what is uncertain about a change, in the units given, from the members of its step.
+type ReadErrors = fn(Members, &Node, &Place, &Units, &mut Faults) -> Option<Errors>;
+
+/// Reads `inverse` and `uncertainty` and joins them with the change.
+fn finish(
     change: Option<Change>,
-    inverse: Option<&Node>,
+    members: Members,
+    read: ReadErrors,
     place: &Place,
+    units: &Units,
     faults: &mut Faults,
 ) -> Option<Step> {
-    let inverse = match inverse {
+    let inverse = match members.get("inverse") {
         Some(node) => faults.boolean(node, &place.field("inverse")),
         None => Some(false),
     };
-    Some(Step {
-        change: change?,
+    let errors = match members.get("uncertainty") {
+        Some(node) => {
+            let place = place.field("uncertainty");
+            read(members, node, &place, units, faults).map(Some)
+        }
+        None => Some(None),
+    };
+    let step = Step {
         inverse: inverse?,
-        uncertainty: None,
+        ..Step::exact(change?)
+    };
+    match errors? {
+        Some(errors) => uncertain(step, errors, place, &place.field("uncertainty"), faults),
+        None => Some(step),
+    }
+}
+
+/// The step with its errors; `at` is where they stand.
+pub fn uncertain(
+    step: Step,
+    errors: Errors,
+    place: &Place,
+    at: &Place,
+    faults: &mut Faults,
+) -> Option<Step> {
+    if let Err(impossible) = errors.check(&step.change) {
+        faults.note(at, code(&impossible), impossible.to_string());
+        return None;
+    }
+    let source = place.path().pointer();
+    Some(Step {
+        uncertainty: Some(Arc::new(UncertainStep { errors, source })),
+        ..step
     })
 }

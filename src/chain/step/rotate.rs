@@ -1,13 +1,22 @@
 //! The step `rotate`: to axes that are turned. Also the shorthand `rotation` of a question.
 
-use crate::chain::code;
+use crate::chain::{code, uncertainty};
 use crate::document::{Code, Faults, Members, Node, Place};
 use crate::physics::lorentz::{Change, Step};
 use crate::physics::rotation::Turn;
+use crate::physics::uncertain::Errors;
 use crate::units::{Quantity, Units};
 
 const FORMS: [&str; 4] = ["axis", "quaternion", "matrix", "euler"];
-const KNOWN: [&str; 6] = ["axis", "angle", "quaternion", "matrix", "euler", "inverse"];
+const KNOWN: [&str; 7] = [
+    "axis",
+    "angle",
+    "quaternion",
+    "matrix",
+    "euler",
+    "inverse",
+    "uncertainty",
+];
 
 /// Reads the body of the step.
 pub fn read(node: &Node, place: &Place, units: &Units, faults: &mut Faults) -> Option<Step> {
@@ -21,7 +30,21 @@ pub fn read(node: &Node, place: &Place, units: &Units, faults: &mut Faults) -> O
         }
         checked.ok().map(|_| Change::Rotate(turn))
     });
-    super::with_inverse(turn, members.get("inverse"), place, faults)
+    super::finish(turn, members, errors, place, units, faults)
+}
+
+/// Reads what is uncertain about a rotation: small angles about the next axes.
+pub fn errors(
+    _: Members,
+    node: &Node,
+    place: &Place,
+    units: &Units,
+    faults: &mut Faults,
+) -> Option<Errors> {
+    Some(Errors::Axes {
+        angles: uncertainty::vector(node, place, faults)?,
+        radians: units.si(Quantity::Angle),
+    })
 }
 
 fn form(members: Members, place: &Place, units: &Units, faults: &mut Faults) -> Option<Turn> {

@@ -41,6 +41,9 @@ use crate::{
             ("turned_axes" = (
                 summary = "Axes turned by 30 degrees, then a boost along the new x axis",
                 value = json!(schema::examples::turned_axes()))),
+            ("uncertain_reading" = (
+                summary = "The same with uncertainties of the reading, the attitude and the velocity",
+                value = json!(schema::examples::uncertain_reading()))),
             ("fast_beam" = (
                 summary = "The field of a pickup, in the frame of a proton beam",
                 value = json!(schema::examples::fast_beam()))),
@@ -52,6 +55,7 @@ use crate::{
             examples(
                 ("motional_field" = (value = json!(schema::examples::answer_to(schema::examples::orbiting_probe())))),
                 ("turned_axes" = (value = json!(schema::examples::answer_to(schema::examples::turned_axes())))),
+                ("uncertain_reading" = (value = json!(schema::examples::answer_to(schema::examples::uncertain_reading())))),
                 ("fast_beam" = (value = json!(schema::examples::answer_to(schema::examples::fast_beam())))),
             )),
         (status = 400, description = "The question cannot be understood", body = ProblemDocument, content_type = "application/problem+json"),

@@ -41,6 +41,22 @@ pub fn turned_axes() -> Value {
     })
 }
 
+/// The same axes and boost with what is uncertain about them and about the reading, and where the
+/// uncertainty of the answer comes from.
+pub fn uncertain_reading() -> Value {
+    json!({
+        "e": [0.0, 1.2, 0.0],
+        "b": [0.0, 0.0, 45000.0],
+        "units": {"e": "mV/m", "b": "nT", "velocity": "km/s", "angle": "deg"},
+        "steps": [
+            {"rotate": {"axis": [0.0, 0.0, 1.0], "angle": 30.0, "uncertainty": [0.1, 0.1, 0.2]}},
+            {"boost": {"velocity": [7.6, 0.0, 0.0], "uncertainty": [0.01, 0.01, 0.01]}},
+        ],
+        "uncertainty": {"e": [0.1, 0.1, 0.1], "b": [5.0, 5.0, 5.0]},
+        "include": ["budget", "parallel_frame"],
+    })
+}
+
 /// The field beside a beam, in the frame of its particles.
 pub fn fast_beam() -> Value {
     json!({

@@ -8,7 +8,7 @@ use crate::physics::field::{FieldUnits, Kernel, Measured};
 use crate::physics::lorentz::{Change as Stated, Net, Step};
 use crate::physics::real::{Real, Vec3, cross, norm2, round, scale, vector};
 use crate::physics::resolved::Resolved;
-use crate::physics::uncertain::{Uncertain, UncertainReading};
+use crate::physics::uncertain::{Errors, UncertainReading};
 
 /// One thing that happens to them.
 #[derive(Clone, Debug)]
@@ -47,13 +47,13 @@ pub(super) fn of(way: &Resolved, field: &Measured, n: i32) -> Result<Vec<Stage>,
             continue;
         };
         // A turn with errors D taken backwards is first the turn D back, then the turn itself.
-        let before = step.inverse && matches!(**uncertain, Uncertain::Axes { .. });
+        let before = step.inverse && matches!(uncertain.errors, Errors::Axes { .. });
         if before {
-            making.draw(change(step, uncertain))?;
+            making.draw(change(step, &uncertain.errors))?;
             making.pending.push(step.clone());
         } else {
             making.pending.push(step.clone());
-            making.draw(change(step, uncertain))?;
+            making.draw(change(step, &uncertain.errors))?;
         }
     }
     making.carry()?;
@@ -120,11 +120,11 @@ fn matrix(net: &Net<Dd>) -> [[f64; 6]; 6] {
 }
 
 /// What the errors of a step change. A boost backwards is one of the opposite velocity.
-fn change(step: &Step, uncertain: &Uncertain) -> Change {
+fn change(step: &Step, uncertain: &Errors) -> Change {
     let sign = if step.inverse { -1.0 } else { 1.0 };
     let scaled = |root: &[[f64; 3]; 3], factor: f64| root.map(|row| row.map(|x| x * factor));
     match (uncertain, &step.change) {
-        (Uncertain::Velocity(errors), Stated::Boost(motion)) => {
+        (Errors::Velocity(errors), Stated::Boost(motion)) => {
             let unit = match motion {
                 Motion::Velocity { beta, .. } => beta.to_f64(),
                 _ => 1.0,
@@ -135,7 +135,7 @@ fn change(step: &Step, uncertain: &Uncertain) -> Change {
             }
         }
         (
-            Uncertain::Turning {
+            Errors::Turning {
                 angular_velocity: errors,
                 position: errors_of_position,
             },
@@ -156,14 +156,14 @@ fn change(step: &Step, uncertain: &Uncertain) -> Change {
             }
         }
         (
-            Uncertain::Directed {
+            Errors::Directed {
                 value,
                 direction,
                 radians,
             },
             Stated::Boost(motion),
         ) => directed(motion, sign, *value, direction * radians.to_f64()),
-        (Uncertain::Axes { angles, radians }, _) => Change::Axes {
+        (Errors::Axes { angles, radians }, _) => Change::Axes {
             root: scaled(angles.root(), sign * radians.to_f64()),
         },
         _ => unreachable!("errors are of the kind of their step"),
