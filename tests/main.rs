@@ -4,6 +4,7 @@
 mod access;
 mod arithmetic;
 mod block;
+mod corpus;
 mod covariance;
 mod frames;
 mod http;
