@@ -33,7 +33,7 @@ impl Quotes {
             self.closed = Some(at + 1);
         } else {
             // Elsewhere in a field that does not begin with one, it is a letter like others.
-            let begins = at == 0 || matches!(text[at - 1], b',' | b'\n' | b'\r');
+            let begins = at == 0 || matches!(text[at - 1], b',' | b'\n');
             self.within = begins || self.closed == Some(at);
         }
     }
