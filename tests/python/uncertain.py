@@ -2,6 +2,7 @@
 
 import math
 
+import regimes
 from regimes import power
 
 
@@ -80,3 +81,85 @@ def of_question(rng, question):
     else:
         stated["rotation"] = vector(rng, 0.1)
     return question | {"uncertainty": stated}
+
+
+def experiment(rng):
+    """A name and a question with errors from negligible to far too large for first order."""
+    name = rng.choice([*EXPERIMENTS])
+    e = power(rng, -3, 6)
+    question = {"e": regimes.vector(rng, e * power(rng, -2, 2)), "b": regimes.vector(rng, e / regimes.C)}
+    size = power(rng, -4, 0)
+    steps = EXPERIMENTS[name](rng, size)
+    # Of the reading: some of it exact, but not all of it.
+    share = power(rng, -4, -0.5)
+    sigma = [share * math.hypot(*question["e"]) * power(rng, -1, 0) for _ in range(3)]
+    sigma += [share * math.hypot(*question["b"]) * power(rng, -1, 0) for _ in range(3)]
+    if rng.random() < 0.5:
+        stated = {"e": sigma[:3], "b": sigma[3:]}
+    else:
+        stated = {"covariance": covariance(rng, sigma)}
+    return name, question | {"steps": steps, "uncertainty": stated}
+
+
+def _moving(rng, size, low, high):
+    """A velocity whose error is about `size` c in the moving frame, at 1−β from 10^low to 10^high."""
+    beta = 1 - power(rng, low, high)
+    gamma = 1 / math.sqrt(1 - beta * beta)
+    sigma = [size * power(rng, -1, 0) / gamma**2 for _ in range(3)]
+    stated = sigma if rng.random() < 0.5 else {"covariance": covariance(rng, sigma)}
+    return {"beta": regimes.vector(rng, beta), "uncertainty": stated}
+
+
+def _axes(rng, size):
+    sigma = [size * power(rng, -1, 0) for _ in range(3)]
+    stated = sigma if rng.random() < 0.5 else {"covariance": covariance(rng, sigma)}
+    return {"axis": regimes.direction(rng), "angle": rng.uniform(-3, 3), "uncertainty": stated}
+
+
+def _directed(rng, size):
+    """A direction and a speed in one of its forms."""
+    rapidity = rng.uniform(0.05, 4)
+    name, value, slope = rng.choice([
+        ("rapidity", rapidity, 1.0), ("beta", math.tanh(rapidity), 1 / math.cosh(rapidity) ** 2),
+        ("gamma", math.cosh(rapidity), math.sinh(rapidity))])
+    return {"direction": regimes.direction(rng), name: value,
+            "uncertainty": {"value": size * power(rng, -1, 0) * slope,
+                            "direction": size * power(rng, -1, 0) / math.sinh(rapidity)}}
+
+
+def _chain(rng, size):
+    steps = []
+    for _ in range(rng.randint(2, 5)):
+        step = {"boost": _moving(rng, size, -1, -0.02)} if rng.random() < 0.5 else {"rotate": _axes(rng, size)}
+        ((_, content),) = step.items()
+        if rng.random() < 0.3:
+            content["inverse"] = True
+        if rng.random() < 0.3:
+            del content["uncertainty"]
+        steps.append(step)
+    return steps
+
+
+def _slow(rng, size):
+    beta = power(rng, -6, -2)
+    return [{"boost": {"velocity": regimes.vector(rng, beta * regimes.C),
+                       "uncertainty": [size * beta * regimes.C * power(rng, -1, 0) for _ in range(3)]}}]
+
+
+def _cancelling(rng, size):
+    """Past a first boost back to where the reading came from, but for its errors."""
+    boost = _moving(rng, size, -3, -0.1)
+    back = {key: value for key, value in boost.items() if key != "uncertainty"} | {"inverse": True}
+    return [{"boost": boost}, {"rotate": _axes(rng, size)}, {"boost": back}]
+
+
+EXPERIMENTS = {
+    "slow": _slow,
+    "beta up to 0.9": lambda rng, size: [{"boost": _moving(rng, size, -1, -0.02)}],
+    "gamma up to 100": lambda rng, size: [{"boost": _moving(rng, size, -4.3, -1)}],
+    "rotation": lambda rng, size: [{"rotate": _axes(rng, size)}],
+    "direction and speed": lambda rng, size: [{"boost": _directed(rng, size)}],
+    "boost and rotation": lambda rng, size: [{"boost": _moving(rng, size, -2, -0.02)}, {"rotate": _axes(rng, size)}],
+    "chain of 2 to 5 steps": _chain,
+    "there and back": _cancelling,
+}
