@@ -5,6 +5,7 @@ use super::uncertainty::{
     Budget, Coverage, Ellipsoid, Magnitudes, Measure, SecondOrder, Share, UncertainInvariants,
     UncertainParallelFrame, Uncertainty,
 };
+use crate::document::Path;
 use crate::physics::covariance::EIGENVALUE_LIMIT;
 use crate::physics::coverage::{self, FACTOR, PROBABILITY};
 use crate::physics::linearity::{LIMIT, Linearity};
@@ -143,8 +144,8 @@ fn budget(question: &Question, found: &found::Uncertainty, known: [bool; 6]) -> 
     let steps: Vec<_> = question.way.steps().collect();
     let sensor = |field: &str| {
         let name = question.sensor.as_deref().unwrap_or_default();
-        let name = name.replace('~', "~0").replace('/', "~1");
-        format!("/frames/{name}/sensor/{field}")
+        let frame = Path::default().field("frames").field(name);
+        frame.field("sensor").field(field).pointer()
     };
     let name = |source: &Source| match source {
         Source::E => "/e".into(),

@@ -10,7 +10,7 @@ use super::tree;
 use super::turning::Turning;
 use super::walk::Walk;
 use crate::chain;
-use crate::document::{Code, Fault};
+use crate::document::{Code, Fault, Path};
 use crate::physics::lorentz::Step;
 use crate::units::Units;
 
@@ -46,6 +46,14 @@ pub struct Frame {
     pub link: Link,
     /// What it reads, if it is a sensor.
     pub sensor: Option<Sensor>,
+}
+
+impl Frame {
+    /// Where something of it stands in the catalogue, as a JSON Pointer.
+    pub fn pointer(&self, member: &str) -> String {
+        let frames = Path::default().field("frames");
+        frames.field(&self.name).field(member).pointer()
+    }
 }
 
 /// What leads from a parent to a frame.

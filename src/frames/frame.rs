@@ -2,10 +2,11 @@
 
 use super::sensor::Sensor;
 use super::time::{Clock, Time};
-use super::turning::Turning;
-use crate::chain;
+use super::turning::{Turning, UncertainTurning};
+use crate::chain::{self, uncertainty};
 use crate::document::{Code, Faults, Members, Node, Place};
 use crate::physics::boost::Motion;
+use crate::physics::covariance::Covariance;
 use crate::physics::lorentz::Step;
 use crate::physics::resolved::Resolved;
 use crate::units::{Quantity, Units};
@@ -168,7 +169,8 @@ fn turning(
     faults: &mut Faults,
 ) -> Option<Turning> {
     let at = place.field("turning");
-    let own = faults.members(node, &at, &["angular_velocity", "epoch", "phase"])?;
+    let known = ["angular_velocity", "epoch", "phase", "uncertainty"];
+    let own = faults.members(node, &at, &known)?;
     let angular_velocity = faults
         .needed(own, &at, "angular_velocity")
         .and_then(|node| faults.vector(node, &at.field("angular_velocity")));
@@ -181,6 +183,15 @@ fn turning(
     let position = members.get("position").map_or(Some(None), |node| {
         faults.vector(node, &place.field("position")).map(Some)
     });
+    let uncertainty = own.get("uncertainty").map_or(Some(None), |node| {
+        uncertain_turning(
+            node,
+            &at.field("uncertainty"),
+            members.get("position").is_some(),
+            faults,
+        )
+        .map(Some)
+    });
     let rate = units.si(Quantity::AngularVelocity);
     Some(Turning {
         angular_velocity: angular_velocity?,
@@ -190,5 +201,32 @@ fn turning(
         radians: units.si(Quantity::Angle),
         position: position?,
         beta: Motion::to_beta(rate.times(units.si(Quantity::Length))),
+        uncertainty: uncertainty?,
     })
+}
+
+fn uncertain_turning(
+    node: &Node,
+    place: &Place,
+    at_point: bool,
+    faults: &mut Faults,
+) -> Option<Box<UncertainTurning>> {
+    let members = faults.members(node, place, &["angular_velocity", "phase", "position"])?;
+    if !at_point && members.get("position").is_some() {
+        let detail = "the frame has no position whose uncertainty this could be";
+        faults.note(&place.field("position"), Code::ConflictingFields, detail);
+    }
+    let phase = members.get("phase").map_or(Some(0.0), |node| {
+        uncertainty::number(node, &place.field("phase"), faults)
+    });
+    let mut vector = |name| match members.get(name) {
+        Some(node) => uncertainty::vector(node, &place.field(name), faults),
+        None => Covariance::of_standard([0.0; 3]).ok(),
+    };
+    let (angular_velocity, position) = (vector("angular_velocity"), vector("position"));
+    Some(Box::new(UncertainTurning {
+        angular_velocity: angular_velocity?,
+        phase: phase?,
+        position: position?,
+    }))
 }

@@ -1,12 +1,16 @@
 //! A frame that moves along a track: velocity and attitude at given times.
 
+use std::sync::Arc;
+
 use super::fault::Reason;
 use super::interpolate::{cosine, linear, slerp};
 use super::time::{Clock, Time};
 use crate::physics::boost::Motion;
+use crate::physics::covariance::Covariance;
 use crate::physics::lorentz::{Change, Step};
 use crate::physics::rotation::Turn;
 use crate::physics::scale::Scale;
+use crate::physics::uncertain::{Errors, UncertainStep};
 
 /// Samples of the motion of a frame as seen from its parent.
 #[derive(Clone, Debug)]
@@ -147,17 +151,37 @@ impl Track {
             .saturating_sub(1)
     }
 
-    /// The steps from the parent to the frame: a boost, then a turn.
-    pub fn steps(&self, sample: &Sample) -> Vec<Step> {
+    /// The steps from the parent to the frame: a boost, then a turn. `source` is what a budget
+    /// calls their errors.
+    pub fn steps(&self, sample: &Sample, source: &dyn Fn() -> String) -> Vec<Step> {
         let boost = Change::Boost(Motion::Velocity {
             value: sample.velocity,
             beta: self.beta,
         });
         let turn = Change::Rotate(Turn::Quaternion(sample.attitude));
-        let has = [(self.moves, boost), (self.turns, turn)];
+        let part = |offset: usize| {
+            let all = sample.uncertainty?;
+            let own = std::array::from_fn(|i| all[offset + i]);
+            Covariance::of_standard(own).ok()
+        };
+        let axes = |angles| Errors::Axes {
+            angles,
+            radians: self.radians,
+        };
+        let has = [
+            (self.moves, boost, part(0).map(Errors::Velocity)),
+            (self.turns, turn, part(3).map(axes)),
+        ];
+        let step = |change, errors: Option<Errors>| Step {
+            uncertainty: errors.map(|errors| {
+                let source = source();
+                Arc::new(UncertainStep { errors, source })
+            }),
+            ..Step::exact(change)
+        };
         has.into_iter()
-            .filter(|(has, _)| *has)
-            .map(|(_, change)| Step::exact(change))
+            .filter(|(has, ..)| *has)
+            .map(|(_, change, errors)| step(change, errors))
             .collect()
     }
 }

@@ -203,10 +203,10 @@ fn steps_at(
     let frame = &walk.frames[frame];
     match &frame.link {
         Link::Steps(steps) => Ok(steps.clone()),
-        Link::Turning(turning) => Ok(turning.steps(time)),
+        Link::Turning(turning) => Ok(turning.steps(time, &|| frame.pointer("turning"))),
         Link::Track(track) => {
             let sample = track.sample(time, hint);
-            let steps = track.steps(&sample);
+            let steps = track.steps(&sample, &|| frame.pointer("track"));
             if sample.beyond != 0.0 {
                 outside(track, &frame.name, time, sample.beyond, notices)?;
             }

@@ -3,7 +3,7 @@
 use super::double_double::Dd;
 use super::error::Impossible;
 use super::quaternion::Quaternion;
-use super::real::{Real, exponent_spread, norm2, vector};
+use super::real::{Real, dot, exponent_spread, norm2, round, vector};
 use super::rotation::{about_axis, half_of_quarters};
 use super::scale::Scale;
 
@@ -73,5 +73,47 @@ impl Spin {
         let rest = (quarters - R::new(whole, context)) * R::pi(context).scale2(-1);
         let half = half_of_quarters(rest, (whole % 4.0) as i32);
         about_axis(self.angular_velocity, half, context)
+    }
+
+    /// How small angles about the turned axes, in rad, follow from errors of ω and of the phase:
+    /// a row for each angle, a column for each component of ω in its unit, and one for the phase.
+    ///
+    /// With n = ω/|ω| and the whole angle θ they are n δθ + sin θ δn − (1 − cos θ) n×δn, the right
+    /// Jacobian of the rotation vector (Chirikjian, Stochastic Models, Information Theory, and Lie
+    /// Groups 2, 2012, §10.3).
+    pub fn angle_sensitivities(&self) -> [[f64; 4]; 3] {
+        let turn = self.quaternion::<Dd>(());
+        let omega = vector::<Dd>(self.angular_velocity, ());
+        let length = norm2(&omega).sqrt();
+        let n = round(&omega.map(|x| x / length));
+        let along = dot(&turn.v, &omega) / length;
+        let two = Dd::from_f64(2.0);
+        let sin = (two * turn.w * along / turn.norm2()).to_f64();
+        let versine = (two * norm2(&turn.v) / turn.norm2()).to_f64();
+        let length = length.to_f64();
+        let turned = (self.rate.value::<Dd>(()) * self.elapsed).to_f64();
+        let across = |i: usize, j: usize| -> f64 {
+            // (n×e_j)_i
+            match (3 + i - j) % 3 {
+                0 => 0.0,
+                1 => n[(j + 2) % 3],
+                _ => -n[(j + 1) % 3],
+            }
+        };
+        let per_omega = |i: usize, j: usize| {
+            let own = if i == j { 1.0 } else { 0.0 };
+            let tilt = sin * (own - n[i] * n[j]) - versine * across(i, j);
+            n[i] * n[j] * turned + tilt / length
+        };
+        let radians = self.radians.to_f64();
+        std::array::from_fn(|i| {
+            std::array::from_fn(|j| {
+                if j < 3 {
+                    per_omega(i, j)
+                } else {
+                    n[i] * radians
+                }
+            })
+        })
     }
 }

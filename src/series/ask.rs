@@ -17,7 +17,7 @@ use super::way::{self, Taken, Template, Way};
 const KNOWN: [&str; 3] = ["keep", "on_error", "end"];
 
 /// Parts of a question that have no place in a series, and why.
-const NOT_HERE: [(&str, &str); 5] = [
+const NOT_HERE: [(&str, &str); 6] = [
     ("e", "is read from the rows"),
     ("b", "is read from the rows"),
     (
@@ -26,6 +26,10 @@ const NOT_HERE: [(&str, &str); 5] = [
     ),
     (
         "signature",
+        "has no place in a series; ask /v1/transform for it",
+    ),
+    (
+        "uncertainty",
         "has no place in a series; ask /v1/transform for it",
     ),
     (

@@ -15,24 +15,6 @@ from service import BINARY, Service, by_url
 EPOCH = 'epoch = "T0"\n'
 
 
-@pytest.fixture
-def start(tmp_path):
-    """Starts the service with a catalogue and its tracks."""
-    running = []
-
-    def with_catalogue(text, **tracks):
-        folder = tmp_path / f"catalogue{len(running)}"
-        folder.mkdir()
-        (folder / "frames.toml").write_text(text)
-        for name, rows in tracks.items():
-            (folder / f"{name}.csv").write_text(rows)
-        running.append(Service(folder / "log.txt", "--frames", folder / "frames.toml"))
-        return running[-1]
-
-    yield with_catalogue
-    assert [service.stop() for service in running] == [0] * len(running)
-
-
 def rotation(net):
     return Rotation.from_quat([net["rotation"][name] for name in "xyzw"])
 
