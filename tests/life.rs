@@ -140,3 +140,33 @@ fn every_limit_is_explained_to_whoever_runs_it() {
     }
     assert!(count >= 10, "{count} limits in\n{limits}");
 }
+
+#[test]
+fn a_series_without_an_end_is_told_that_the_service_stops() {
+    let running = Running::start(&["--grace", "300ms"]);
+    let mut stream = running.connect();
+    let row = "{\"e\":[1,2,3],\"b\":[4,5,6]}\n";
+    let head = "POST /v1/series?velocity=7,8,9 HTTP/1.1\r\nhost: localhost\r\n\
+         content-type: application/x-ndjson\r\ntransfer-encoding: chunked\r\n\r\n";
+    write!(stream, "{head}{:x}\r\n{row}\r\n", row.len()).expect("it reads");
+    // The first row is answered while the series goes on.
+    let mut answer = Vec::new();
+    while !answer.ends_with(b"}\n\r\n") {
+        let mut byte = [0];
+        stream.read_exact(&mut byte).expect("it answers");
+        answer.push(byte[0]);
+    }
+    running.terminate();
+    let begun = std::time::Instant::now();
+    let mut last = String::new();
+    // The connection is cut, properly or not, after the last word.
+    let _ = stream.read_to_string(&mut last);
+    assert!(begun.elapsed() >= Duration::from_millis(300), "grace");
+    assert!(last.contains("{\"row\":2,\"problem\":{"), "{last}");
+    assert!(last.contains("/problems/stopping"), "{last}");
+    assert!(
+        !last.contains("\r\n0\r\n"),
+        "not as if it were whole: {last}"
+    );
+    assert_eq!(running.end().0, Some(0));
+}

@@ -188,6 +188,9 @@ codes! {
     Internal "internal" 500 "A fault of the service",
         "The service failed in a way its authors did not foresee. The question was not the cause.",
         "Report the instance id to whoever runs the service.";
+    Stopping "stopping" 503 "The service stops",
+        "The service was told to stop, and the time that it gives to what still runs is over.",
+        "Send the rows that have no answer again: another replica, or the next start, answers them.";
     Overloaded "overloaded" 503 "Too busy",
         "The service has as much work as it takes on at once.",
         "Wait as long as Retry-After says and send the request again.";

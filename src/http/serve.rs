@@ -1,6 +1,6 @@
 //! Connections: from a listening socket to the router, and the graceful end.
 
-use std::{io, sync::Arc, time::Duration};
+use std::{io, pin::pin, sync::Arc, time::Duration};
 
 use axum::Router;
 use hyper::server::conn::http1;
@@ -13,6 +13,7 @@ use tokio::{
     io::{AsyncRead, AsyncWrite},
     net::TcpListener,
     sync::{OwnedSemaphorePermit, Semaphore},
+    time::timeout,
 };
 use tokio_rustls::TlsAcceptor;
 
@@ -22,9 +23,12 @@ use super::{AppState, doorstep::Doorstep, lazy_timer::LazyTimer, log};
 /// answered with a problem, and no more, since every connection may fill it.
 const READ_BUFFER: usize = 64 * 1024;
 
+/// How long a series may take for its last word after the grace.
+const LAST_WORD: Duration = Duration::from_secs(1);
+
 /// Serves `app` on `listener` until `stop` is done, then lets running requests finish.
 ///
-/// Connections that are still busy after `--grace` are cut.
+/// A series that still runs after `--grace` ends with a last word; what is busy even then is cut.
 pub async fn serve(
     listener: TcpListener,
     app: Router,
@@ -40,7 +44,7 @@ pub async fn serve(
     let doorstep = Doorstep::new();
     let tls = config.tls.clone().map(TlsAcceptor::from);
     let connections = GracefulShutdown::new();
-    let mut stop = std::pin::pin!(stop);
+    let mut stop = pin!(stop);
     loop {
         let accepted = tokio::select! {
             accepted = listener.accept() => accepted,
@@ -71,7 +75,7 @@ pub async fn serve(
                 tokio::spawn(converse(stream, http, app, watcher, place));
             }
             Some(tls) => {
-                let handshake = tokio::time::timeout(config.idle_timeout, tls.accept(stream));
+                let handshake = timeout(config.idle_timeout, tls.accept(stream));
                 tokio::spawn(async move {
                     match handshake.await {
                         Ok(Ok(stream)) => converse(stream, http, app, watcher, place).await,
@@ -83,10 +87,13 @@ pub async fn serve(
         }
     }
     drop(listener);
-    if tokio::time::timeout(config.grace, connections.shutdown())
-        .await
-        .is_err()
-    {
+    let mut done = pin!(connections.shutdown());
+    if timeout(config.grace, &mut done).await.is_ok() {
+        return;
+    }
+    // What still runs may be a series without an end: it says so to its client.
+    state.ending.send_replace(true);
+    if timeout(LAST_WORD, done).await.is_err() {
         log::event(
             "warn",
             "stopped",

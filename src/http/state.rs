@@ -3,6 +3,7 @@
 use std::sync::Arc;
 
 use bytes::Bytes;
+use tokio::sync::watch;
 
 use super::{metrics::Metrics, openapi};
 use crate::{config::Config, frames::Catalogue, pool::Pool, question::Deployment};
@@ -23,6 +24,8 @@ pub struct Shared {
     pub metrics: Metrics,
     /// The OpenAPI document, as served.
     pub openapi: Bytes,
+    /// Turns true when series that still run must come to their end.
+    pub ending: watch::Sender<bool>,
 }
 
 impl AppState {
@@ -37,6 +40,7 @@ impl AppState {
             pool: Pool::of_all_cores(),
             metrics: Metrics::new(),
             openapi: openapi::text().into(),
+            ending: watch::Sender::new(false),
         }))
     }
 }

@@ -9,7 +9,7 @@ use axum::{
 use bytes::Bytes;
 use http_body_util::BodyExt;
 use tokio::{
-    sync::oneshot,
+    sync::{oneshot, watch},
     task::{JoinError, JoinHandle},
     time::timeout,
 };
@@ -44,6 +44,8 @@ pub(super) struct Drive {
     head: Option<oneshot::Sender<Result<(), Problem>>>,
     /// Blocks being answered, in order.
     working: VecDeque<JoinHandle<Done>>,
+    /// Whether the service must come to its end.
+    ending: watch::Receiver<bool>,
 }
 
 /// Counts the series among the requests that run, for as long as it does.
@@ -59,6 +61,8 @@ enum Failure {
     Broken,
     /// Nobody reads the answer any more.
     Gone,
+    /// The service was told to stop, and its grace is over.
+    Ending,
 }
 
 /// What happened next.
@@ -67,6 +71,7 @@ enum Event {
     Answered(Done),
     Read,
     Gone,
+    Ending,
 }
 
 impl Drive {
@@ -79,6 +84,7 @@ impl Drive {
         head: oneshot::Sender<Result<(), Problem>>,
     ) -> Drive {
         state.metrics.enter();
+        let ending = state.ending.subscribe();
         Drive {
             running: Running(state),
             intake,
@@ -88,6 +94,7 @@ impl Drive {
             unread,
             head: Some(head),
             working: VecDeque::new(),
+            ending,
         }
     }
 
@@ -156,6 +163,7 @@ impl Drive {
             match timeout(idle, self.next(room && !ended)).await {
                 Err(_) => return Err(Failure::Idle),
                 Ok(Event::Gone) => return Err(Failure::Gone),
+                Ok(Event::Ending) => return Err(Failure::Ending),
                 Ok(Event::Read) => {}
                 Ok(Event::Answered(done)) => self.accept(done)?,
                 Ok(Event::Arrived(Some(bytes))) => {
@@ -220,6 +228,7 @@ impl Drive {
             body,
             working,
             unread,
+            ending,
             ..
         } = self;
         let full = unread.is_full();
@@ -231,6 +240,7 @@ impl Drive {
         };
         tokio::select! {
             biased;
+            _ = ending.wait_for(|ending| *ending) => Event::Ending,
             done = first => {
                 working.pop_front();
                 Event::Answered(answered(done))
@@ -286,6 +296,10 @@ impl Failure {
                      pauses, and read while you send",
                     idle.as_secs_f64()
                 ),
+            ),
+            Failure::Ending => Fault::whole(
+                Code::Stopping,
+                "the service was told to stop; send the rows that have no answer again",
             ),
             Failure::Broken | Failure::Gone => Fault::whole(
                 Code::Syntax,

@@ -27,6 +27,8 @@ pub(super) struct Answer {
     parts: mpsc::UnboundedReceiver<Part>,
     shared: Arc<Shared>,
     whole: bool,
+    /// Whether it broke off, and the connection was asked to send what came before.
+    broken: bool,
 }
 
 enum Part {
@@ -49,6 +51,7 @@ pub(super) fn channel(most: usize) -> (Unread, Answer) {
         parts: receiver,
         shared: shared.clone(),
         whole: false,
+        broken: false,
     };
     let unread = Unread {
         parts: sender,
@@ -106,6 +109,12 @@ impl hyper::body::Body for Answer {
             Some(Part::End(trailers)) => {
                 self.whole = true;
                 (!trailers.is_empty()).then(|| Ok(Frame::trailers(trailers)))
+            }
+            // What came before, the last word too, is sent on before the error is looked at.
+            None if !self.broken => {
+                self.broken = true;
+                cx.waker().wake_by_ref();
+                return Poll::Pending;
             }
             // An error cuts the connection, so that nobody takes the answer for whole.
             None => Some(Err(io::Error::other("the series broke off"))),
