@@ -3,7 +3,7 @@
 mod assess;
 mod uncertainty;
 
-pub use uncertainty::Uncertainty;
+pub use uncertainty::{Ellipsoid, Measure, Uncertainty};
 
 use std::borrow::Cow;
 

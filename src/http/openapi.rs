@@ -114,6 +114,7 @@ fn answer_examples() -> Vec<(&'static str, Value)> {
         ("NoFrame", plane_wave["parallel_frame"].clone()),
         ("Notice", plane_wave["notices"][0].clone()),
         ("Columns", swept["e"].clone()),
+        ("UncertainColumns", swept["uncertainty"].clone()),
         ("Swept", swept),
         ("Provenance", full["provenance"].clone()),
         ("Answer", full),

@@ -87,6 +87,6 @@ fn list(points: &[Point]) -> String {
 }
 
 /// To a hundredth of a pixel.
-fn px(x: f64) -> f64 {
+pub(super) fn px(x: f64) -> f64 {
     (x * 100.0).round() / 100.0 + 0.0
 }

@@ -1,19 +1,22 @@
 //! A reading before and after: E and B as arrows on three axes, in two panels of one scale.
 
+use std::sync::Arc;
+
 use svg::node::element::Group;
 
 use super::draw::{Anchor, Point, line, sheet, text};
 use super::number::{component, short, vector};
 use super::space::{Pen, View};
 use super::ticks::round_up;
-use crate::answer::{Answer, NetTransformation};
+use crate::answer::{Answer, Ellipsoid, NetTransformation};
 use crate::physics::resolved::Resolved;
 use crate::question::Question;
-use crate::transform::transform;
 use crate::units::Quantity;
 
 const WIDTH: f64 = 400.0;
 const PANEL: f64 = 196.0;
+/// Ellipses longer than this many half axes would leave the panel, and are not drawn.
+const LARGEST_OUTLINE: f64 = 1.5;
 /// Turns smaller than this, in radians, cannot be seen.
 const VISIBLE_TURN: f64 = 0.02;
 
@@ -27,6 +30,8 @@ struct Shown {
     unit: String,
     before: Known,
     after: Known,
+    /// Coverage ellipsoids of the two, where they are known.
+    coverage: [Option<Ellipsoid>; 2],
     /// What the half axes stand for.
     reach: f64,
     colour: &'static str,
@@ -34,7 +39,12 @@ struct Shown {
 }
 
 impl Shown {
-    fn new(question: &Question, quantity: Quantity, before: Known, after: Known) -> Shown {
+    fn new(
+        question: &Question,
+        quantity: Quantity,
+        [before, after]: [Known; 2],
+        coverage: [Option<Ellipsoid>; 2],
+    ) -> Shown {
         let electric = quantity == Quantity::E;
         let largest = [before, after]
             .into_iter()
@@ -51,6 +61,7 @@ impl Shown {
             unit: question.answer_units.get(quantity).code.into(),
             before,
             after,
+            coverage,
             reach: if largest > 0.0 {
                 round_up(largest)
             } else {
@@ -61,7 +72,8 @@ impl Shown {
         }
     }
 
-    fn arrow(&self, view: &View, v: Known, prime: &str) -> Option<Group> {
+    fn arrow(&self, view: &View, which: usize) -> Option<Group> {
+        let (v, prime) = [(self.before, ""), (self.after, "′")][which];
         let label = format!("{}{prime}", self.name);
         let pen = Pen {
             colour: self.colour,
@@ -69,16 +81,35 @@ impl Shown {
             label,
         };
         let v = known(v)?.map(|x| x / self.reach);
-        Some(view.arrow(v, &pen))
+        let arrow = view.arrow(v, &pen);
+        let Some(ellipsoid) = &self.coverage[which] else {
+            return Some(arrow);
+        };
+        let half_axes: [[f64; 3]; 3] = std::array::from_fn(|i| {
+            let length = ellipsoid.half_axes[i] / self.reach;
+            ellipsoid.directions[i].map(|x| x * length)
+        });
+        let longest = ellipsoid.half_axes[0] / self.reach;
+        if longest > LARGEST_OUTLINE {
+            return Some(arrow);
+        }
+        let class = format!("region full-{0} {0}", self.colour);
+        Some(arrow.add(view.outline(v, half_axes, &class)))
     }
 }
 
 /// The picture of an answered question.
 pub fn reading(question: &Question, answer: &Answer) -> String {
-    let (e, b) = as_read(question);
+    let read = as_read(question);
+    let coverage = |answer: Option<&Answer>| match answer.and_then(|a| a.uncertainty.as_ref()) {
+        Some(found) => [found.coverage.e.clone(), found.coverage.b.clone()],
+        None => [None, None],
+    };
+    let ([e0, b0], [e1, b1]) = (coverage(read.as_ref()), coverage(Some(answer)));
+    let (e, b) = read.map_or(([None; 3], [None; 3]), |read| (read.e, read.b));
     let shown = [
-        Shown::new(question, Quantity::E, e, answer.e),
-        Shown::new(question, Quantity::B, b, answer.b),
+        Shown::new(question, Quantity::E, [e, answer.e], [e0, e1]),
+        Shown::new(question, Quantity::B, [b, answer.b], [b0, b1]),
     ];
     let view = |left: f64| View {
         origin: (left + PANEL / 2.0, 136.0),
@@ -101,13 +132,8 @@ pub fn reading(question: &Question, answer: &Answer) -> String {
         content = content.add(motion);
     }
     for shown in &shown {
-        for arrow in [
-            shown.arrow(&before, shown.before, ""),
-            shown.arrow(&after, shown.after, "′"),
-        ]
-        .into_iter()
-        .flatten()
-        {
+        let arrows = [shown.arrow(&before, 0), shown.arrow(&after, 1)];
+        for arrow in arrows.into_iter().flatten() {
             content = content.add(arrow);
         }
     }
@@ -124,11 +150,13 @@ pub fn reading(question: &Question, answer: &Answer) -> String {
 
 /// The reading in its own frame, in the units of the answer: calibrated and completed, if it was
 /// to be.
-fn as_read(question: &Question) -> (Known, Known) {
-    let nowhere = Resolved::new(Vec::new());
-    let restated =
-        nowhere.and_then(|nowhere| transform(&nowhere, &question.reading, question.target_units()));
-    restated.map_or(([None; 3], [None; 3]), |field| (field.e, field.b))
+fn as_read(question: &Question) -> Option<Answer> {
+    let nowhere = Resolved::new(Vec::new()).ok()?;
+    let read = Question {
+        way: Arc::new(nowhere),
+        ..question.clone()
+    };
+    Answer::to(&read).ok()
 }
 
 /// The axes of the target as they stand on those of the reading, when they are turned.
@@ -191,7 +219,15 @@ fn scales(
     let reach = shown
         .each_ref()
         .map(|field| format!("{} {} {}", field.name, short(field.reach, 3), field.unit));
-    let words = format!("Each half axis: {}, {}", reach[0], reach[1]);
+    let uncertain = shown
+        .iter()
+        .any(|field| field.coverage.iter().any(Option::is_some));
+    let ellipses = if uncertain {
+        "; ellipses: 95 % coverage"
+    } else {
+        ""
+    };
+    let words = format!("Each half axis: {}, {}{ellipses}", reach[0], reach[1]);
     content
         .add(text("soft", (10.0, 256.0), Anchor::Start, words))
         .add(text(

@@ -1,8 +1,8 @@
 //! Three axes seen from a fixed direction, and arrows on them.
 
-use svg::node::element::{Circle, Group};
+use svg::node::element::{Circle, Ellipse, Group};
 
-use super::draw::{Anchor, Point, line, polygon, text};
+use super::draw::{Anchor, Point, line, polygon, px, text};
 
 /// A parallel projection: x towards the viewer and to the left, y to the right, z up.
 #[derive(Clone, Copy)]
@@ -53,6 +53,29 @@ impl View {
                 .add(text("soft", (end.0, end.1 + 4.0), Anchor::Middle, name));
         }
         group
+    }
+
+    /// The outline of an ellipsoid about the tip of an arrow, by its half axes.
+    pub(super) fn outline(&self, tip: [f64; 3], half_axes: [[f64; 3]; 3], class: &str) -> Ellipse {
+        let sheet = half_axes.map(|axis| {
+            let (x, y) = self.at(axis);
+            (x - self.origin.0, y - self.origin.1)
+        });
+        let sum = |of: fn(Point) -> f64| sheet.into_iter().map(of).sum::<f64>();
+        // The projection of Σ aᵢaᵢᵀ, and its principal axes.
+        let (xx, yy) = (sum(|(x, _)| x * x), sum(|(_, y)| y * y));
+        let xy = sum(|(x, y)| x * y);
+        let (mean, apart) = (0.5 * (xx + yy), libm::hypot(0.5 * (xx - yy), xy));
+        let angle = 0.5 * libm::atan2(2.0 * xy, xx - yy);
+        let (cx, cy) = self.at(tip);
+        let turn = format!("rotate({} {} {})", px(angle.to_degrees()), px(cx), px(cy));
+        Ellipse::new()
+            .set("class", class)
+            .set("cx", px(cx))
+            .set("cy", px(cy))
+            .set("rx", px((mean + apart).sqrt()))
+            .set("ry", px((mean - apart).max(0.0).sqrt()))
+            .set("transform", turn)
     }
 
     /// An arrow with its letter, and how it stands over the plane of x and y.

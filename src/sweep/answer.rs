@@ -4,7 +4,7 @@ use serde::{Deserialize, Serialize};
 use utoipa::ToSchema;
 
 use super::{Over, Sweep};
-use crate::answer::{Answer, AnswerUnits, Notice, Provenance};
+use crate::answer::{Answer, AnswerUnits, Measure, Notice, Provenance};
 use crate::chain;
 use crate::document::{Fault, Place};
 use crate::question::{Deployment, Question};
@@ -27,10 +27,22 @@ pub struct Swept {
     pub e: Columns,
     /// Magnetic flux density B' at each value, in `units.b`.
     pub b: Columns,
+    /// Standard uncertainties of `e` and `b` at each value, when anything in the question is uncertain.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub uncertainty: Option<UncertainColumns>,
     /// Remarks that a careful colleague would make, each once, with the first value that it is about.
     pub notices: Vec<Notice>,
     /// What the answer was made with.
     pub provenance: Provenance,
+}
+
+/// Standard uncertainties at each value of a sweep.
+#[derive(Clone, Debug, Default, Serialize, Deserialize, ToSchema)]
+pub struct UncertainColumns {
+    /// Of E', in `units.e`.
+    pub e: Columns,
+    /// Of B', in `units.b`.
+    pub b: Columns,
 }
 
 /// A vector at each value of a sweep; null where it depends on something missing.
@@ -58,15 +70,18 @@ impl Columns {
     }
 
     fn push(&mut self, v: [Option<f64>; 3]) {
-        self.x.push(v[0]);
-        self.y.push(v[1]);
-        self.z.push(v[2]);
         let length = match v {
             [Some(x), Some(y), Some(z)] => Some(libm::hypot(libm::hypot(x, y), z)),
             _ => None,
         };
-        self.magnitude
-            .push(length.filter(|length| length.is_finite()));
+        self.push_with(v, length.filter(|length| length.is_finite()));
+    }
+
+    fn push_with(&mut self, v: [Option<f64>; 3], magnitude: Option<f64>) {
+        self.x.push(v[0]);
+        self.y.push(v[1]);
+        self.z.push(v[2]);
+        self.magnitude.push(magnitude);
     }
 }
 
@@ -77,6 +92,7 @@ impl Sweep {
     /// At some value a component of the answer is larger than the largest double.
     pub fn answer(&self, deployment: &Deployment) -> Result<Swept, Vec<Fault>> {
         let (mut e, mut b) = (Columns::default(), Columns::default());
+        let mut uncertainty: Option<UncertainColumns> = None;
         let mut notices: Vec<Notice> = Vec::new();
         let mut tree = self.tree.clone();
         let mut provenance = None;
@@ -91,6 +107,12 @@ impl Sweep {
             })?;
             e.push(answer.e);
             b.push(answer.b);
+            if let Some(found) = &answer.uncertainty {
+                let of = |measure: &Option<Measure>| measure.as_ref().map(|m| m.uncertainty);
+                let columns = uncertainty.get_or_insert_default();
+                columns.e.push_with(found.e, of(&found.magnitudes.e));
+                columns.b.push_with(found.b, of(&found.magnitudes.b));
+            }
             for notice in answer.notices {
                 if notices.iter().all(|known| known.code != notice.code) {
                     let detail = format!("at {here}: {}", notice.detail);
@@ -116,6 +138,7 @@ impl Sweep {
             },
             e,
             b,
+            uncertainty,
             notices,
             provenance: provenance.expect("a sweep has at least two points"),
         })
@@ -124,26 +147,29 @@ impl Sweep {
 
 impl Swept {
     /// The columns as CSV (RFC 4180): the quantity that runs, the components of E' and B' and
-    /// their lengths. What is missing is empty.
+    /// their lengths, then their standard uncertainties. What is missing is empty.
     pub fn csv(&self) -> String {
-        let columns = [("e", &self.e), ("b", &self.b)];
-        let columns = columns.map(|(field, columns)| {
+        let mut fields = vec![("e", &self.e), ("b", &self.b)];
+        if let Some(uncertainty) = &self.uncertainty {
+            fields.extend([("u_e", &uncertainty.e), ("u_b", &uncertainty.b)]);
+        }
+        let columns = fields.into_iter().flat_map(|(field, columns)| {
             let named = columns.named();
             named.map(|(name, values)| match name {
                 "magnitude" => (format!("{field}_magnitude"), values),
                 _ => (format!("{field}{name}"), values),
             })
         });
-        let columns = columns.as_flattened();
+        let columns: Vec<_> = columns.collect();
         let mut text = self.over.clone();
-        for (name, _) in columns {
+        for (name, _) in &columns {
             text.push(',');
             text.push_str(name);
         }
         text.push_str("\r\n");
         for (i, value) in self.values.iter().enumerate() {
             text.push_str(&number(*value));
-            for (_, values) in columns {
+            for (_, values) in &columns {
                 text.push(',');
                 text.push_str(&values[i].map(number).unwrap_or_default());
             }

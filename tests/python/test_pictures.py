@@ -72,6 +72,42 @@ def test_arrows_point_where_the_field_does(service, way):
             assert abs(float(panel[0].get(origin)) + along - tip) < 0.1, name
 
 
+def test_ellipses_are_the_outlines_of_the_coverage_ellipsoids(service):
+    """The outline of an ellipsoid reaches, in every direction u of the sheet, √Σ(u·Paᵢ)² from its middle,
+
+    its half axes aᵢ projected by P, which the drawn axes tell (support function of an ellipsoid: Boyd and
+    Vandenberghe, Convex Optimization, 2004, §8.4).
+    """
+    question = READING | {"boost": {"beta": [0, 3e-5, 0], "uncertainty": [3e-6, 1e-6, 2e-6]},
+                          "uncertainty": {"e": [30, 20, 50], "b": {"covariance": [
+                              [9e6, 4e6, 0], [4e6, 2.5e7, -3e6], [0, -3e6, 1e7]]}}}
+    answer, picture = service.ask(question), draw(service, question)
+    axes = [line for line in picture.iter(f"{SVG}line") if line.get("class") == "axis"]
+    reach = next(word for word in texts(picture) if word.startswith("Each half axis"))
+    assert reach.endswith("; ellipses: 95 % coverage")
+    scales = {word.split()[0]: float(word.split()[1]) for word in reach.split(": ")[1].split("; ")[0].split(", ")}
+    ellipses = [element for element in picture.iter(f"{SVG}ellipse")]
+    assert len(ellipses) == 4
+    # Before and after, E and B.
+    for element, (name, panel, prime) in zip(ellipses, [("e", 0, ""), ("e", 3, "′"), ("b", 0, ""), ("b", 3, "′")]):
+        if not prime:
+            continue
+        columns = [[float(axis.get(a)) - float(axis.get(b)) for axis in axes[panel:panel + 3]]
+                   for a, b in (("x2", "x1"), ("y2", "y1"))]
+        ellipsoid = answer["uncertainty"]["coverage"][name]
+        angle = math.radians(float(element.get("transform").split("(")[1].split()[0]))
+        rx, ry = float(element.get("rx")), float(element.get("ry"))
+        for k in range(8):
+            u = (math.cos(k * math.pi / 8), math.sin(k * math.pi / 8))
+            expected = math.sqrt(sum(
+                (half / scales[name.upper()] * sum(u[i] * sum(x * y for x, y in zip(direction, columns[i]))
+                                                   for i in range(2))) ** 2
+                for half, direction in zip(ellipsoid["half_axes"], ellipsoid["directions"])))
+            along = u[0] * math.cos(angle) + u[1] * math.sin(angle)
+            aside = -u[0] * math.sin(angle) + u[1] * math.cos(angle)
+            assert abs(math.hypot(rx * along, ry * aside) - expected) < 0.05
+
+
 @pytest.mark.parametrize("scale", ["linear", "log"])
 def test_curves_pass_where_the_columns_say(service, scale):
     """Pixels are a straight line against values, or against their logarithms."""

@@ -89,6 +89,26 @@ def test_csv_holds_the_same_numbers(service):
             assert float(row[f"{field}_magnitude"]) == columns[field]["magnitude"][i]
 
 
+def test_uncertainties_are_those_of_the_readings_asked_alone(service):
+    """Those of a single reading are checked against outside references; here every point of a range has them."""
+    question = {"e": [1.5, -2, 0.25], "b": [1e-8, 0, 2e-8],
+                "uncertainty": {"e": [0.1, 0.2, 0.3], "b": [1e-10, 2e-10, 1e-10],
+                                "boost": {"value": 0.01, "direction": 0.02}}}
+    direction = {"direction": [1, 2, -2]}
+    over = {"over": "rapidity", "start": -1, "stop": 2, "points": 5}
+    url = by_url(question | {"boost": direction} | over, "/v1/sweep")
+    columns = service.get(url).json
+    rows = list(csv.DictReader(io.StringIO(service.get(url, Accept="text/csv").body.decode(), newline="")))
+    for i, rapidity in enumerate(columns["values"]):
+        alone = service.post(question | {"boost": direction | {"rapidity": rapidity}}).json["uncertainty"]
+        for field in "eb":
+            own = columns["uncertainty"][field]
+            assert [own[axis][i] for axis in "xyz"] == alone[field]
+            assert own["magnitude"][i] == alone["magnitudes"][field]["uncertainty"]
+            assert [float(rows[i][f"u_{field}{axis}"]) for axis in "xyz"] == alone[field]
+            assert float(rows[i][f"u_{field}_magnitude"]) == own["magnitude"][i]
+
+
 def test_a_cache_can_keep_it(service):
     """RFC 9110 § 13.1.2: If-None-Match with the tag is answered 304."""
     reply = asked(service, "angle", 5)[0]

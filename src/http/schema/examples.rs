@@ -88,7 +88,8 @@ pub fn answer_to(question: Value) -> Answer {
 /// What the service answers to the examples of the parameters of a sweep.
 pub fn swept() -> Swept {
     let query = "over=beta&start=0&stop=0.99&points=5&e=0,1.2,0&b=0,0,45000\
-                 &units.e=mV/m&units.b=nT&units.velocity=km/s&boost.direction=1,0,0";
+                 &units.e=mV/m&units.b=nT&units.velocity=km/s&boost.direction=1,0,0\
+                 &uncertainty.e=0.1,0.1,0.1";
     let node = from_query(query).expect("an example is a query");
     let sweep = Sweep::read(node, &DEPLOYMENT, 10).expect("an example is right");
     sweep.answer(&DEPLOYMENT).expect("an example has an answer")
