@@ -3,7 +3,8 @@
 import { hasToken } from "./access.js";
 import { showAnswer, sentence } from "./answer.js";
 import { ask, forget, picture } from "./ask.js";
-import { all, one, settled } from "./dom.js";
+import { all, el, one, settled } from "./dom.js";
+import { wireFile } from "./file.js";
 import { clearFaults, showFaults } from "./faults.js";
 import { chooseForm, loadFrames, loadNames, named, readNames } from "./frames.js";
 import { chosenUnits, empty, loadUnits, numbers, read, unitChoice } from "./fields.js";
@@ -46,20 +47,29 @@ function lacking(e, b) {
   return `Fill in step ${blank + 1} of the way${more}.`;
 }
 
-/** The question as it stands in the fields; null until there is a reading and a way. */
-function question() {
-  const { e, b } = read(one("#reading-fields"));
-  if (lacking(e, b)) return null;
+/** The units and the way as they stand in the fields. */
+function way() {
   const units = chosenUnits(work);
   const answer_units = Object.fromEntries(
     all("#answer-units select").filter((select) => select.value !== "").map((select) => [select.dataset.answer, select.value]));
   return {
-    ...(empty(e) ? {} : { e }),
-    ...(empty(b) ? {} : { b }),
     ...(Object.keys(units).length ? { units } : {}),
     ...(Object.keys(answer_units).length ? { answer_units } : {}),
     ...(named() ? readNames() : { steps: readSteps(steps) }),
     ...read(one("#whole")),
+  };
+}
+
+/** The question as it stands in the fields; null until there is a reading and a way. */
+function question() {
+  const { e, b, uncertainty } = read(one("#reading-fields"));
+  if (lacking(e, b)) return null;
+  const known = Object.entries(uncertainty).filter(([, value]) => !empty(value));
+  return {
+    ...(empty(e) ? {} : { e }),
+    ...(empty(b) ? {} : { b }),
+    ...way(),
+    ...(known.length ? { uncertainty: Object.fromEntries(known) } : {}),
   };
 }
 
@@ -112,9 +122,9 @@ async function drawPicture(answer) {
 /** Puts a question into the fields. */
 function load(given) {
   for (const input of all("#reading input")) {
-    const [field, i] = input.dataset.path.split("/");
-    input.value = given[field]?.[i] ?? "";
+    input.value = input.dataset.path.split("/").reduce((at, name) => at?.[name], given) ?? "";
   }
+  one("#reading details").open = Boolean(given.uncertainty);
   const way = given.steps
     ?? (given.boost ? [{ boost: given.boost }] : given.velocity ? [{ boost: { velocity: given.velocity } }]
       : given.rotation ? [{ rotate: given.rotation }] : null);
@@ -164,7 +174,7 @@ function wire() {
   const soon = settled(update, QUIET);
   work.addEventListener("input", (event) => {
     event.target.closest?.(".step")?.setAttribute("data-touched", "");
-    if (event.target.closest("#paste-field, #range")) return;
+    if (event.target.closest("#paste-field, #range, #file-drop, #file-way")) return;
     soon();
   });
   one("#paste").addEventListener("paste", () => setTimeout(pasted));
@@ -187,6 +197,7 @@ function wire() {
   one("#range").addEventListener("toggle", redraw);
   one("#range-save").onclick = () => range.save(asked);
   one("#range-copy").onclick = (event) => copy(event.target, location.origin + range.address(asked));
+  wireFile(way);
   window.addEventListener("hashchange", reopen);
 }
 
@@ -205,7 +216,10 @@ async function start() {
   const xyz = ["x", "y", "z"];
   one("#reading-fields").append(
     numbers({ label: "E, electric field", path: "e", names: xyz, unit: "e" }),
-    numbers({ label: "B, magnetic flux density", path: "b", names: xyz, unit: "b" }));
+    numbers({ label: "B, magnetic flux density", path: "b", names: xyz, unit: "b" }),
+    el("details", {}, el("summary", {}, "Standard uncertainties"),
+      numbers({ label: "of E, in its unit", path: "uncertainty/e", names: xyz }),
+      numbers({ label: "of B, in its unit", path: "uncertainty/b", names: xyz })));
   addStep(steps, "boost");
   for (const select of all("#answer-units select")) {
     const codes = [...unitChoice(select.dataset.answer).options].map((option) => option.cloneNode(true));

@@ -24,6 +24,7 @@ export function showFaults(problem, root, rest) {
       continue;
     }
     (field.closest(".field") ?? field).append(note);
+    for (let at = field.closest("details"); at; at = at.parentElement.closest("details")) at.open = true;
     const inputs = field.matches("input, select") ? [field] : all("input:not([type=checkbox])", field);
     for (const input of inputs) {
       input.setAttribute("aria-invalid", "true");

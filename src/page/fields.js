@@ -96,5 +96,6 @@ function put(tree, path, value) {
 /** Whether a value holds nothing that was typed. */
 export function empty(value) {
   if (Array.isArray(value)) return value.every(empty);
+  if (value && Object.getPrototypeOf(value) === Object.prototype) return Object.values(value).every(empty);
   return value === null || value === undefined || value === "";
 }

@@ -4,6 +4,9 @@
 const SLICE = 256 * 1024;
 const NEWLINE = 10, RETURN = 13, QUOTE = 34, COMMA = 44;
 
+/** How the service ends a refused row: its number, then its problem. Inside a text the quotes would be escaped. */
+const REFUSED = /"row":(\d+),"problem":\{"type":"\/problems\//g;
+
 /** The places where rows end. In CSV a quoted value may hold line ends. */
 function* rowEnds(bytes, csv) {
   let quoted = false;
@@ -69,7 +72,7 @@ export function ndjsonRows(bytes, before) {
   let rows = bytes.subarray(0, start);
   if (refused > 0 && before > 0) {
     const text = new TextDecoder().decode(rows);
-    rows = new TextEncoder().encode(text.replace(/^\{"row": ?(\d+)/gm, (_, row) => `{"row": ${Number(row) + before}`));
+    rows = new TextEncoder().encode(text.replace(REFUSED, (_, row) => `"row":${Number(row) + before},"problem":{"type":"/problems/`));
   }
   return { rows, read, refused };
 }

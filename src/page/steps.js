@@ -37,6 +37,18 @@ const FORMS = {
   },
 };
 
+/** The fields of what is uncertain about a form of a step. */
+function uncertain(kind, form) {
+  if (kind === "rotate") return [vector("small turns about the new axes", "uncertainty", "angle")];
+  if (form === "velocity") return [vector("of the velocity", "uncertainty", "velocity")];
+  if (form === "beta") return [vector("of the velocity over c", "uncertainty")];
+  if (form === "angular_velocity") {
+    return [vector("of the angular velocity", "uncertainty/angular_velocity", "angular_velocity"),
+      vector("of the place of the point", "uncertainty/position", "length")];
+  }
+  return [number("of the speed, as it is given", "uncertainty/value"), number("of the direction", "uncertainty/direction", "angle")];
+}
+
 const TITLES = { boost: "Motion", rotate: "Turn" };
 const SIDES = {
   boost: { label: "this is the motion", path: "inverse", flag: true, options: [
@@ -61,7 +73,9 @@ export function addStep(list, kind, form = Object.keys(FORMS[kind])[0]) {
   const fill = () => {
     step.dataset.form = one("select", forms).value;
     const [, ...fields] = FORMS[kind][step.dataset.form];
-    body.replaceChildren(...fields.map(({ kind: make, ...field }) => make(field)));
+    const make = ({ kind: field, ...its }) => field(its);
+    body.replaceChildren(...fields.map(make),
+      el("details", {}, el("summary", {}, "Standard uncertainty"), ...uncertain(kind, step.dataset.form).map(make)));
   };
   one("select", forms).addEventListener("input", fill);
   list.append(step);
@@ -86,11 +100,14 @@ function remove(step) {
 const changed = (at) => at.dispatchEvent(new Event("input", { bubbles: true }));
 
 /** The steps as they stand in a question. */
-export const readSteps = (list) => all(".step", list).map((step) => ({ [step.dataset.kind]: read(step) }));
+export const readSteps = (list) => all(".step", list).map((step) => {
+  const { uncertainty, ...content } = read(step);
+  return { [step.dataset.kind]: empty(uncertainty) ? content : { ...content, uncertainty } };
+});
 
 /** Whether nothing has been typed into a step yet. */
 export function untouched(step) {
-  return all("input[data-path]", step).some((input) => empty(input.value)) && !step.dataset.touched;
+  return all("input[data-path]", step).filter((input) => !input.dataset.path.startsWith("uncertainty")).some((input) => empty(input.value)) && !step.dataset.touched;
 }
 
 /** Rebuilds the steps of a question. */

@@ -102,7 +102,7 @@ def test_all_digits_are_there_on_demand(page, service):
     "time,ex,ey,ez,bx,by,bz\n5,0,1.2,0,0,0,45000\n", "bz,by,bx,ez,ey,ex\n45000,0,0,0,1.2,0"])
 def test_a_line_is_taken_apart(page, line):
     paste(page, line)
-    values = page.run("return [...document.querySelectorAll('#reading-fields input')].map(input => input.value)")
+    values = page.run("return [...document.querySelectorAll('#reading-fields > .field input')].map(input => input.value)")
     assert values == ["0", "1.2", "0", "0", "0", "45000"]
 
 
@@ -295,6 +295,30 @@ def test_the_question_is_copied_as_curl_and_as_a_link_that_reopens_it(page, serv
     page.open(link)
     answered(page)
     assert shown(page) == before
+
+
+def test_uncertainties_are_entered_beside_what_they_belong_to(page, service):
+    enter_reading(page)
+    page.choose('select[data-unit="velocity"]', "km/s")
+    page.type('[data-path="velocity/0"]', "7.6")
+    page.run("for (const part of document.querySelectorAll('details')) part.open = true")
+    for path, value in (("uncertainty/e", "0.1"), ("uncertainty/b", "5")):
+        for i in range(3):
+            page.type(f'[data-path="{path}/{i}"]', value)
+    for i in range(3):
+        page.type(f'.step [data-path="uncertainty/{i}"]', "0.01")
+    page.until("return /±/.test(document.querySelector('#answer-fields').textContent)")
+    answer = service.ask({"e": [0, 1.2, 0], "b": [0, 0, 45000], "units": {"e": "mV/m", "b": "nT", "velocity": "km/s"},
+                          "steps": [{"boost": {"velocity": [7.6, 0, 0], "uncertainty": [0.01, 0.01, 0.01]}}],
+                          "uncertainty": {"e": [0.1, 0.1, 0.1], "b": [5, 5, 5]}})
+    u = answer["uncertainty"]["e"][1]
+    decimals = 1 - math.floor(math.log10(u))
+    page.until_text("#answer-fields", f"{answer['e'][1]:.{decimals}f} ± {u:.{decimals}f}")
+    page.screenshot(SHOTS / "uncertainty.png")
+    page.type('[data-path="uncertainty/e/1"]', "-1")
+    page.until("return document.querySelector('.fault')")
+    group = page.run("return document.querySelector('.fault').closest('.field').getAttribute('aria-label')")
+    assert group == "of E, in its unit"
 
 
 def test_digits_are_sent_as_they_were_typed(page):

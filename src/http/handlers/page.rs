@@ -36,10 +36,12 @@ const FILES: &[File] = files![
     "dom.js" "text/javascript",
     "faults.js" "text/javascript",
     "fields.js" "text/javascript",
+    "file.js" "text/javascript",
     "frames.js" "text/javascript",
     "numbers.js" "text/javascript",
     "paste.js" "text/javascript",
     "range.js" "text/javascript",
+    "slices.js" "text/javascript",
     "steps.js" "text/javascript",
 ];
 
