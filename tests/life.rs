@@ -156,8 +156,8 @@ fn a_series_without_an_end_is_told_that_the_service_stops() {
         stream.read_exact(&mut byte).expect("it answers");
         answer.push(byte[0]);
     }
-    running.terminate();
     let begun = std::time::Instant::now();
+    running.terminate();
     let mut last = String::new();
     // The connection is cut, properly or not, after the last word.
     let _ = stream.read_to_string(&mut last);
