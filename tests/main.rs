@@ -3,6 +3,7 @@
 
 mod access;
 mod arithmetic;
+mod arrow;
 mod block;
 mod corpus;
 mod covariance;

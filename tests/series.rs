@@ -11,9 +11,12 @@ use serde_json::{Value, json};
 
 const NDJSON: Format = Format::Ndjson;
 const CSV: Format = Format::Csv;
-const LIMITS: Limits = Limits { row: 4096 };
+const LIMITS: Limits = Limits {
+    row: 4096,
+    batch: 1 << 20,
+};
 
-pub(crate) fn deployment() -> Deployment {
+fn deployment() -> Deployment {
     let file = concat!(env!("CARGO_MANIFEST_DIR"), "/deploy/demo/frames.toml");
     let catalogue = lodeframe::frames::load(std::path::Path::new(file));
     Deployment {
@@ -22,7 +25,7 @@ pub(crate) fn deployment() -> Deployment {
     }
 }
 
-fn series(query: &str) -> Series {
+pub(crate) fn series(query: &str) -> Series {
     let node = from_query(query).expect("a query");
     Series::read(node, &deployment()).unwrap_or_else(|faults| panic!("{query}: {faults:?}"))
 }
@@ -41,7 +44,7 @@ fn in_pieces(
     let mut accept = |job| {
         let job: Option<lodeframe::series::Job> = job?;
         if let Some(job) = job {
-            answer.extend(outlet.accept(job.run()));
+            answer.extend(outlet.accept(job.run()).concat());
         }
         Ok(())
     };
@@ -54,7 +57,7 @@ fn in_pieces(
     };
     let refusal = all().err();
     if refusal.is_none() {
-        answer.extend(outlet.end());
+        answer.extend(outlet.end().concat());
     }
     (String::from_utf8(answer).expect("UTF-8"), refusal)
 }

@@ -173,6 +173,9 @@ codes! {
     RowTooLong "row_too_long" 413 "A row that is too long",
         "A row of a series is longer than the service holds at once. What came before it is answered; nothing after it.",
         "Check that rows end with a line (LF or CRLF), and leave out long texts; whoever runs the service can allow longer rows.";
+    BatchTooLarge "batch_too_large" 413 "A batch that is too large",
+        "A batch of rows of an Arrow stream is larger than the service holds at once.",
+        "Write smaller batches; whoever runs the service can allow larger ones.";
     UriTooLong "uri_too_long" 414 "The address is too long",
         "The path and query are longer than the limit the detail names.",
         "Ask the same question as JSON by POST.";

@@ -38,6 +38,18 @@ impl Time {
         })
     }
 
+    /// A whole number of ticks since 1970-01-01T00:00:00Z, of which a power of ten, up to 10⁹,
+    /// make a second.
+    pub fn from_ticks(ticks: i64, per_second: i64) -> Time {
+        let fraction = per_second + ticks.rem_euclid(per_second);
+        // As the same time reads in decimal digits, behind the leading one.
+        let digits = fraction.to_string();
+        Time {
+            seconds: ticks.div_euclid(per_second),
+            fraction: decimal_fraction(&digits.as_bytes()[1..]),
+        }
+    }
+
     /// An RFC 3339 date and time; `Err` says what is wrong with it. The fraction of a second may
     /// have any number of digits and is kept to 2⁻¹⁰⁶ of itself.
     pub fn from_rfc3339(text: &str) -> Result<Time, &'static str> {

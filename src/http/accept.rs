@@ -11,6 +11,8 @@ pub const JSON: &str = "application/json";
 pub const CSV: &str = "text/csv";
 /// Rows, a JSON object a line.
 pub const NDJSON: &str = "application/x-ndjson";
+/// Rows, in batches of columns.
+pub const ARROW: &str = "application/vnd.apache.arrow.stream";
 /// A picture.
 pub const SVG: &str = "image/svg+xml";
 /// A page for people.

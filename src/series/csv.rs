@@ -11,7 +11,7 @@ use crate::frames::{Clock, Time};
 use super::Series;
 use super::block::{Block, MISSING, Takes};
 use super::carry::Carried;
-use super::header::{Header, Use};
+use super::header::{Column, Header};
 use super::names::Role;
 use super::number;
 use super::scan::Span;
@@ -128,10 +128,12 @@ impl<'s> Reader<'s> {
         let mut count = 0;
         loop {
             let rest = &text[at..];
-            let column = self.header.uses.get(count);
+            let column = self.header.columns.get(count);
             count += 1;
             let end = match column {
-                Some(Use::Ours(role)) => {
+                Some(Column {
+                    role: Some(role), ..
+                }) => {
                     let (value, end) = number_field(rest);
                     if let Role::Field(i) = role {
                         line.field[*i] = Span {
@@ -142,14 +144,15 @@ impl<'s> Reader<'s> {
                     self.take(*role, value, &rest[..end], count - 1, row);
                     end
                 }
-                Some(Use::Passes(Some(cell))) => {
-                    let end = field_end(rest);
-                    let text = unquoted(&rest[..end]);
-                    cells[*cell] = (!text.is_empty()).then_some(text);
-                    end
-                }
                 _ => field_end(rest),
             };
+            if let Some(Column {
+                cell: Some(cell), ..
+            }) = column
+            {
+                let text = unquoted(&rest[..end]);
+                cells[*cell] = (!text.is_empty()).then_some(text);
+            }
             at += end;
             if text.get(at) != Some(&b',') {
                 break;
@@ -163,7 +166,7 @@ impl<'s> Reader<'s> {
             _ => at + 1,
         };
         line.length = at;
-        let width = self.header.uses.len();
+        let width = self.header.columns.len();
         line.whole = count == width;
         if !line.whole {
             let detail = format!("the row has {count} fields and the header {width}");

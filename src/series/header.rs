@@ -6,20 +6,20 @@ use super::Series;
 use super::names::{self, COLUMNS, Role};
 use super::way::{Taken, Way};
 
-/// What a column is for.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub(super) enum Use {
-    /// One of ours, and needed.
-    Ours(Role),
-    /// It only passes through, or goes along to another format as the cell of this number.
-    Passes(Option<usize>),
-}
-
 /// The columns of a table, in their order.
 #[derive(Clone, Debug)]
 pub(super) struct Header {
     pub(super) names: Vec<String>,
-    pub(super) uses: Vec<Use>,
+    pub(super) columns: Vec<Column>,
+}
+
+/// What a column is for.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) struct Column {
+    /// What its values count for, if they do.
+    pub(super) role: Option<Role>,
+    /// The cell in which it goes along to another format, if it does.
+    pub(super) cell: Option<usize>,
 }
 
 impl Header {
@@ -58,30 +58,30 @@ impl Header {
             let detail = format!("keep names {name:?}, and there is no such column");
             faults.push(at(name, Code::MissingField, detail));
         }
-        let uses = names.iter().map(|name| match names::role(name) {
-            Some(role) if needed(role, series) => Use::Ours(role),
-            _ => Use::Passes(cells.iter().position(|cell| cell == name)),
-        });
-        let uses = uses.collect();
-        if faults.is_empty() {
-            Ok(Header { names, uses })
-        } else {
-            Err(faults)
+        if !faults.is_empty() {
+            return Err(faults);
         }
+        let columns = names.iter().map(|name| Column {
+            role: names::role(name).filter(|role| needed(*role, series)),
+            cell: cells.iter().position(|cell| cell == name),
+        });
+        let columns = columns.collect();
+        Ok(Header { names, columns })
     }
 
     /// The components of the field, in the order of their columns.
     pub(super) fn fields_in_order(&self) -> Vec<usize> {
-        let fields = self.uses.iter().filter_map(|what| match what {
-            Use::Ours(Role::Field(i)) => Some(*i),
+        let fields = self.columns.iter().filter_map(|column| match column.role {
+            Some(Role::Field(i)) => Some(i),
             _ => None,
         });
         fields.collect()
     }
 
-    /// Whether there are columns of E (0) or B (3).
-    pub(super) fn has_field(&self, first: usize) -> bool {
-        self.uses.contains(&Use::Ours(Role::Field(first)))
+    /// The column of a component of the field.
+    pub(super) fn place_of_field(&self, i: usize) -> Option<usize> {
+        let mut columns = self.columns.iter();
+        columns.position(|column| column.role == Some(Role::Field(i)))
     }
 }
 

@@ -2,23 +2,23 @@
 
 use std::sync::Arc;
 
-use bytes::Bytes;
-
 use crate::document::{Code, Fault, Node};
 
-use super::block::Block;
-use super::carry::Carried;
+use super::arrow::{Frames, Table};
 use super::cut::Cutter;
 use super::header::Header;
-use super::outlet::Done;
-use super::print::{self, Columns};
-use super::{Format, Series, csv, ndjson};
+use super::job::{Input, Job, Plan, Rows};
+use super::print::Columns;
+use super::run::BLOCK;
+use super::{Format, Series, csv};
 
 /// How much a series may hold at once.
 #[derive(Clone, Copy, Debug)]
 pub struct Limits {
-    /// Longest row, bytes.
+    /// Longest row of text, bytes.
     pub row: usize,
+    /// Largest batch of Arrow, bytes.
+    pub batch: usize,
 }
 
 /// Why a series cannot go on.
@@ -32,111 +32,141 @@ pub struct Refusal {
 #[derive(Debug)]
 pub struct Intake {
     series: Arc<Series>,
-    input: Format,
     output: Format,
     limits: Limits,
-    cutter: Cutter,
+    source: Source,
     /// Known once the header, or the first row, has come.
     plan: Option<Arc<Plan>>,
     /// What the answer begins with.
     preamble: Vec<u8>,
     begun: bool,
+    /// Whether any job was given.
+    given: bool,
+    /// What is wrong with bytes taken, of which whole rows came before.
+    refusal: Option<Refusal>,
 }
 
-/// What is the same for all jobs of a series.
+/// What has come and is not yet cut off.
 #[derive(Debug)]
-struct Plan {
-    series: Arc<Series>,
-    input: Input,
-    /// `None` when rows are answered in their own text.
-    anew: Option<(Format, Columns)>,
-}
-
-#[derive(Debug)]
-enum Input {
-    Ndjson,
-    Csv(Header, &'static [u8]),
-}
-
-/// A block of whole rows, to be answered on any thread.
-#[derive(Debug)]
-pub struct Job {
-    plan: Arc<Plan>,
-    text: Bytes,
-    preamble: Vec<u8>,
+enum Source {
+    Text(Format, Cutter),
+    Arrow(Box<Frames>),
 }
 
 const LF: &[u8] = b"\n";
 const CRLF: &[u8] = b"\r\n";
+/// The mark that some programs put before UTF-8.
+const BOM: &[u8] = b"\xef\xbb\xbf";
 
 impl Intake {
     /// Rows of one format, to be answered in another or the same.
     pub fn new(series: Arc<Series>, input: Format, output: Format, limits: Limits) -> Intake {
+        let source = match input {
+            Format::Ndjson | Format::Csv => Source::Text(input, Cutter::new(input == Format::Csv)),
+            Format::Arrow => Source::Arrow(Box::new(Frames::new(limits.batch))),
+        };
         Intake {
             series,
-            input,
             output,
             limits,
-            cutter: Cutter::new(input == Format::Csv),
+            source,
             plan: None,
             preamble: Vec::new(),
             begun: false,
+            given: false,
+            refusal: None,
         }
     }
 
     /// Takes more bytes.
     pub fn push(&mut self, bytes: &[u8]) {
-        self.cutter.push(bytes);
+        match &mut self.source {
+            Source::Text(_, cutter) => cutter.push(bytes),
+            Source::Arrow(frames) if self.refusal.is_none() => {
+                self.refusal = frames.push(bytes).map_err(Refusal::of).err();
+            }
+            Source::Arrow(_) => {}
+        }
     }
 
-    /// How many bytes wait to be cut off.
-    pub fn waiting(&self) -> usize {
-        self.cutter.waiting()
+    /// Whether enough waits for a job of the usual size.
+    pub fn is_full(&self) -> bool {
+        match &self.source {
+            Source::Text(_, cutter) => cutter.waiting() >= BLOCK,
+            Source::Arrow(frames) => frames.is_ready() || self.refusal.is_some(),
+        }
     }
 
-    /// A job of all whole rows that wait, if they have at least so many bytes.
+    /// The next job of whole rows that wait, if they have at least so many bytes; batches are jobs
+    /// as they are.
     ///
     /// # Errors
-    /// The header is wrong, or a row is too long.
+    /// The header is wrong, a row or batch is too long, or the bytes are none of the format.
     pub fn job(&mut self, least: usize) -> Result<Option<Job>, Refusal> {
-        if !self.begin(false)? {
-            return self.not_too_long().map(|()| None);
-        }
-        let whole = self.cutter.whole();
-        if whole == 0 {
-            return self.not_too_long().map(|()| None);
-        }
-        if whole < least {
-            return Ok(None);
-        }
-        let text = self.cutter.cut();
-        Ok(self.of(text))
+        let begun = self.begin(false)?;
+        let rows = match &mut self.source {
+            Source::Text(_, cutter) => {
+                let whole = if begun { cutter.whole() } else { 0 };
+                if whole == 0 {
+                    return self.not_too_long().map(|()| None);
+                }
+                (whole >= least).then(|| Rows::Text(cutter.cut()))
+            }
+            Source::Arrow(frames) => {
+                match (begun.then(|| frames.next()).flatten(), &self.refusal) {
+                    (None, Some(refusal)) => return Err(refusal.clone()),
+                    (batch, _) => batch.map(Rows::Batch),
+                }
+            }
+        };
+        Ok(rows.and_then(|rows| self.of(rows)))
     }
 
-    /// The last job, once all bytes have come; the last row need not end with a line.
+    /// The next job once all bytes have come, until there is none; the last row of a text need not
+    /// end with a line.
     ///
     /// # Errors
-    /// The header is wrong, or missing.
+    /// As for [`job`](Self::job), or the bytes end too early.
     pub fn last(&mut self) -> Result<Option<Job>, Refusal> {
         self.begin(true)?;
-        let text = self.cutter.rest();
-        if text.is_empty() && self.preamble.is_empty() {
-            return Ok(None);
-        }
-        Ok(self.of(text))
+        let rows = match &mut self.source {
+            Source::Text(_, cutter) => {
+                let text = cutter.rest();
+                let more = !text.is_empty() || !self.preamble.is_empty();
+                // Also a stream of batches without rows has its columns.
+                let columns = self.output == Format::Arrow && !self.given;
+                (more || columns).then_some(Rows::Text(text))
+            }
+            Source::Arrow(frames) => match frames.next() {
+                Some(batch) => Some(Rows::Batch(batch)),
+                None => {
+                    if let Some(refusal) = &self.refusal {
+                        return Err(refusal.clone());
+                    }
+                    frames.end().map_err(Refusal::of)?;
+                    let schema = frames.schema().filter(|_| !self.given);
+                    schema.map(|schema| Rows::Batch(arrow_array::RecordBatch::new_empty(schema)))
+                }
+            },
+        };
+        Ok(rows.and_then(|rows| self.of(rows)))
     }
 
-    fn of(&mut self, text: Bytes) -> Option<Job> {
+    fn of(&mut self, rows: Rows) -> Option<Job> {
+        self.given = true;
         let plan = self.plan.clone()?;
         Some(Job {
             plan,
-            text,
+            rows,
             preamble: std::mem::take(&mut self.preamble),
         })
     }
 
     fn not_too_long(&self) -> Result<(), Refusal> {
-        let (length, most) = (self.cutter.unfinished(), self.limits.row);
+        let (Source::Text(_, cutter), most) = (&self.source, self.limits.row) else {
+            return Ok(());
+        };
+        let length = cutter.unfinished();
         if length <= most {
             return Ok(());
         }
@@ -152,25 +182,41 @@ impl Intake {
         if self.plan.is_some() {
             return Ok(true);
         }
-        if !self.begun {
-            if self.cutter.waiting() < BOM.len() && !all {
+        if let (Source::Text(_, cutter), false) = (&mut self.source, self.begun) {
+            if cutter.waiting() < BOM.len() && !all {
                 return Ok(false);
             }
-            self.cutter.strip(BOM);
+            cutter.strip(BOM);
             self.begun = true;
         }
-        let plan = match self.input {
-            Format::Ndjson => self.begin_ndjson(all),
-            Format::Csv => self.begin_csv(all)?,
+        let read = match self.source {
+            Source::Text(Format::Csv, _) => self.begin_csv(all)?,
+            Source::Text(..) => self.begin_ndjson(all),
+            Source::Arrow(_) => self.begin_arrow()?,
         };
+        let plan = read.map(|(input, anew)| Plan {
+            series: self.series.clone(),
+            input,
+            anew: anew.map(|columns| (self.output, columns)),
+        });
+        if let Some(Plan {
+            anew: Some((Format::Csv, columns)),
+            ..
+        }) = &plan
+        {
+            self.preamble = columns.header();
+        }
         self.plan = plan.map(Arc::new);
         Ok(self.plan.is_some())
     }
 
-    fn begin_csv(&mut self, all: bool) -> Result<Option<Plan>, Refusal> {
-        let row = match self.cutter.cut_first() {
+    fn begin_csv(&mut self, all: bool) -> Result<Option<(Input, Option<Columns>)>, Refusal> {
+        let Source::Text(_, cutter) = &mut self.source else {
+            return Ok(None);
+        };
+        let row = match cutter.cut_first() {
             Some(row) => row,
-            None if all => self.cutter.rest(),
+            None if all => cutter.rest(),
             None => return Ok(None),
         };
         let (row, line_end) = if let Some(row) = row.strip_suffix(CRLF) {
@@ -179,131 +225,69 @@ impl Intake {
             (row.strip_suffix(LF).unwrap_or(&row), LF)
         };
         let names = csv::names(row).map_err(Refusal::of)?;
-        let cells = match self.output {
-            Format::Csv => Vec::new(),
-            Format::Ndjson => self.cells(names.iter().any(|name| name == "time")),
-        };
+        let anew = self.output != Format::Csv;
+        let cells = self.cells(anew, |name| names.iter().any(|own| own == name));
         let header =
             Header::read(names, &self.series, &cells).map_err(|faults| Refusal { faults })?;
-        let anew = (self.output != Format::Csv).then(|| {
-            let field = [0, 3].map(|first| header.has_field(first));
-            (
-                self.output,
-                Columns {
-                    field,
-                    cells,
-                    line_end,
-                },
-            )
-        });
-        if anew.is_none() {
+        if !anew {
             self.preamble = [row, b",problem", line_end].concat();
         }
-        Ok(Some(Plan {
-            series: self.series.clone(),
-            input: Input::Csv(header, line_end),
-            anew,
-        }))
+        let columns = anew.then(|| Columns::of(&header, cells));
+        Ok(Some((Input::Csv(header, line_end), columns)))
     }
 
     /// In another format the answer has the columns that the first row asks for.
-    fn begin_ndjson(&mut self, all: bool) -> Option<Plan> {
-        let mut anew = None;
-        if self.output != Format::Ndjson {
-            let first = self.cutter.first(all)?.to_vec();
-            let node = Node::from_json(first.trim_ascii());
-            let has = |name: &str| match &node {
-                Ok(Node::Object(members)) => members.iter().any(|(own, _)| own == name),
-                _ => false,
-            };
-            let neither = !has("e") && !has("b");
-            let field = [has("e") || neither, has("b") || neither];
-            let cells = self.cells(has("time"));
-            let columns = Columns {
-                field,
-                cells,
-                line_end: CRLF,
-            };
-            self.preamble = columns.header();
-            anew = Some((self.output, columns));
+    fn begin_ndjson(&mut self, all: bool) -> Option<(Input, Option<Columns>)> {
+        let Source::Text(_, cutter) = &mut self.source else {
+            return None;
+        };
+        if self.output == Format::Ndjson {
+            return Some((Input::Ndjson, None));
         }
-        Some(Plan {
-            series: self.series.clone(),
-            input: Input::Ndjson,
-            anew,
-        })
+        let first = cutter.first(all)?.to_vec();
+        let node = Node::from_json(first.trim_ascii());
+        let has = |name: &str| match &node {
+            Ok(Node::Object(members)) => members.iter().any(|(own, _)| own == name),
+            _ => false,
+        };
+        let neither = !has("e") && !has("b");
+        let field = [has("e") || neither, has("b") || neither];
+        let cells = self.cells(true, has);
+        Some((Input::Ndjson, Some(Columns { field, cells })))
+    }
+
+    fn begin_arrow(&mut self) -> Result<Option<(Input, Option<Columns>)>, Refusal> {
+        let Source::Arrow(frames) = &mut self.source else {
+            return Ok(None);
+        };
+        let Some(schema) = frames.schema() else {
+            // What came before the schema was none.
+            return self.refusal.clone().map_or(Ok(None), Err);
+        };
+        let anew = self.output != Format::Arrow;
+        let cells = self.cells(anew, |name| schema.index_of(name).is_ok());
+        let table =
+            Table::read(&schema, &self.series, &cells).map_err(|faults| Refusal { faults })?;
+        let columns = anew.then(|| Columns::of(&table.header, cells));
+        let in_place = table.answered(&schema);
+        Ok(Some((Input::Arrow(table, in_place), columns)))
     }
 
     /// What goes along to another format.
-    fn cells(&self, time: bool) -> Vec<String> {
-        let time = time.then(|| "time".to_owned());
+    fn cells(&self, anew: bool, has: impl Fn(&str) -> bool) -> Vec<String> {
+        if !anew {
+            return Vec::new();
+        }
+        let time = has("time").then(|| "time".to_owned());
         let kept = self.series.keep.iter().filter(|name| *name != "time");
         time.into_iter().chain(kept.cloned()).collect()
     }
 }
-
-/// The mark that some programs put before UTF-8.
-const BOM: &[u8] = b"\xef\xbb\xbf";
 
 impl Refusal {
     pub(super) fn of(fault: Fault) -> Refusal {
         Refusal {
             faults: vec![fault],
         }
-    }
-}
-
-impl Job {
-    /// How many bytes of rows it holds.
-    pub fn bytes(&self) -> usize {
-        self.text.len()
-    }
-
-    /// Answers the rows.
-    pub fn run(self) -> Done {
-        let Plan {
-            series,
-            input,
-            anew,
-        } = &*self.plan;
-        let mut done = Done {
-            bytes: self.preamble,
-            ..Done::default()
-        };
-        done.bytes.reserve(self.text.len() + self.text.len() / 8);
-        let mut block = Block::default();
-        let cells = anew.as_ref().map_or(0, |(_, columns)| columns.cells.len());
-        let mut carried = Carried::new(cells);
-        let (text, stop) = (&self.text[..], series.stop);
-        match input {
-            Input::Ndjson => {
-                let mut reader =
-                    ndjson::Reader::new(series, anew.as_ref().map(|(_, c)| &c.cells[..]));
-                let lines = reader.read(text, &mut block, &mut carried);
-                block.solve(series);
-                if anew.is_none() {
-                    print::ndjson_in_place(text, &lines, &block, stop, &mut done);
-                }
-            }
-            Input::Csv(header, line_end) => {
-                let reader = csv::Reader::new(series, header, cells);
-                let lines = reader.read(text, &mut block, &mut carried);
-                block.solve(series);
-                if anew.is_none() {
-                    let lines = &lines[..];
-                    print::csv_in_place(text, lines, header, line_end, &block, stop, &mut done);
-                }
-            }
-        }
-        match anew {
-            Some((Format::Ndjson, columns)) => {
-                print::ndjson(columns, &block, &carried, stop, &mut done);
-            }
-            Some((Format::Csv, columns)) => {
-                print::csv(columns, &block, &carried, stop, &mut done);
-            }
-            None => {}
-        }
-        done
     }
 }

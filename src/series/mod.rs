@@ -5,6 +5,7 @@
 //! cuts them into [`Job`]s of whole rows; each job is answered on any thread by itself; an
 //! [`Outlet`] puts the answers in order, with the rows counted. [`run`] does all of it in process.
 
+mod arrow;
 mod ask;
 mod block;
 mod carry;
@@ -12,6 +13,7 @@ mod csv;
 mod cut;
 mod header;
 mod intake;
+mod job;
 mod names;
 mod ndjson;
 mod number;
@@ -23,7 +25,8 @@ mod scan;
 mod way;
 
 pub use ask::Series;
-pub use intake::{Intake, Job, Limits, Refusal};
+pub use intake::{Intake, Limits, Refusal};
+pub use job::Job;
 pub use outlet::{Counts, Done, Outlet};
 pub use run::{BLOCK, Failure, run};
 
@@ -34,4 +37,6 @@ pub enum Format {
     Ndjson,
     /// Comma-separated values with a header row (`text/csv`, RFC 4180).
     Csv,
+    /// Batches of columns (`application/vnd.apache.arrow.stream`).
+    Arrow,
 }

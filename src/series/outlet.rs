@@ -1,5 +1,10 @@
 //! Answers of blocks put in order, with the rows counted.
 
+use arrow_array::RecordBatch;
+use arrow_buffer::Buffer;
+use arrow_ipc::writer::StreamEncoder;
+use bytes::Bytes;
+
 use super::intake::Refusal;
 use super::problem;
 use super::{Format, Series};
@@ -9,6 +14,8 @@ use super::{Format, Series};
 pub struct Done {
     /// The rows as bytes.
     pub(super) bytes: Vec<u8>,
+    /// The rows as a batch.
+    pub(super) batch: Option<RecordBatch>,
     /// Where in the bytes the number of a row belongs, and which row of the block it is: only
     /// here, in order, is it known how many rows came before.
     pub(super) numbers: Vec<(usize, usize)>,
@@ -30,12 +37,13 @@ pub struct Counts {
 }
 
 /// Puts answers in order.
-#[derive(Debug)]
 pub struct Outlet {
     output: Format,
     end: bool,
     counts: Counts,
     stopped: bool,
+    /// Writes batches, once there is one.
+    encoder: Option<StreamEncoder>,
 }
 
 impl Outlet {
@@ -46,11 +54,12 @@ impl Outlet {
             end: series.end,
             counts: Counts::default(),
             stopped: false,
+            encoder: None,
         }
     }
 
-    /// The bytes of the next block. After a row that ended the series there are none.
-    pub fn accept(&mut self, done: Done) -> Vec<u8> {
+    /// The bytes of the next block, in pieces. After a row that ended the series there are none.
+    pub fn accept(&mut self, done: Done) -> Vec<Bytes> {
         if self.stopped {
             return Vec::new();
         }
@@ -59,8 +68,11 @@ impl Outlet {
         self.counts.answered += done.counts.answered;
         self.counts.refused += done.counts.refused;
         self.stopped = done.stopped;
+        if let Some(batch) = done.batch {
+            return self.encoded(&batch);
+        }
         if done.numbers.is_empty() {
-            return done.bytes;
+            return pieces(done.bytes);
         }
         let mut bytes = Vec::with_capacity(done.bytes.len() + 8 * done.numbers.len());
         let mut copied = 0;
@@ -71,7 +83,16 @@ impl Outlet {
             copied = place;
         }
         bytes.extend_from_slice(&done.bytes[copied..]);
-        bytes
+        pieces(bytes)
+    }
+
+    /// A batch as bytes; its columns are shared, not copied.
+    fn encoded(&mut self, batch: &RecordBatch) -> Vec<Bytes> {
+        let encoder = self.encoder.get_or_insert_with(|| {
+            StreamEncoder::try_new(&batch.schema()).expect("a schema that was read can be written")
+        });
+        let buffers = encoder.encode(batch);
+        joined(buffers.expect("a batch of the schema can be written"))
     }
 
     /// Whether a bad row ended the series.
@@ -85,31 +106,76 @@ impl Outlet {
     }
 
     /// What stands after the last row of a whole answer.
-    pub fn end(&self) -> Vec<u8> {
+    pub fn end(&mut self) -> Vec<Bytes> {
+        if let Some(encoder) = self.encoder.take() {
+            return joined(encoder.finish().expect("an end has no faults"));
+        }
         let Counts {
             read,
             answered,
             refused,
         } = self.counts;
         match self.output {
-            Format::Ndjson if self.end => format!(
-                "{{\"end\":{{\"read\":{read},\"answered\":{answered},\"refused\":{refused}}}}}\n"
-            )
-            .into_bytes(),
+            Format::Ndjson if self.end => pieces(
+                format!(
+                    "{{\"end\":{{\"read\":{read},\"answered\":{answered},\"refused\":{refused}}}}}\n"
+                )
+                .into_bytes(),
+            ),
             _ => Vec::new(),
         }
     }
 
     /// What can still be said in the answer when the series fails after it has begun: NDJSON has
     /// room for a problem, which no end follows.
-    pub fn failed(&self, refusal: &Refusal) -> Vec<u8> {
+    pub fn failed(&self, refusal: &Refusal) -> Vec<Bytes> {
         match self.output {
             Format::Ndjson => {
                 let row = self.counts.read + 1;
                 let problem = problem::as_json(&refusal.faults);
-                format!("{{\"row\":{row},\"problem\":{problem}}}\n").into_bytes()
+                pieces(format!("{{\"row\":{row},\"problem\":{problem}}}\n").into_bytes())
             }
-            Format::Csv => Vec::new(),
+            Format::Csv | Format::Arrow => Vec::new(),
         }
+    }
+}
+
+/// All of it in one piece, if there is any.
+fn pieces(bytes: Vec<u8>) -> Vec<Bytes> {
+    if bytes.is_empty() {
+        return Vec::new();
+    }
+    vec![bytes.into()]
+}
+
+/// Pieces smaller than this are copied together: each one costs more to send than to copy.
+const SMALL: usize = 4096;
+
+/// Buffers as bytes in few pieces, without a copy of the large ones.
+fn joined(buffers: Vec<Buffer>) -> Vec<Bytes> {
+    let mut pieces = Vec::new();
+    let mut small: Vec<u8> = Vec::new();
+    for buffer in buffers {
+        if buffer.len() < SMALL {
+            small.extend_from_slice(&buffer);
+            continue;
+        }
+        if !small.is_empty() {
+            pieces.push(std::mem::take(&mut small).into());
+        }
+        pieces.push(Bytes::from_owner(Shared(buffer)));
+    }
+    if !small.is_empty() {
+        pieces.push(small.into());
+    }
+    pieces
+}
+
+/// A buffer that columns share, as bytes.
+struct Shared(Buffer);
+
+impl AsRef<[u8]> for Shared {
+    fn as_ref(&self) -> &[u8] {
+        &self.0
     }
 }

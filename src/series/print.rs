@@ -16,11 +16,18 @@ pub(super) struct Columns {
     pub(super) field: [bool; 2],
     /// The names of what goes along: the time, if there is one, and what is kept.
     pub(super) cells: Vec<String>,
-    /// How lines of CSV end.
-    pub(super) line_end: &'static [u8],
 }
 
+/// How lines of CSV end that come from another format (RFC 4180).
+const CRLF: &[u8] = b"\r\n";
+
 impl Columns {
+    /// Those of a table, with what goes along.
+    pub(super) fn of(header: &Header, cells: Vec<String>) -> Columns {
+        let field = [0, 3].map(|first| header.place_of_field(first).is_some());
+        Columns { field, cells }
+    }
+
     /// The header row of CSV.
     pub(super) fn header(&self) -> Vec<u8> {
         let mut out = Vec::new();
@@ -36,18 +43,18 @@ impl Columns {
             }
             push_field(&mut out, name.as_bytes());
         }
-        out.extend_from_slice(self.line_end);
+        out.extend_from_slice(CRLF);
         out
     }
 
-    fn time_and_kept(&self) -> (&[String], &[String]) {
+    pub(super) fn time_and_kept(&self) -> (&[String], &[String]) {
         let time = self.cells.first().is_some_and(|name| name == "time");
         self.cells.split_at(usize::from(time))
     }
 }
 
 /// Goes through the rows of a block, and stops after the first bad one where that ends the series.
-fn each_row(
+pub(super) fn each_row(
     block: &Block,
     stop: bool,
     done: &mut Done,
@@ -264,7 +271,7 @@ pub(super) fn csv(
         if let Some(faults) = faults {
             push_field(out, problem::as_text(faults).as_bytes());
         }
-        out.extend_from_slice(columns.line_end);
+        out.extend_from_slice(CRLF);
     });
 }
 

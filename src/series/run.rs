@@ -44,12 +44,13 @@ pub fn run(
     loop {
         let length = read.read(&mut bytes)?;
         intake.push(&bytes[..length]);
-        let job = if length == 0 {
-            intake.last()
-        } else {
-            intake.job(BLOCK)
+        let next = |intake: &mut Intake| match length {
+            0 => intake.last(),
+            _ => intake.job(BLOCK),
         };
-        waiting.extend(job.map_err(Failure::Refused)?);
+        while let Some(job) = next(&mut intake).map_err(Failure::Refused)? {
+            waiting.push(job);
+        }
         // A few jobs a thread, so that none waits long for the slowest.
         if length == 0 || waiting.len() >= 4 * threads {
             let jobs = std::mem::take(&mut waiting);
@@ -58,15 +59,17 @@ pub fn run(
             } else {
                 pool.install(|| jobs.into_par_iter().map(Job::run).collect())
             };
-            for done in done {
-                write.write_all(&outlet.accept(done))?;
+            for piece in done.into_iter().flat_map(|done| outlet.accept(done)) {
+                write.write_all(&piece)?;
             }
         }
         if length == 0 || outlet.stopped() {
             break;
         }
     }
-    write.write_all(&outlet.end())?;
+    for piece in outlet.end() {
+        write.write_all(&piece)?;
+    }
     write.flush()?;
     Ok(outlet.counts())
 }

@@ -10,7 +10,7 @@ use crate::{
     document::{Code, from_query},
     http::{
         AppState,
-        accept::{CSV, NDJSON, negotiate},
+        accept::{ARROW, CSV, NDJSON, negotiate},
         problem::{CommonProblems, Problem, ProblemDocument, Source},
         schema::{Query, SeriesQuery, examples},
         stream,
@@ -19,7 +19,11 @@ use crate::{
 };
 
 /// The formats of rows, by media type.
-const FORMATS: [(&str, Format); 2] = [(NDJSON, Format::Ndjson), (CSV, Format::Csv)];
+const FORMATS: [(&str, Format); 3] = [
+    (NDJSON, Format::Ndjson),
+    (CSV, Format::Csv),
+    (ARROW, Format::Arrow),
+];
 
 /// Restate a stream or an archive of readings.
 ///
@@ -45,6 +49,7 @@ const FORMATS: [(&str, Format); 2] = [(NDJSON, Format::Ndjson), (CSV, Format::Cs
         content(
             (String = "application/x-ndjson", example = json!(examples::rows(Format::Ndjson))),
             (String = "text/csv", example = json!(examples::rows(Format::Csv))),
+            (Vec<u8> = "application/vnd.apache.arrow.stream"),
         ),
     ),
     responses(
@@ -52,6 +57,7 @@ const FORMATS: [(&str, Format); 2] = [(NDJSON, Format::Ndjson), (CSV, Format::Cs
             content(
                 (String = "application/x-ndjson", example = json!(examples::rows_answered(Format::Ndjson))),
                 (String = "text/csv", example = json!(examples::rows_answered(Format::Csv))),
+                (Vec<u8> = "application/vnd.apache.arrow.stream"),
             )),
         (status = 400, description = "The query, the header or the first rows cannot be understood", body = ProblemDocument, content_type = "application/problem+json"),
         (status = 406, description = "No acceptable representation", body = ProblemDocument, content_type = "application/problem+json"),
@@ -85,6 +91,7 @@ pub(crate) async fn series(
     let kind = match output {
         Format::Ndjson => HeaderValue::from_static(NDJSON),
         Format::Csv => HeaderValue::from_static("text/csv; charset=utf-8; header=present"),
+        Format::Arrow => HeaderValue::from_static(ARROW),
     };
     headers.insert(header::CONTENT_TYPE, kind);
     headers.insert(header::CACHE_CONTROL, HeaderValue::from_static("no-store"));

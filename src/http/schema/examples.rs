@@ -95,14 +95,20 @@ pub fn swept() -> Swept {
     sweep.answer(&DEPLOYMENT).expect("an example has an answer")
 }
 
-/// Rows of a probe on a satellite, each with its velocity.
+/// Enough for them.
+const LIMITS: Limits = Limits {
+    row: 1024,
+    batch: 1024,
+};
+
+/// Rows of a probe on a satellite as text, each with its velocity.
 pub fn rows(format: Format) -> &'static str {
     match format {
         Format::Ndjson => {
             "{\"time\":0,\"e\":[0,1.2,0],\"b\":[0,0,45000],\"velocity\":[7.6,0,0]}\n\
              {\"time\":1,\"e\":[0,1.3,0],\"b\":[0,90,45100],\"velocity\":[7.6,0.1,0]}\n"
         }
-        Format::Csv => {
+        _ => {
             "time,ex,ey,ez,bx,by,bz,vx,vy,vz\r\n\
              0,0,1.2,0,0,0,45000,7.6,0,0\r\n\
              1,0,1.3,0,0,90,45100,7.6,0.1,0\r\n"
@@ -116,14 +122,7 @@ pub fn rows_answered(format: Format) -> String {
     let node = from_query(query).expect("an example is a query");
     let series = Series::read(node, &DEPLOYMENT).expect("an example is right");
     let (rows, mut answer) = (rows(format).as_bytes(), Vec::new());
-    series::run(
-        series,
-        [format; 2],
-        Limits { row: 1024 },
-        1,
-        rows,
-        &mut answer,
-    )
-    .expect("an example has an answer");
+    series::run(series, [format; 2], LIMITS, 1, rows, &mut answer)
+        .expect("an example has an answer");
     String::from_utf8(answer).expect("an answer is UTF-8")
 }

@@ -106,7 +106,8 @@ impl Drive {
         match finished {
             Ok(()) => {
                 self.begin(Ok(()));
-                self.send(self.outlet.end());
+                let end = self.outlet.end();
+                self.send(end);
                 let numbers = [counts.read, counts.answered, counts.refused];
                 let pairs = TRAILERS.into_iter().zip(numbers).filter(|_| trailers);
                 let trailers: HeaderMap = pairs
@@ -176,7 +177,7 @@ impl Drive {
 
     /// Takes what has arrived already, up to a block; whether it is the end.
     async fn read_what_is_there(&mut self) -> Result<bool, Failure> {
-        while !self.all_arrived && self.intake.waiting() < BLOCK {
+        while !self.all_arrived && !self.intake.is_full() {
             let body = &mut self.body;
             let at_once = poll_fn(|cx| Poll::Ready(Pin::new(&mut *body).poll_frame(cx))).await;
             match at_once {
@@ -255,20 +256,21 @@ impl Drive {
 
     /// Sends the next answers.
     fn accept(&mut self, done: Done) -> Result<(), Failure> {
-        let bytes = self.outlet.accept(done);
-        if bytes.is_empty() {
+        let pieces = self.outlet.accept(done);
+        if pieces.is_empty() {
             return Ok(());
         }
         self.begin(Ok(()));
-        if self.send(bytes) {
+        if self.send(pieces) {
             Ok(())
         } else {
             Err(Failure::Gone)
         }
     }
 
-    fn send(&self, bytes: Vec<u8>) -> bool {
-        bytes.is_empty() || self.unread.send(Bytes::from(bytes))
+    /// Sends pieces of the answer; whether anyone is still there to read them.
+    fn send(&self, pieces: Vec<Bytes>) -> bool {
+        pieces.into_iter().all(|piece| self.unread.send(piece))
     }
 
     /// Says how the answer begins, if that was not said before.

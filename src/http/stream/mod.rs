@@ -34,6 +34,7 @@ pub(super) async fn answer(
     let [input, output] = formats;
     let limits = Limits {
         row: state.config.max_row,
+        batch: state.config.max_batch,
     };
     let outlet = Outlet::new(&series, output);
     let intake = Intake::new(Arc::new(series), input, output, limits);

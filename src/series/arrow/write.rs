@@ -1,0 +1,126 @@
+//! From solved blocks to batches.
+
+use std::sync::Arc;
+
+use arrow_array::{Array, ArrayRef, Float64Array, RecordBatch, StringArray};
+use arrow_buffer::NullBuffer;
+use arrow_schema::{Field, Schema, SchemaRef};
+
+use super::super::block::Block;
+use super::super::carry::Carried;
+use super::super::header::Header;
+use super::super::outlet::Done;
+use super::super::print::{Columns, each_row};
+use super::super::problem;
+
+/// Answers gathered row by row for one batch.
+#[derive(Debug, Default)]
+pub(in crate::series) struct Sheet {
+    field: [Vec<f64>; 6],
+    problems: Vec<Option<String>>,
+    cells: Vec<Vec<Option<String>>>,
+}
+
+impl Sheet {
+    /// With room for so many rows.
+    pub(in crate::series) fn with_rows(rows: usize) -> Sheet {
+        Sheet {
+            field: std::array::from_fn(|_| Vec::with_capacity(rows)),
+            problems: Vec::with_capacity(rows),
+            cells: Vec::new(),
+        }
+    }
+
+    /// Adds the rows of a block, with what goes along from another format.
+    pub(in crate::series) fn add(
+        &mut self,
+        block: Block,
+        carried: &Carried,
+        stop: bool,
+        done: &mut Done,
+    ) {
+        self.cells.resize_with(carried.columns, Vec::new);
+        let before = done.counts.read;
+        each_row(&block, stop, done, |row, faults, _| {
+            for (i, cells) in self.cells.iter_mut().enumerate() {
+                let cell = carried.cell(row, i);
+                cells.push(cell.map(|text| String::from_utf8_lossy(text).into_owned()));
+            }
+            self.problems.push(faults.map(problem::as_text));
+        });
+        let rows = (done.counts.read - before) as usize;
+        for (all, column) in self.field.iter_mut().zip(block.field) {
+            all.extend_from_slice(&column[..rows]);
+        }
+    }
+
+    /// The rows as a batch of columns that another format does not have.
+    pub(in crate::series) fn batch(self, columns: &Columns) -> RecordBatch {
+        let (time, _) = columns.time_and_kept();
+        let mut cells = columns.cells.iter().zip(self.cells);
+        let text = |(name, cells): (&String, Vec<Option<String>>)| {
+            (name.clone(), Arc::new(StringArray::from(cells)) as ArrayRef)
+        };
+        let mut all: Vec<(String, ArrayRef)> = cells.by_ref().take(time.len()).map(text).collect();
+        for (i, column) in self.field.into_iter().enumerate() {
+            if columns.field[i / 3] {
+                let name = ["ex", "ey", "ez", "bx", "by", "bz"][i];
+                all.push((name.to_owned(), doubles(column)));
+            }
+        }
+        all.extend(cells.map(text));
+        all.push((
+            "problem".to_owned(),
+            Arc::new(StringArray::from(self.problems)),
+        ));
+        let fields: Vec<Field> = all
+            .iter()
+            .map(|(name, column)| Field::new(name, column.data_type().clone(), true))
+            .collect();
+        let columns = all.into_iter().map(|(_, column)| column).collect();
+        RecordBatch::try_new(Arc::new(Schema::new(fields)), columns)
+            .expect("columns of one length and the types they say")
+    }
+}
+
+/// The batch with its field replaced, and its problems; the other columns are shared.
+pub(in crate::series) fn answered_in_place(
+    batch: &RecordBatch,
+    header: &Header,
+    schema: &SchemaRef,
+    sheet: Sheet,
+) -> RecordBatch {
+    let rows = sheet.problems.len();
+    let mut columns: Vec<ArrayRef> = batch
+        .columns()
+        .iter()
+        .map(|column| {
+            if column.len() == rows {
+                column.clone()
+            } else {
+                column.slice(0, rows)
+            }
+        })
+        .collect();
+    for (i, column) in sheet.field.into_iter().enumerate() {
+        if let Some(place) = header.place_of_field(i) {
+            columns[place] = doubles(column);
+        }
+    }
+    columns.push(Arc::new(StringArray::from(sheet.problems)));
+    RecordBatch::try_new(schema.clone(), columns)
+        .expect("columns of one length and the types of the schema")
+}
+
+/// Numbers of which NaN is missing.
+fn doubles(values: Vec<f64>) -> ArrayRef {
+    let known = values.iter().any(|x| x.is_nan()).then(|| {
+        let valid: NullBuffer = values
+            .iter()
+            .map(|x| !x.is_nan())
+            .collect::<Vec<bool>>()
+            .into();
+        valid
+    });
+    Arc::new(Float64Array::new(values.into(), known))
+}

@@ -1,0 +1,167 @@
+//! A block of whole rows, answered on any thread by itself.
+
+use std::sync::Arc;
+
+use arrow_array::RecordBatch;
+use arrow_schema::SchemaRef;
+use bytes::Bytes;
+
+use super::arrow::{Sheet, Table, answered_in_place};
+use super::block::Block;
+use super::carry::Carried;
+use super::header::Header;
+use super::outlet::Done;
+use super::print::{self, Columns};
+use super::{Format, Series, csv, ndjson};
+
+/// What is the same for all jobs of a series.
+#[derive(Debug)]
+pub(super) struct Plan {
+    pub(super) series: Arc<Series>,
+    pub(super) input: Input,
+    /// How rows are answered that are not answered in place.
+    pub(super) anew: Option<(Format, Columns)>,
+}
+
+/// How rows are read.
+#[derive(Debug)]
+pub(super) enum Input {
+    Ndjson,
+    /// With how its lines end.
+    Csv(Header, &'static [u8]),
+    /// With the schema of batches answered in place.
+    Arrow(Table, SchemaRef),
+}
+
+/// A block of whole rows, to be answered on any thread.
+#[derive(Debug)]
+pub struct Job {
+    pub(super) plan: Arc<Plan>,
+    pub(super) rows: Rows,
+    /// What the answer begins with.
+    pub(super) preamble: Vec<u8>,
+}
+
+/// The rows of a job.
+#[derive(Debug)]
+pub(super) enum Rows {
+    Text(Bytes),
+    Batch(RecordBatch),
+}
+
+/// Rows of a batch that are solved together: few enough that their columns stay in the caches.
+/// Not a multiple of 512, so that columns do not fall on each other there.
+const TOGETHER: usize = 2000;
+
+impl Job {
+    /// How many bytes of rows it holds.
+    pub fn bytes(&self) -> usize {
+        match &self.rows {
+            Rows::Text(text) => text.len(),
+            Rows::Batch(batch) => batch.get_array_memory_size(),
+        }
+    }
+
+    /// Answers the rows.
+    pub fn run(self) -> Done {
+        let mut done = Done {
+            bytes: self.preamble,
+            ..Done::default()
+        };
+        match self.rows {
+            Rows::Text(text) => self.plan.text(&text, &mut done),
+            Rows::Batch(batch) => self.plan.batch(&batch, &mut done),
+        }
+        done
+    }
+}
+
+impl Plan {
+    fn text(&self, text: &[u8], done: &mut Done) {
+        let Plan {
+            series,
+            input,
+            anew,
+        } = self;
+        done.bytes.reserve(text.len() + text.len() / 8);
+        let mut block = Block::default();
+        let cells = anew.as_ref().map(|(_, columns)| &columns.cells[..]);
+        let mut carried = Carried::new(cells.map_or(0, <[String]>::len));
+        let stop = series.stop;
+        match input {
+            Input::Ndjson => {
+                let mut reader = ndjson::Reader::new(series, cells);
+                let lines = reader.read(text, &mut block, &mut carried);
+                block.solve(series);
+                if anew.is_none() {
+                    print::ndjson_in_place(text, &lines, &block, stop, done);
+                }
+            }
+            Input::Csv(header, line_end) => {
+                let reader = csv::Reader::new(series, header, carried.columns);
+                let lines = reader.read(text, &mut block, &mut carried);
+                block.solve(series);
+                if anew.is_none() {
+                    print::csv_in_place(text, &lines, header, line_end, &block, stop, done);
+                }
+            }
+            Input::Arrow(..) => unreachable!("its rows come in batches"),
+        }
+        let mut sheet = Sheet::default();
+        self.print(block, &carried, &mut sheet, done);
+        self.finish(sheet, done);
+    }
+
+    fn batch(&self, batch: &RecordBatch, done: &mut Done) {
+        let Input::Arrow(table, schema) = &self.input else {
+            unreachable!("batches come with their table");
+        };
+        let series = &self.series;
+        let cells = self
+            .anew
+            .as_ref()
+            .map_or(0, |(_, columns)| columns.cells.len());
+        let sheets = table.open(batch, cells);
+        let mut sheet = Sheet::with_rows(batch.num_rows());
+        let mut from = 0;
+        while from < batch.num_rows() && !done.stopped {
+            let rows = TOGETHER.min(batch.num_rows() - from);
+            let mut block = sheets.block(series, from, rows);
+            block.solve(series);
+            if self.anew.is_none() {
+                sheet.add(block, &Carried::new(0), series.stop, done);
+            } else {
+                // Rows of a block count from its own first one.
+                let (places, before) = (done.numbers.len(), done.counts.read as usize);
+                self.print(block, &sheets.carried(from, rows), &mut sheet, done);
+                done.numbers[places..]
+                    .iter_mut()
+                    .for_each(|(_, row)| *row += before);
+            }
+            from += rows;
+        }
+        if self.anew.is_none() {
+            done.batch = Some(answered_in_place(batch, &table.header, schema, sheet));
+        } else {
+            self.finish(sheet, done);
+        }
+    }
+
+    /// Prints the rows of a block in another format than theirs.
+    fn print(&self, block: Block, carried: &Carried, sheet: &mut Sheet, done: &mut Done) {
+        let stop = self.series.stop;
+        match &self.anew {
+            Some((Format::Ndjson, columns)) => print::ndjson(columns, &block, carried, stop, done),
+            Some((Format::Csv, columns)) => print::csv(columns, &block, carried, stop, done),
+            Some((Format::Arrow, _)) => sheet.add(block, carried, stop, done),
+            None => {}
+        }
+    }
+
+    /// Rows that go to batches from another format.
+    fn finish(&self, sheet: Sheet, done: &mut Done) {
+        if let Some((Format::Arrow, columns)) = &self.anew {
+            done.batch = Some(sheet.batch(columns));
+        }
+    }
+}
