@@ -125,20 +125,24 @@ fn restated(
 ) -> (Vec<u8>, Option<String>) {
     let series = Series::read(node.clone(), deployment()).expect("read before");
     let mut outlet = Outlet::new(&series, output);
-    let mut intake = Intake::new(Arc::new(series), input, output, Limits { row: 4096 });
+    let limits = Limits {
+        row: 4096,
+        batch: 1 << 20,
+    };
+    let mut intake = Intake::new(Arc::new(series), input, output, limits);
     let mut answer = Vec::new();
     let mut all = || {
         for piece in rows.chunks(piece.min(rows.len().max(1))) {
             intake.push(piece);
             if let Some(job) = intake.job(1)? {
-                answer.extend(outlet.accept(job.run()));
+                answer.extend(outlet.accept(job.run()).concat());
             }
             if outlet.stopped() {
                 return Ok(());
             }
         }
         if let Some(job) = intake.last()? {
-            answer.extend(outlet.accept(job.run()));
+            answer.extend(outlet.accept(job.run()).concat());
         }
         Ok(())
     };
@@ -147,7 +151,7 @@ fn restated(
         explained(&refusal.faults);
         refusal.faults[0].detail.clone()
     });
-    answer.extend(outlet.end());
+    answer.extend(outlet.end().concat());
     (answer, refusal)
 }
 

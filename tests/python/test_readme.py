@@ -6,6 +6,7 @@ import json
 import re
 import subprocess
 
+import pyarrow
 import pytest
 
 from service import ROOT
@@ -16,7 +17,8 @@ README = (ROOT / "README.md").read_text()
 # A curl command in its fence, and the answer in the next one: JSON, or rows that are shown as they are.
 EXAMPLES = re.findall(r"```sh\n(curl [^`]*)```\n```json\n([^`]*)```", README)
 ROWS = re.findall(r"```sh\n(curl [^`]*)```\n```(?:ndjson|csv)\n([^`]*)```", README)
-# One whose answer is too long to be shown.
+# Two whose answers are not shown: a stream of columns, and a long table.
+COLUMNS = re.search(r"```sh\n(curl [^`]*flight\.arrow[^`]*)```\n\n", README).group(1)
 FLIGHT = re.search(r"```sh\n(curl [^`]*readings\.csv[^`]*)```\n\n", README).group(1)
 
 
@@ -26,7 +28,7 @@ def forget_ids(answer):
 
 
 def test_every_curl_command_of_the_readme_shows_its_answer():
-    assert len(EXAMPLES) + len(ROWS) + 1 == README.count("```sh\ncurl ")
+    assert len(EXAMPLES) + len(ROWS) + 2 == README.count("```sh\ncurl ")
     assert len(EXAMPLES) >= 5 and len(ROWS) >= 2
 
 
@@ -35,6 +37,18 @@ def test_rows_are_answered_as_shown(service, command, shown):
     done = subprocess.run(command.replace(ADDRESS, service.url), shell=True, check=True,
                           capture_output=True, text=True, timeout=30)
     assert done.stdout == shown
+
+
+def test_columns_are_restated(service, tmp_path):
+    columns = {"station": ["mast"], "ex": [0.0], "ey": [0.34], "ez": [0.0], "bx": [0.0], "by": [0.0], "bz": [4.47e-5]}
+    table = pyarrow.table(columns)
+    with pyarrow.ipc.new_stream(tmp_path / "flight.arrow", table.schema) as stream:
+        stream.write_table(table)
+    subprocess.run(COLUMNS.replace(ADDRESS, service.url), shell=True, check=True, cwd=tmp_path, timeout=30)
+    answer = pyarrow.ipc.open_stream((tmp_path / "ground.arrow").read_bytes()).read_all().to_pydict()
+    # ey - v bz, to first order in v/c.
+    assert answer["ey"] == [pytest.approx(0.34 - 7600 * 4.47e-5)]
+    assert answer["station"] == ["mast"] and answer["problem"] == [None]
 
 
 def test_the_flight_is_restated(demo):
