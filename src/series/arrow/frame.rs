@@ -92,15 +92,20 @@ impl Frames {
     /// Whether the bytes may end here.
     ///
     /// # Errors
-    /// They end within a message, or before the schema.
+    /// They end within a message, before the schema, or without the marker of their end.
     pub(in crate::series) fn end(&self) -> Result<(), Fault> {
         if self.schema().is_none() {
             return Err(broken("it ends before its schema"));
         }
-        if self.head.is_empty() {
+        if self.ended {
             return Ok(());
         }
-        Err(broken("it ends within a message"))
+        Err(broken(if self.head.is_empty() {
+            "it ends without the marker of its end, so whatever wrote it did not finish; close the \
+             writer"
+        } else {
+            "it ends within a message"
+        }))
     }
 
     /// How many bytes of the description are still to come.

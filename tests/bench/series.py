@@ -1,0 +1,166 @@
+"""Rows per second of a series, every figure measured in one run with its ratio beside it.
+
+Started by `tests/bench/series`. Ours are exact to the last digit, the peers compute in plain
+doubles. Files lie in memory (/dev/shm), so that no disk counts.
+"""
+
+import argparse
+import re
+import signal
+import subprocess
+import sys
+import tempfile
+import time
+from pathlib import Path
+
+import rows
+from peers import PEERS
+
+HERE = Path(__file__).parent
+QUERY = "velocity=row"
+MEDIA = {
+    "ndjson": "application/x-ndjson",
+    "csv": "text/csv",
+    "arrow": "application/vnd.apache.arrow.stream",
+}
+REPEATS = 3
+
+
+def best(run):
+    """The shortest of some runs."""
+    return min(run() for _ in range(REPEATS))
+
+
+def in_process(binary, kind, to, threads, source, answer=None):
+    """Seconds of the library alone."""
+    command = [binary, kind, to, str(threads), QUERY, source, *filter(None, [answer])]
+    out = subprocess.run(command, check=True, capture_output=True, text=True).stdout
+    return float(out.split()[1])
+
+
+def peer(name, source, answer):
+    """Seconds of a script in Python."""
+    command = [sys.executable, HERE / "peers.py", name, source, answer]
+    return float(subprocess.run(command, check=True, capture_output=True, text=True).stdout)
+
+
+class Service:
+    """The release binary on a free port."""
+
+    def __init__(self, binary, log):
+        self.process = subprocess.Popen(
+            [binary, "serve", "--listen", "127.0.0.1:0"], stdout=log.open("wb"), stderr=subprocess.STDOUT
+        )
+        while not (found := re.search(rb"http://127\.0\.0\.1:\d+", log.read_bytes())):
+            assert self.process.poll() is None, log.read_text()
+            time.sleep(0.01)
+        self.url = f"{found[0].decode()}/v1/series?{QUERY}"
+
+    def __enter__(self):
+        return self
+
+    def __exit__(self, *_):
+        self.process.send_signal(signal.SIGTERM)
+        self.process.wait(10)
+
+    def memory(self, what):
+        """`VmRSS` or `VmHWM` in MiB."""
+        status = Path(f"/proc/{self.process.pid}/status").read_text()
+        return int(re.search(rf"{what}:\s+(\d+) kB", status)[1]) / 1024
+
+    def upload(self, kind, source, **pipe):
+        """Seconds of one `curl -T`."""
+        command = ["curl", "-sS", "--fail", "-X", "POST", "-H", f"Content-Type: {MEDIA[kind]}"]
+        command += ["-H", "Expect:", "-T", source, "-o", "/dev/null", self.url]
+        begin = time.perf_counter()
+        subprocess.run(command, check=True, **pipe)
+        return time.perf_counter() - begin
+
+
+def pieces(kind, path):
+    """A file of rows as its head, rows that may be repeated any number of times, and its end."""
+    text = path.read_bytes()
+    if kind == "ndjson":
+        return b"", text, b""
+    if kind == "csv":
+        head = text.index(b"\n") + 1
+        return text[:head], text[head:], b""
+    # The schema is the first message: marker, length of the metadata, metadata (Arrow columnar
+    # format, "Encapsulated message format"); the end is a marker and a zero.
+    head = 8 + int.from_bytes(text[4:8], "little")
+    return text[:head], text[head:-8], text[-8:]
+
+
+def stream(service, kind, path, size):
+    """Sends `size` bytes of rows through a pipe; the seconds it takes."""
+    head, body, end = pieces(kind, path)
+    with subprocess.Popen(["cat"], stdin=subprocess.PIPE, stdout=subprocess.PIPE) as cat:
+        upload = subprocess.Popen(
+            ["curl", "-sS", "--fail", "-X", "POST", "-H", f"Content-Type: {MEDIA[kind]}", "-T", "-",
+             "-o", "/dev/null", service.url],
+            stdin=cat.stdout,
+        )
+        cat.stdout.close()
+        begin = time.perf_counter()
+        cat.stdin.write(head)
+        for _ in range(-(-size // len(body))):
+            cat.stdin.write(body)
+        cat.stdin.write(end)
+        cat.stdin.close()
+        assert upload.wait() == 0, "the answer is whole"
+        return time.perf_counter() - begin
+
+
+def line(what, figure, ratio=""):
+    print(f"| {what} | {figure} | {ratio} |", flush=True)
+
+
+def million(count, seconds):
+    return f"{count / seconds / 1e6:.2f} M rows/s"
+
+
+def measure(options, folder):
+    paths = rows.write(options.rows, folder)
+    count, answer = options.rows, folder / "answer"
+    print(f"| {count} rows, each with its velocity | figure | ratio |\n|---|---|---|")
+    two = {}
+    for kind in options.formats:
+        path = paths[kind]
+        size = f"{path.stat().st_size / count:.0f} bytes a row"
+        one = best(lambda: in_process(options.bench, kind, kind, 1, path))
+        two[kind] = best(lambda: in_process(options.bench, kind, kind, 2, path))
+        line(f"{kind}, {size}, in process, one thread", million(count, one))
+        line(f"{kind}, two threads", million(count, two[kind]), f"{one / two[kind]:.2f} of one thread")
+    for kind in options.formats:
+        ours = best(lambda: in_process(options.bench, kind, kind, 2, paths[kind], answer))
+        line(f"{kind}, file to file, two threads", million(count, ours))
+        for name in filter(lambda name: name.startswith(kind), PEERS):
+            seconds = best(lambda: peer(name, paths[kind], answer))
+            what = PEERS[name].__doc__.strip(".")
+            line(what, million(count, seconds), f"{seconds / ours:.1f} times slower")
+    for kind in options.formats:
+        with Service(options.service, folder / "log") as service:
+            idle = service.memory("VmRSS")
+            seconds = best(lambda: service.upload(kind, paths[kind]))
+            what = f"{kind} over HTTP, `curl -T file`"
+            line(what, million(count, seconds), f"{two[kind] / seconds:.2f} of in process")
+            size = int(options.gigabytes * 1e9)
+            seconds = stream(service, kind, paths[kind], size)
+            peak = service.memory("VmHWM")
+            what = f"{kind}, {options.gigabytes:g} GB through a pipe, {size / seconds / 1e6:.0f} MB/s"
+            line(what, f"{peak:.0f} MiB at most", f"{peak - idle:.0f} MiB above idle")
+
+
+def main():
+    parser = argparse.ArgumentParser(prog="tests/bench/series", description=__doc__)
+    parser.add_argument("service", type=Path, help=argparse.SUPPRESS)
+    parser.add_argument("bench", type=Path, help=argparse.SUPPRESS)
+    parser.add_argument("--rows", type=int, default=1_000_001, help="rows of a file")
+    parser.add_argument("--gigabytes", type=float, default=10, help="size of a stream for memory")
+    parser.add_argument("--formats", nargs="*", choices=MEDIA, default=[*MEDIA])
+    with tempfile.TemporaryDirectory(dir="/dev/shm") as folder:
+        measure(parser.parse_args(), Path(folder))
+
+
+if __name__ == "__main__":
+    main()
