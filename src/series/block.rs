@@ -85,10 +85,16 @@ impl Block {
         for (row, answer) in std::mem::take(&mut self.apart) {
             self.set(row, &answer);
         }
-        if !found.is_empty() {
-            self.bad
-                .extend(found.into_iter().map(|(row, fault)| (row, vec![fault])));
-            self.bad.sort_by_key(|(row, _)| *row);
+        for (row, fault) in found {
+            self.note(row, fault);
+        }
+    }
+
+    /// Notes a fault of a row, which may have others already.
+    fn note(&mut self, row: usize, fault: Fault) {
+        match self.bad.binary_search_by_key(&row, |(own, _)| *own) {
+            Ok(place) => self.bad[place].1.push(fault),
+            Err(place) => self.bad.insert(place, (row, vec![fault])),
         }
     }
 
@@ -227,10 +233,7 @@ impl Block {
             }
         }
         for (row, fault) in found {
-            match self.bad.binary_search_by_key(&row, |(own, _)| *own) {
-                Ok(place) => self.bad[place].1.push(fault),
-                Err(place) => self.bad.insert(place, (row, vec![fault])),
-            }
+            self.note(row, fault);
         }
     }
 

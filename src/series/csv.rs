@@ -171,6 +171,8 @@ impl<'s> Reader<'s> {
         if !line.whole {
             let detail = format!("the row has {count} fields and the header {width}");
             row.field = MISSING;
+            row.motion = RowMotion::NONE;
+            row.time = None;
             row.faults = vec![Fault::whole(Code::WrongLength, detail)];
             cells.fill(None);
         }
