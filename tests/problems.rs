@@ -46,6 +46,24 @@ async fn asked(body: String) -> serde_json::Value {
 }
 
 #[tokio::test]
+async fn no_boost_is_too_large_to_be_refused() {
+    let boosts = [
+        "710", "-710.4", "711", "1e4", "1e18", "1e19", "5.8e30", "1.7e308",
+    ]
+    .map(|rapidity| format!("\"rapidity\":{rapidity}"));
+    let boosts = boosts
+        .into_iter()
+        .chain(["8e307", "1e308", "1.7e308"].map(|gamma| format!("\"gamma\":{gamma}")));
+    for boost in boosts {
+        let problem = asked(format!(
+            "{{\"b\":[0,0,1],\"e\":[0,0,1],\"boost\":{{\"direction\":[1,0,0],{boost}}}}}"
+        ))
+        .await;
+        assert_eq!(problem["status"], 422, "{boost}: {problem}");
+    }
+}
+
+#[tokio::test]
 async fn many_faults_are_listed_up_to_a_number() {
     let names = |count| {
         (0..count)

@@ -222,11 +222,13 @@ impl Motion {
 
     /// log2 of γ(1+β), or a little more.
     pub fn growth(&self) -> f64 {
-        if !self.fits_dd() {
-            return self.boost::<Big>(GROWTH_BITS).gamma.exponent().unwrap_or(0) as f64 + 2.0;
-        }
         let of_gamma = |less_one: f64| less_one + 1.0 + (less_one * (less_one + 2.0)).sqrt();
         match self {
+            // Not by way of γ, which a number of any size may not hold.
+            Motion::Rapidity { rapidity, .. } => rapidity.abs() * std::f64::consts::LOG2_E,
+            _ if !self.fits_dd() => {
+                self.boost::<Big>(GROWTH_BITS).gamma.exponent().unwrap_or(0) as f64 + 2.0
+            }
             Motion::Velocity { .. } | Motion::Turning { .. } => {
                 let v = round(&self.velocity::<Dd>(()));
                 let beta = libm::hypot(libm::hypot(v[0], v[1]), v[2]) * self.beta().to_f64();
@@ -234,7 +236,6 @@ impl Motion {
             }
             Motion::Speed { beta, .. } => 0.5 * libm::log2((1.0 + beta.abs()) / (1.0 - beta.abs())),
             Motion::Gamma { gamma, .. } => libm::log2(of_gamma(gamma - 1.0)),
-            Motion::Rapidity { rapidity, .. } => rapidity.abs() * std::f64::consts::LOG2_E,
             Motion::KineticEnergy {
                 energy,
                 rest,

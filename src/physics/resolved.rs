@@ -196,7 +196,8 @@ impl Resolved {
 
     /// Bits between e^η and e^−η of the net boost, and half as many to spare.
     pub(super) fn net_bits(&self) -> usize {
-        (3.0 * libm::log2(2.0 * gamma(&self.net))) as usize
+        // 2γ itself may be more than a double holds.
+        (3.0 * (1.0 + libm::log2(gamma(&self.net)))) as usize
     }
 }
 
