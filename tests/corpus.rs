@@ -41,3 +41,8 @@ fn rows_of_csv() {
 fn rows_of_ndjson() {
     each("ndjson", targets::ndjson);
 }
+
+#[test]
+fn batches_of_arrow() {
+    each("arrow", targets::arrow);
+}

@@ -14,7 +14,7 @@ use lodeframe::{
     document::{Fault, Node, from_query},
     frames,
     question::{Deployment, Question},
-    series::{Format, Intake, Limits, Outlet, Series},
+    series::{Counts, Format, Intake, Limits, Outlet, Series},
 };
 
 /// A question as JSON.
@@ -61,6 +61,11 @@ pub(crate) fn ndjson(data: &[u8]) {
     series(data, Format::Ndjson);
 }
 
+/// A series in Arrow: the query in the first line, then the stream.
+pub(crate) fn arrow(data: &[u8]) {
+    series(data, Format::Arrow);
+}
+
 fn asked(node: &Node) {
     let question = match Question::read(node, deployment()) {
         Ok(question) => question,
@@ -89,7 +94,7 @@ fn explained(faults: &[Fault]) {
     }
 }
 
-/// The same rows whole and in pieces, to the same format and to the other one.
+/// The same rows whole and in pieces, to every format.
 fn series(data: &[u8], input: Format) {
     let cut = data
         .iter()
@@ -102,7 +107,7 @@ fn series(data: &[u8], input: Format) {
     if let Err(faults) = Series::read(node.clone(), deployment()) {
         return explained(&faults);
     }
-    for output in [Format::Csv, Format::Ndjson] {
+    for output in [Format::Csv, Format::Ndjson, Format::Arrow] {
         let answer = |piece| restated(&node, [input, output], rows, piece);
         let (whole, in_pieces) = (answer(usize::MAX), answer(7));
         assert_eq!(
@@ -110,7 +115,7 @@ fn series(data: &[u8], input: Format) {
             "the answer depends on how the rows arrive"
         );
         // CSV hands other columns on byte for byte, whatever their encoding.
-        if output == Format::Ndjson || str::from_utf8(rows).is_ok() {
+        if output == Format::Ndjson || (input == Format::Csv && str::from_utf8(rows).is_ok()) {
             str::from_utf8(&whole.0).expect("text in, text out");
         }
     }
@@ -122,7 +127,7 @@ fn restated(
     [input, output]: [Format; 2],
     rows: &[u8],
     piece: usize,
-) -> (Vec<u8>, Option<String>) {
+) -> (Vec<u8>, [u64; 3], Option<String>) {
     let series = Series::read(node.clone(), deployment()).expect("read before");
     let mut outlet = Outlet::new(&series, output);
     let limits = Limits {
@@ -152,7 +157,16 @@ fn restated(
         refusal.faults[0].detail.clone()
     });
     answer.extend(outlet.end().concat());
-    (answer, refusal)
+    if output == Format::Arrow {
+        // Rows are gathered into batches as they come.
+        answer.clear();
+    }
+    let Counts {
+        read,
+        answered,
+        refused,
+    } = outlet.counts();
+    (answer, [read, answered, refused], refusal)
 }
 
 fn deployment() -> &'static Deployment {
