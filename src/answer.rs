@@ -1,8 +1,12 @@
 //! An answer as it is sent: the types behind the JSON, with their meaning and units.
 
 mod assess;
+mod monte_carlo;
+mod trials;
 mod uncertainty;
 
+pub use monte_carlo::MonteCarlo;
+pub use trials::Plan;
 pub use uncertainty::{Ellipsoid, Measure, Uncertainty};
 
 use std::borrow::Cow;
@@ -36,6 +40,9 @@ pub struct Answer {
     /// The uncertainty of `e` and `b`, when anything in the question is uncertain.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub uncertainty: Option<Uncertainty>,
+    /// What trials say of it, when asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub monte_carlo: Option<Box<MonteCarlo>>,
     /// Lorentz invariants of the reading, in V²/m²; null when a component is missing.
     pub invariants: Option<Invariants>,
     /// The whole way as one transformation.
@@ -211,7 +218,7 @@ pub struct Provenance {
 pub const ENGINE: &str = concat!("lodeframe ", env!("CARGO_PKG_VERSION"));
 
 impl Answer {
-    /// Answers a question.
+    /// Answers a question, trials aside: [`Plan`] makes those.
     ///
     /// # Errors
     /// A component of the answer is larger than the largest double.
@@ -238,6 +245,7 @@ impl Answer {
                 b: unit(Quantity::B),
             },
             uncertainty,
+            monte_carlo: None,
             invariants: transformed.invariants.map(|found| Invariants {
                 e2_minus_c2b2: found.e2_minus_c2b2,
                 e_dot_cb: found.e_dot_cb,

@@ -94,6 +94,8 @@ pub struct Config {
     pub max_steps: usize,
     /// Points in one sweep.
     pub max_points: usize,
+    /// Monte Carlo trials of one question.
+    pub max_trials: usize,
     /// Longest row of a series, bytes.
     pub max_row: usize,
     /// Largest batch of rows, bytes.

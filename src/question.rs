@@ -1,8 +1,11 @@
 //! One question: a reading, the way to the target frame, and what the answer should hold.
 
 mod assume;
+mod monte_carlo;
 mod uncertainty;
 pub mod way;
+
+pub use monte_carlo::{FEWEST as FEWEST_TRIALS, MonteCarlo};
 
 use std::sync::Arc;
 
@@ -19,7 +22,7 @@ use crate::units::{Quantity, Units};
 use way::Way;
 
 /// The names a question may have at its top level.
-pub const KNOWN: [&str; 16] = [
+pub const KNOWN: [&str; 17] = [
     "e",
     "b",
     "units",
@@ -34,6 +37,7 @@ pub const KNOWN: [&str; 16] = [
     "inverse",
     "assume",
     "uncertainty",
+    "monte_carlo",
     "include",
     "signature",
 ];
@@ -66,6 +70,8 @@ const PARTS: [(&str, Part); 5] = [
 pub struct Deployment {
     /// Most steps a way may have.
     pub steps: usize,
+    /// Most trials it may ask for.
+    pub trials: usize,
     /// The catalogue of named frames, if there is one.
     pub frames: Option<Arc<Catalogue>>,
 }
@@ -77,6 +83,8 @@ pub struct Question {
     pub reading: Reading,
     /// The errors of the reading; `None` when it is exact.
     pub uncertainty: Option<Arc<UncertainReading>>,
+    /// The trials asked for.
+    pub monte_carlo: Option<MonteCarlo>,
     /// The sensor it comes from, by name.
     pub sensor: Option<String>,
     /// The way, resolved.
@@ -187,6 +195,7 @@ fn read(
         Some(node) => assume::read(node, &root.field("assume"), &reading_units, faults).map(Some),
         None => Some(None),
     };
+    let monte_carlo = monte_carlo::read(members, deployment.trials, faults);
     let include = match members.get("include") {
         Some(node) => parts(node, &root.field("include"), faults),
         None => Some(Vec::new()),
@@ -217,9 +226,14 @@ fn read(
         given => given,
     };
     let uncertainty = covariance.map(|field| Arc::new(UncertainReading { field, calibration }));
+    let monte_carlo = monte_carlo?;
+    if monte_carlo.is_some() && uncertainty.is_none() && !way.resolved.is_uncertain() {
+        monte_carlo::nothing_uncertain(faults);
+    }
     Some(Question {
         reading,
         uncertainty,
+        monte_carlo,
         sensor: way.sensor.and_then(|_| {
             let name = faults.text(members.get("from")?, &root.field("from"))?;
             Some(name.to_owned())

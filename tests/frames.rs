@@ -29,6 +29,7 @@ fn loaded(name: &str, files: &[(&str, &str)]) -> Catalogue {
 fn ask(catalogue: Catalogue, question: Value) -> Result<Answer, Vec<Fault>> {
     let deployment = Deployment {
         steps: 10,
+        trials: 100_000,
         frames: Some(Arc::new(catalogue)),
     };
     ask_at(&deployment, question)
@@ -390,6 +391,7 @@ steps = [{ boost = { velocity = [0, 90000, 0] } }]
 fn a_way_goes_up_and_down_the_tree() {
     let deployment = Deployment {
         steps: 10,
+        trials: 100_000,
         frames: Some(Arc::new(loaded("tree", &[("frames.toml", TREE)]))),
     };
     let reading = json!({"e": [1.0, 2.0, 3.0], "b": [1e-9, -2e-9, 4e-9]});
@@ -433,6 +435,7 @@ fn a_way_goes_up_and_down_the_tree() {
 fn names_and_times_of_a_question_are_checked() {
     let deployment = Deployment {
         steps: 10,
+        trials: 100_000,
         frames: Some(Arc::new(loaded("names", &[("frames.toml", TREE)]))),
     };
     let faults = |question: Value| codes(&ask_at(&deployment, question).expect_err("faults"));
@@ -463,6 +466,7 @@ fn names_and_times_of_a_question_are_checked() {
     );
     let alone = Deployment {
         steps: 10,
+        trials: 100_000,
         frames: None,
     };
     let found =
@@ -574,6 +578,7 @@ fn a_turning_frame_turns_by_its_phase_and_rate() {
                      angular_velocity = [0, 0, 4], epoch = 2031-03-02T05:10:00.5Z, phase = 30 }\n";
     let deployment = Deployment {
         steps: 10,
+        trials: 100_000,
         frames: Some(Arc::new(loaded("turning", &[("frames.toml", catalogue)]))),
     };
     let at = |time: &str| {
@@ -618,6 +623,7 @@ sensor.b = { matrix = [[2, 0, 0.5], [0, 2, 0], [0, 0, 2]], offset = [1, 2, 3] }
 fn a_sensor_is_corrected_before_anything_else() {
     let deployment = Deployment {
         steps: 10,
+        trials: 100_000,
         frames: Some(Arc::new(loaded("sensors", &[("frames.toml", SENSORS)]))),
     };
     let ask = |question: Value| ask_at(&deployment, question);

@@ -10,6 +10,7 @@ use serde_json::{Value, json};
 fn ask(question: Value) -> Result<Answer, Vec<Code>> {
     let deployment = Deployment {
         steps: 10,
+        trials: 100_000,
         frames: None,
     };
     let text = question.to_string();

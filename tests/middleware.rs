@@ -43,8 +43,9 @@ async fn kept(headers: HeaderMap) -> Result<Response, Problem> {
         &headers,
         etag(&[b"question", b"json"]),
         "public, max-age=60",
-        || Ok("answer".into_response()),
+        async { Ok("answer".into_response()) },
     )
+    .await
 }
 
 fn service(config: Config) -> Router {

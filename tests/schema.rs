@@ -6,6 +6,7 @@ use serde_json::{Value, json};
 
 const DEPLOYMENT: Deployment = Deployment {
     steps: 10,
+    trials: 100_000,
     frames: None,
 };
 
@@ -53,6 +54,7 @@ fn schema_and_reader_know_the_same_members() {
         ("Assume", json!({"assume": slip})),
         ("EDotBZero", json!({"assume": {"e_dot_b_zero": slip}})),
         ("UncertaintyOfQuestion", json!({"uncertainty": slip})),
+        ("MonteCarloOfQuestion", json!({"monte_carlo": slip})),
         ("CovarianceOfVector", json!({"uncertainty": {"e": slip}})),
         (
             "OfDirectedBoost",

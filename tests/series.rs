@@ -21,6 +21,7 @@ fn deployment() -> Deployment {
     let catalogue = lodeframe::frames::load(std::path::Path::new(file));
     Deployment {
         steps: 100,
+        trials: 100_000,
         frames: Some(Arc::new(catalogue.expect("the demonstration is right"))),
     }
 }

@@ -5,6 +5,8 @@ use std::{fmt::Display, net::SocketAddr, str::FromStr, sync::Arc, time::Duration
 use clap::ValueEnum;
 use tokio_rustls::rustls::ServerConfig;
 
+use crate::question::FEWEST_TRIALS;
+
 use super::{Config, LogForm, Settings, Tokens, settings::Access, tls};
 
 impl Settings {
@@ -45,12 +47,19 @@ impl Settings {
             max_connections: count(&mut faults, "max-connections", &self.limits.max_connections),
             max_concurrent: count(&mut faults, "max-concurrent", &self.limits.max_concurrent),
             max_steps: count(&mut faults, "max-steps", &self.limits.max_steps),
+            max_trials: count(&mut faults, "max-trials", &self.limits.max_trials),
             max_points: count(&mut faults, "max-points", &self.limits.max_points),
             request_timeout: time(&mut faults, "request-timeout", &self.limits.request_timeout),
             idle_timeout: time(&mut faults, "idle-timeout", &self.limits.idle_timeout),
             grace: read::<humantime::Duration>(&mut faults, "grace", &self.limits.grace, TIME)
                 .map_or(Duration::ZERO, Into::into),
         };
+        if config.max_trials < FEWEST_TRIALS {
+            faults.push(format!(
+                "--max-trials is {}; fewer than {FEWEST_TRIALS} settle no interval.",
+                config.max_trials
+            ));
+        }
         if config.tokens.is_some() && config.open {
             faults.push(
                 "--open answers anyone and --tokens only who shows a token; leave one of them out."

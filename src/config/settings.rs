@@ -131,6 +131,15 @@ pub(super) struct Limits {
     )]
     pub(super) max_points: String,
 
+    /// Monte Carlo trials that one question may ask for.
+    #[arg(
+        long,
+        env = "LODEFRAME_MAX_TRIALS",
+        value_name = "COUNT",
+        default_value = "1000000"
+    )]
+    pub(super) max_trials: String,
+
     /// Longest row of a series, as text.
     #[arg(
         long,

@@ -143,6 +143,12 @@ codes! {
     PointsOutOfRange "points_out_of_range" 422 "Too few or too many points",
         "A sweep has at least two points and at most as many as this service draws at once.",
         "Choose points between the two numbers of the detail, or ask for the range in parts.";
+    TrialsOutOfRange "trials_out_of_range" 422 "Too few or too many trials",
+        "Fewer than 10,000 trials do not settle a 95 % coverage interval (JCGM 101:2008, 7.9.4), and a service makes at most as many as it was started for.",
+        "Choose trials between the two numbers of the detail; 100,000 are made when it is left out.";
+    NothingUncertain "nothing_uncertain" 422 "Trials of what is exact",
+        "monte_carlo draws errors from the uncertainties of the reading and of the steps, and the question states none.",
+        "Add uncertainty.e, uncertainty.b, or the uncertainty of a step; or leave monte_carlo out.";
     EmptyRange "empty_range" 422 "A range without extent",
         "A sweep begins and ends at the same value.",
         "Give a stop that differs from start; it may be smaller.";

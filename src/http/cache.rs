@@ -52,16 +52,16 @@ fn held(headers: &HeaderMap, etag: &HeaderValue) -> bool {
 ///
 /// # Errors
 /// Those of `answer`, which say nothing about caching.
-pub fn cached<E>(
+pub async fn cached<E>(
     request: &HeaderMap,
     etag: HeaderValue,
     cache_control: &'static str,
-    answer: impl FnOnce() -> Result<Response, E>,
+    answer: impl Future<Output = Result<Response, E>>,
 ) -> Result<Response, E> {
     let mut response = if held(request, &etag) {
         StatusCode::NOT_MODIFIED.into_response()
     } else {
-        answer()?
+        answer.await?
     };
     let headers = response.headers_mut();
     headers.insert(ETAG, etag);

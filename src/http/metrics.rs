@@ -36,6 +36,8 @@ pub struct Metrics {
     pub connections_shed: Counter,
     /// Requests turned away because too many were running.
     pub shed: Counter,
+    /// Monte Carlo trials made.
+    pub trials: Counter,
     /// Requests answered with 500 because a handler panicked.
     pub panics: Counter,
 }
@@ -149,6 +151,8 @@ impl Metrics {
             "Requests being answered",
             in_flight.clone(),
         );
+        let trials = Counter::default();
+        registry.register("trials", "Monte Carlo trials made", trials.clone());
         let shed = Counter::default();
         registry.register(
             "requests_shed",
@@ -171,6 +175,7 @@ impl Metrics {
             in_flight,
             connections,
             connections_shed,
+            trials,
             shed,
             panics,
         }

@@ -27,6 +27,7 @@ pub mod listen;
 pub mod log;
 pub mod metrics;
 pub mod middleware;
+mod monte_carlo;
 pub mod openapi;
 pub mod problem;
 pub mod router;

@@ -2,12 +2,14 @@
 //! so that every fault is found at once; a test keeps that reader and these types equal.
 
 pub mod examples;
+mod monte_carlo;
 mod query;
 mod rotate;
 mod step;
 mod uncertainty;
 mod units;
 
+pub use monte_carlo::MonteCarlo;
 pub use query::{Query, RangeQuery, ReadingQuery, SeriesQuery, WayQuery};
 pub use rotate::Rotate;
 pub use step::{Boost, Step};
@@ -71,6 +73,9 @@ pub struct Question {
     /// What is uncertain about the reading, and about a way given by a shorthand.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub uncertainty: Option<Uncertainty>,
+    /// Trials beside the law of propagation.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub monte_carlo: Option<MonteCarlo>,
     /// Further parts of the answer.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub include: Option<Vec<Part>>,

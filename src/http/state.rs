@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use bytes::Bytes;
-use tokio::sync::watch;
+use tokio::sync::{Semaphore, watch};
 
 use super::{metrics::Metrics, openapi};
 use crate::{config::Config, frames::Catalogue, pool::Pool, question::Deployment};
@@ -20,6 +20,8 @@ pub struct Shared {
     pub deployment: Deployment,
     /// Threads for heavy work.
     pub pool: Pool,
+    /// Turns of questions that ask for trials: as many at once as there are threads for them.
+    pub trial_runs: Semaphore,
     /// What is counted.
     pub metrics: Metrics,
     /// The OpenAPI document, as served.
@@ -31,13 +33,16 @@ pub struct Shared {
 impl AppState {
     /// Prepares everything that is made once and never changes.
     pub fn new(config: Config, frames: Option<Catalogue>) -> AppState {
+        let pool = Pool::of_all_cores();
         AppState(Arc::new(Shared {
             deployment: Deployment {
                 steps: config.max_steps,
+                trials: config.max_trials,
                 frames: frames.map(Arc::new),
             },
             config,
-            pool: Pool::of_all_cores(),
+            trial_runs: Semaphore::new(pool.threads()),
+            pool,
             metrics: Metrics::new(),
             openapi: openapi::text().into(),
             ending: watch::Sender::new(false),

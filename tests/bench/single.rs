@@ -11,6 +11,7 @@ const QUESTION: &str = r#"{"e":[0.0,1.2,0.0],"b":[0.0,0.0,45000.0],"units":{"e":
 const UNCERTAIN: &str = r#"{"e":[0.0,1.2,0.0],"b":[0.0,0.0,45000.0],"units":{"e":"mV/m","b":"nT","velocity":"km/s"},"velocity":[7.6,0,0],"uncertainty":{"e":[0.1,0.1,0.1],"b":[5,5,5],"velocity":[0.01,0.01,0.01]}}"#;
 const DEPLOYMENT: Deployment = Deployment {
     steps: 10,
+    trials: 100_000,
     frames: None,
 };
 

@@ -180,6 +180,7 @@ fn deployment() -> &'static Deployment {
         let catalogue = frames::load(&file.expect("the demonstration's catalogue"));
         Deployment {
             steps: 100,
+            trials: 100_000,
             frames: Some(Arc::new(
                 catalogue.unwrap_or_else(|faults| panic!("{}", faults[0])),
             )),

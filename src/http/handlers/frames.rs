@@ -45,7 +45,7 @@ pub(crate) async fn list_frames(
         representation.as_bytes(),
         ENGINE.as_bytes(),
     ]);
-    cached(&headers, tag, CACHE, || {
+    cached(&headers, tag, CACHE, async {
         let frames = catalogue.map_or(Vec::new(), |catalogue| {
             let all = 0..catalogue.frames().len();
             all.map(|i| row(catalogue, i)).collect()
@@ -58,6 +58,7 @@ pub(crate) async fn list_frames(
             provenance: Provenance::of(catalogue.map(|catalogue| &*catalogue.hash)),
         }))
     })
+    .await
 }
 
 /// One frame: what it is, where it hangs and when its motion is known.
@@ -85,7 +86,10 @@ pub(crate) async fn show_frame(
         representation.as_bytes(),
         ENGINE.as_bytes(),
     ]);
-    cached(&headers, tag, CACHE, || Ok(json(&row(catalogue, frame))))
+    cached(&headers, tag, CACHE, async {
+        Ok(json(&row(catalogue, frame)))
+    })
+    .await
 }
 
 /// The transformation between two frames alone, without a reading.
@@ -132,7 +136,7 @@ pub(crate) async fn transformation(
         representation.as_bytes(),
         ENGINE.as_bytes(),
     ]);
-    cached(&headers, tag, CACHE, || {
+    cached(&headers, tag, CACHE, async {
         let passage = walk.at(time).map_err(place)?;
         Ok(json(&Transformation {
             from: from.clone(),
@@ -144,6 +148,7 @@ pub(crate) async fn transformation(
             provenance: Provenance::of(Some(&catalogue.hash)),
         }))
     })
+    .await
 }
 
 /// Reads the only parameter of a transformation.

@@ -64,17 +64,18 @@ pub(crate) async fn sweep(
         representation.as_bytes(),
         ENGINE.as_bytes(),
     ]);
-    // Thousands of points take milliseconds, for which other requests shall not wait.
-    let shared = state.clone();
-    let answering = state.pool.run(move || {
-        cached(&headers, tag, IMMUTABLE, || {
-            let swept = sweep.answer(&shared.deployment).map_err(refuse)?;
+    cached(&headers, tag, IMMUTABLE, async {
+        // Thousands of points take milliseconds, for which other requests shall not wait.
+        let shared = state.clone();
+        let answering = state.pool.run(move || {
+            let swept = sweep.answer(&shared.deployment)?;
             Ok(match representation {
                 CSV => csv(swept.csv()),
                 SVG => svg(picture::sweep(&swept, sweep.division)),
                 _ => json(&swept),
             })
-        })
-    });
-    answering.await
+        });
+        answering.await.map_err(refuse)
+    })
+    .await
 }

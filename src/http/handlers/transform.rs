@@ -16,6 +16,7 @@ use crate::{
         accept::{JSON, SVG, negotiate},
         body::json_body,
         cache::{IMMUTABLE, cached, etag},
+        monte_carlo::add_trials,
         problem::{CommonProblems, Problem, ProblemDocument, Source},
         schema::{self, Query, ReadingQuery, WayQuery},
     },
@@ -44,6 +45,9 @@ use crate::{
             ("uncertain_reading" = (
                 summary = "The same with uncertainties of the reading, the attitude and the velocity",
                 value = json!(schema::examples::uncertain_reading()))),
+            ("trials" = (
+                summary = "A velocity too uncertain for first order, judged by trials",
+                value = json!(schema::examples::trials()))),
             ("fast_beam" = (
                 summary = "The field of a pickup, in the frame of a proton beam",
                 value = json!(schema::examples::fast_beam()))),
@@ -56,6 +60,7 @@ use crate::{
                 ("motional_field" = (value = json!(schema::examples::answer_to(schema::examples::orbiting_probe())))),
                 ("turned_axes" = (value = json!(schema::examples::answer_to(schema::examples::turned_axes())))),
                 ("uncertain_reading" = (value = json!(schema::examples::answer_to(schema::examples::uncertain_reading())))),
+                ("trials" = (value = json!(schema::examples::answer_to(schema::examples::trials())))),
                 ("fast_beam" = (value = json!(schema::examples::answer_to(schema::examples::fast_beam())))),
             )),
         (status = 400, description = "The question cannot be understood", body = ProblemDocument, content_type = "application/problem+json"),
@@ -76,9 +81,8 @@ pub(crate) async fn transform(
     let refuse = |faults| Problem::from_faults(faults, Source::Body);
     let node = Node::from_json(&body).map_err(|fault| refuse(vec![fault]))?;
     let question = Question::read(&node, &state.deployment).map_err(refuse)?;
-    answer(&question)
-        .map(|answer| json(&answer))
-        .map_err(refuse)
+    let answer = answer(&state, &question).await;
+    answer.map(|answer| json(&answer)).map_err(refuse)
 }
 
 /// Restate one reading in another frame, by URL.
@@ -113,7 +117,11 @@ pub(crate) async fn transform_by_url(
     let representation = negotiate(&headers, &[JSON, SVG])?;
     let refuse = |faults| Problem::from_faults(faults, Source::Query);
     let node = from_query(&query.unwrap_or_default()).map_err(refuse)?;
-    let question = Question::read(&node, &state.deployment).map_err(refuse)?;
+    let mut question = Question::read(&node, &state.deployment).map_err(refuse)?;
+    if representation == SVG {
+        // A picture does not show them.
+        question.monte_carlo = None;
+    }
     // The question as understood, whatever the order and spelling of its parameters.
     let canonical = format!("{question:?}");
     let tag = etag(&[
@@ -121,17 +129,22 @@ pub(crate) async fn transform_by_url(
         representation.as_bytes(),
         ENGINE.as_bytes(),
     ]);
-    cached(&headers, tag, IMMUTABLE, || {
-        let answer = answer(&question).map_err(refuse)?;
+    cached(&headers, tag, IMMUTABLE, async {
+        let answer = answer(&state, &question).await.map_err(refuse)?;
         Ok(match representation {
             SVG => svg(picture::reading(&question, &answer)),
             _ => json(&answer),
         })
     })
+    .await
 }
 
-fn answer(question: &Question) -> Result<Answer, Vec<Fault>> {
-    Answer::to(question).map_err(|impossible| vec![unanswerable(&impossible)])
+async fn answer(state: &AppState, question: &Question) -> Result<Answer, Vec<Fault>> {
+    let mut answer = Answer::to(question).map_err(|impossible| vec![unanswerable(&impossible)])?;
+    if question.monte_carlo.is_some() {
+        add_trials(state, question, &mut answer).await;
+    }
+    Ok(answer)
 }
 
 /// An answer that no double holds is mended where its unit is chosen; one that rests on too weak

@@ -3,7 +3,7 @@
 use serde_json::{Value, json};
 
 use crate::{
-    answer::Answer,
+    answer::{Answer, Plan},
     document::{Node, from_query},
     question::{Deployment, Question},
     series::{self, Format, Limits, Series},
@@ -13,6 +13,7 @@ use crate::{
 /// Where the examples are asked.
 const DEPLOYMENT: Deployment = Deployment {
     steps: 10,
+    trials: 100_000,
     frames: None,
 };
 
@@ -57,6 +58,18 @@ pub fn uncertain_reading() -> Value {
     })
 }
 
+/// A boost whose velocity is so uncertain that the law of propagation is judged by trials.
+pub fn trials() -> Value {
+    json!({
+        "e": [0.0, 30.0, 0.0],
+        "b": [0.0, 0.0, 1.0],
+        "units": {"e": "kV/m", "b": "G"},
+        "boost": {"beta": [0.9, 0.0, 0.0], "uncertainty": [0.02, 0.02, 0.02]},
+        "uncertainty": {"e": [0.1, 0.1, 0.1], "b": [0.002, 0.002, 0.002]},
+        "monte_carlo": {"trials": 20_000, "seed": 1},
+    })
+}
+
 /// The field beside a beam, in the frame of its particles.
 pub fn fast_beam() -> Value {
     json!({
@@ -82,7 +95,11 @@ pub fn answer_to(question: Value) -> Answer {
     let text = question.to_string();
     let node = Node::from_json(text.as_bytes()).expect("an example is JSON");
     let question = Question::read(&node, &DEPLOYMENT).expect("an example is right");
-    Answer::to(&question).expect("an example has an answer")
+    let mut answer = Answer::to(&question).expect("an example has an answer");
+    if let Some(plan) = Plan::new(&question, &mut answer) {
+        plan.finish(&mut answer);
+    }
+    answer
 }
 
 /// What the service answers to the examples of the parameters of a sweep.

@@ -82,6 +82,12 @@ pub struct WayQuery {
     /// When the reading was taken: RFC 3339 (a `+` is written %2B), or seconds from the epoch of the catalogue.
     #[param(required = false)]
     time: String,
+    /// Make trials beside the law of propagation: how many.
+    #[param(required = false, rename = "monte_carlo.trials")]
+    monte_carlo_trials: String,
+    /// What their draws start from.
+    #[param(required = false, rename = "monte_carlo.seed")]
+    monte_carlo_seed: String,
     /// Further parts of the answer, joined by commas.
     #[param(required = false)]
     include: String,

@@ -46,6 +46,13 @@ pub struct Block {
     pub refused: u64,
 }
 
+impl Block {
+    /// How many trials were made, refused ones included.
+    pub fn trials(&self) -> u64 {
+        self.moments.count() + self.refused
+    }
+}
+
 impl Trials {
     /// Makes a question ready. `units` says in how many V/m and T each component of the answer
     /// is counted; near its standard uncertainty, no square leaves the range.
