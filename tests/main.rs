@@ -26,3 +26,4 @@ mod stream;
 mod support;
 mod sweep;
 mod times;
+mod uncertainty;

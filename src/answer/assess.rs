@@ -217,7 +217,7 @@ fn not_linear(linearity: &Linearity) -> Notice {
     }
     if linearity.turn >= LIMIT {
         reasons.push(format!(
-            "axes are uncertain by {:.2} rad, too much for small angles",
+            "axes or a direction are uncertain by {:.2} rad, too much for small angles",
             linearity.turn
         ));
     }

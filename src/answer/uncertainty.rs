@@ -107,7 +107,7 @@ pub struct SecondOrder {
     pub ratio: Option<f64>,
     /// The largest error of the velocity of a step, over c and as seen in its own frame (γ²σ along the motion, γσ across).
     pub velocity: Option<f64>,
-    /// The largest error of a turn of the axes, in rad.
+    /// The largest error of a turn of the axes or of a direction, in rad.
     pub turn: Option<f64>,
     /// Below this each of them must be.
     #[schema(example = 0.1)]

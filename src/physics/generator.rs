@@ -58,6 +58,8 @@ pub struct Block<R> {
     /// How the generators grow with the error itself: one unit of error a more, and those of the
     /// same step are larger by this part.
     pub growth: Vec<f64>,
+    /// Standard uncertainty of a direction in rad, in all: it turns by more than its generators.
+    pub direction: f64,
 }
 
 /// The errors of a step as seen where it ends as it is taken, or, for a step taken backwards,
@@ -119,8 +121,12 @@ pub fn blocks<R: Real>(step: &Step, errors: &Errors, context: R::Context) -> Vec
                 turn: still(),
                 boost: along,
             };
+            let about = Block::independent(about.into(), &[*direction; 3], vec![0.0; 3], context);
             vec![
-                Block::independent(about.into(), &[*direction; 3], vec![0.0; 3], context),
+                Block {
+                    direction: direction * radians.to_f64() * std::f64::consts::SQRT_2,
+                    ..about
+                },
                 Block::independent(vec![along], &[*value], vec![bend(motion)], context),
             ]
         }
@@ -135,6 +141,7 @@ pub fn blocks<R: Real>(step: &Step, errors: &Errors, context: R::Context) -> Vec
                 covariance: angles.matrix(context).map(Vec::from).into(),
                 root: angles.root().map(Vec::from).into(),
                 growth: vec![0.0; 3],
+                direction: 0.0,
             }]
         }
         // Errors of another kind of step than this one: none.
@@ -161,6 +168,7 @@ impl<R: Real> Block<R> {
             generators: generators.into(),
             covariance: covariance.matrix(context).map(Vec::from).into(),
             root: covariance.root().map(Vec::from).into(),
+            direction: 0.0,
         }
     }
 
@@ -180,6 +188,7 @@ impl<R: Real> Block<R> {
                 .collect(),
             root: (0..count).map(|i| row(i).collect()).collect(),
             growth,
+            direction: 0.0,
         }
     }
 }

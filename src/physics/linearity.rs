@@ -23,7 +23,7 @@ pub struct Linearity {
     /// The largest standard uncertainty of the velocity of a step over c, as seen in its own
     /// frame (the root of the trace of its covariance).
     pub boost: f64,
-    /// The largest standard uncertainty of a turn of axes in rad (likewise).
+    /// The largest standard uncertainty of a turn of axes or of a direction in rad (likewise).
     pub turn: f64,
 }
 
@@ -42,7 +42,8 @@ impl Linearity {
             each.fold(0.0, f64::max)
         };
         let boost = spread(|g| &g.boost);
-        let turn = spread(|g| &g.turn);
+        let directions = propagated.errors.iter().map(|errors| errors.direction);
+        let turn = directions.fold(spread(|g| &g.turn), f64::max);
         let terms = terms(propagated);
         let [e, b] = [0, 3].map(|offset| second_order(&terms, total, offset));
         // NaN, which an overflow may have left, is the larger.

@@ -80,6 +80,8 @@ pub struct Carried<R> {
     pub local: Vec<Generator<R>>,
     /// By how much each makes the generators of the step grow.
     pub growth: Vec<R>,
+    /// Standard uncertainty of its direction in rad.
+    pub direction: f64,
 }
 
 /// Bits that a covariance keeps at least beside √(Cᵢᵢ Cⱼⱼ): 2⁻⁴⁴ is below 1e-13.
@@ -220,6 +222,7 @@ impl Inputs<'_> {
                 generators: Vec::new(),
                 local: Vec::new(),
                 growth: Vec::new(),
+                direction: 0.0,
             };
             for block in blocks::<R>(step, &uncertain.errors, context) {
                 let seen: Vec<_> = block
@@ -266,6 +269,7 @@ fn block_size<R: Real>(block: &Block<R>) -> i64 {
 impl<R: Real> Carried<R> {
     fn collect(&mut self, block: &Block<R>, seen: &[Generator<R>]) {
         let root = &block.root;
+        self.direction = self.direction.max(block.direction);
         let deviation = |generators: &[Generator<R>], k| Generator {
             turn: combine(generators, |g| &g.turn, root, k),
             boost: combine(generators, |g| &g.boost, root, k),

@@ -90,6 +90,9 @@ def experiment(rng):
     question = {"e": regimes.vector(rng, e * power(rng, -2, 2)), "b": regimes.vector(rng, e / regimes.C)}
     size = power(rng, -4, 0)
     steps = EXPERIMENTS[name](rng, size)
+    if name == "E next to -v x B":
+        beta = steps[0]["boost"]["beta"]
+        question["e"] = [-regimes.C * x * (1 + size * rng.gauss(0, 1)) for x in regimes.cross(beta, question["b"])]
     # Of the reading: some of it exact, but not all of it.
     share = power(rng, -4, -0.5)
     sigma = [share * math.hypot(*question["e"]) * power(rng, -1, 0) for _ in range(3)]
@@ -157,6 +160,7 @@ EXPERIMENTS = {
     "slow": _slow,
     "beta up to 0.9": lambda rng, size: [{"boost": _moving(rng, size, -1, -0.02)}],
     "gamma up to 100": lambda rng, size: [{"boost": _moving(rng, size, -4.3, -1)}],
+    "E next to -v x B": lambda rng, size: [{"boost": _moving(rng, size, -1, -0.02)}],
     "rotation": lambda rng, size: [{"rotate": _axes(rng, size)}],
     "direction and speed": lambda rng, size: [{"boost": _directed(rng, size)}],
     "boost and rotation": lambda rng, size: [{"boost": _moving(rng, size, -2, -0.02)}, {"rotate": _axes(rng, size)}],
