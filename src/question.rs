@@ -2,7 +2,7 @@
 
 mod assume;
 mod monte_carlo;
-mod uncertainty;
+pub(crate) mod uncertainty;
 pub mod way;
 
 pub use monte_carlo::{FEWEST as FEWEST_TRIALS, MonteCarlo};

@@ -300,7 +300,11 @@ fn step() -> impl Strategy<Value = RowStep> {
         4 => (vector().prop_map(unit), prop_oneof![Just(DEGREES), Just(Scale::ONE)])
             .prop_map(|(axis, radians)| RowChange::Angle { axis, radians }),
     ];
-    (change, any::<bool>()).prop_map(|(change, inverse)| RowStep { change, inverse })
+    (change, any::<bool>()).prop_map(|(change, inverse)| RowStep {
+        change,
+        inverse,
+        uncertainty: None,
+    })
 }
 
 proptest! {
@@ -326,6 +330,7 @@ proptest! {
 #[test]
 fn a_way_back_is_made_of_steps_undone() {
     let step = RowStep {
+        uncertainty: None,
         change: RowChange::Velocity { beta: Scale::ONE },
         inverse: false,
     };
@@ -379,6 +384,7 @@ fn infinite_numbers_are_refused() {
     assert_eq!(refused, [(0, Impossible::Infinite)]);
     assert!(answers.e[0][0].is_nan() && answers.b[2][0].is_nan());
     let moving = RowStep {
+        uncertainty: None,
         change: RowChange::Velocity { beta: Scale::ONE },
         inverse: false,
     };

@@ -3,6 +3,8 @@
 //!
 //! The numbers are those of single readings, bit for bit.
 
+use std::sync::Arc;
+
 use super::block::{Columns, Readings, Refused, Setting};
 use super::boost::Motion;
 use super::double_double::{Arithmetic, Portable};
@@ -14,6 +16,7 @@ use super::resolved::Resolved;
 use super::restated::{Answers, Fields, Units};
 use super::rotation::Turn;
 use super::scale::Scale;
+use super::uncertain::UncertainStep;
 
 /// A step that may take its numbers from the row.
 #[derive(Clone, Debug, PartialEq)]
@@ -22,6 +25,8 @@ pub struct RowStep {
     pub change: RowChange,
     /// Whether the step is taken backwards.
     pub inverse: bool,
+    /// Its errors; `None` when it is exact.
+    pub uncertainty: Option<Arc<UncertainStep>>,
 }
 
 /// What a step changes, and where its numbers are.
@@ -73,6 +78,7 @@ impl From<Step> for RowStep {
         RowStep {
             change: RowChange::Fixed(step.change),
             inverse: step.inverse,
+            uncertainty: step.uncertainty,
         }
     }
 }
@@ -223,7 +229,8 @@ impl Motions<'_> {
         };
         Ok(change.map(|change| Step {
             inverse: step.inverse,
-            ..Step::exact(change)
+            uncertainty: step.uncertainty.clone(),
+            change,
         }))
     }
 }

@@ -18,7 +18,7 @@ fn members<'n, 'a>(question: Members<'n, 'a>) -> Option<Members<'n, 'a>> {
 }
 
 /// The covariance of the reading; `Some(None)` when it is exact.
-pub(super) fn of_reading(
+pub(crate) fn of_reading(
     question: Members,
     [e, b]: [Option<[Option<f64>; 3]>; 2],
     faults: &mut Faults,
@@ -108,7 +108,7 @@ pub(super) fn of_step(
 }
 
 /// Refuses errors of a way that is not given so.
-pub(super) fn of_other_ways(question: Members, form: &str, faults: &mut Faults) {
+pub(crate) fn of_other_ways(question: Members, form: &str, faults: &mut Faults) {
     let Some(members) = members(question) else {
         return;
     };

@@ -4,7 +4,7 @@ use std::borrow::Cow;
 use std::sync::Arc;
 
 use crate::document::{Code, Fault, Faults, Members, Node, Place};
-use crate::frames::{Clock, Sensor};
+use crate::frames::{Clock, Sensor, Walker};
 use crate::physics::block::Setting;
 use crate::physics::field::FieldUnits;
 use crate::physics::resolved::Resolved;
@@ -30,7 +30,7 @@ const NOT_HERE: [(&str, &str); 6] = [
     ),
     (
         "uncertainty",
-        "has no place in a series; ask /v1/transform for it",
+        "stands in each row, and that of a step inside the step",
     ),
     (
         "monte_carlo",
@@ -84,6 +84,14 @@ impl Series {
                 Way::Walk(_) => true,
                 Way::Own { .. } => false,
             }
+    }
+
+    /// Goes along the tracks of a way that changes with time.
+    pub(super) fn walker(&self) -> Option<Walker> {
+        match &self.way {
+            Way::Walk(walk) => Some(Walker::new(walk.clone())),
+            _ => None,
+        }
     }
 
     /// What is the same in every block.

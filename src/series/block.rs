@@ -6,6 +6,7 @@ use crate::chain;
 use crate::document::{Code, Fault, Path, Segment};
 use crate::frames::{Time, Walker};
 use crate::physics::block::{Columns, Readings, Refused};
+use crate::physics::covariance::Covariance;
 use crate::physics::resolved::Resolved;
 use crate::physics::rows::{Motions, Rows};
 use crate::physics::{self, Impossible};
@@ -31,6 +32,10 @@ pub(super) struct Block {
     pub(super) time: Vec<Option<Time>>,
     /// Rows that bring a way of another kind, with their answer, in order.
     pub(super) apart: Vec<(usize, [f64; 6])>,
+    /// The errors of the field of rows that have some, in order.
+    pub(super) uncertain: Vec<(usize, Covariance<6>)>,
+    /// The standard uncertainties of their answers; NaN where there is none.
+    pub(super) standard: Vec<(usize, [f64; 6])>,
     /// What is wrong with rows, in order.
     pub(super) bad: Vec<(usize, Vec<Fault>)>,
 }
@@ -72,6 +77,7 @@ impl Block {
     /// Solves every row that is not bad: the columns of the field become those of the answer.
     pub(super) fn solve(&mut self, series: &Series) {
         self.refuse_unmeasured(series);
+        self.find_uncertainties(series);
         for (row, _) in &self.bad {
             self.field
                 .iter_mut()
@@ -86,15 +92,7 @@ impl Block {
             self.set(row, &answer);
         }
         for (row, fault) in found {
-            self.note(row, fault);
-        }
-    }
-
-    /// Notes a fault of a row, which may have others already.
-    fn note(&mut self, row: usize, fault: Fault) {
-        match self.bad.binary_search_by_key(&row, |(own, _)| *own) {
-            Ok(place) => self.bad[place].1.push(fault),
-            Err(place) => self.bad.insert(place, (row, vec![fault])),
+            self.refuse(row, vec![fault]);
         }
     }
 
@@ -144,16 +142,8 @@ impl Block {
 
     /// One row after the other, where each is a case of its own.
     fn solve_each(&mut self, series: &Series) -> Vec<(usize, Fault)> {
-        let mut walker = match &series.way {
-            Way::Walk(walk) => Some(Walker::new(walk.clone())),
-            _ => None,
-        };
-        let setting = series.setting();
-        let rows = match &series.way {
-            Way::Rows(template) => vec![template.rows(setting)],
-            Way::Own { boost, turn } => vec![boost.rows(setting), turn.rows(setting)],
-            Way::Fixed(_) | Way::Walk(_) => Vec::new(),
-        };
+        let mut walker = series.walker();
+        let rows = series.way.rows(series.setting());
         let mut found = Vec::new();
         for row in 0..self.rows {
             let answer = self
@@ -174,7 +164,7 @@ impl Block {
     }
 
     /// The way of one row; `None` where it is not known.
-    fn way(
+    pub(super) fn way(
         &self,
         row: usize,
         series: &Series,
@@ -201,17 +191,22 @@ impl Block {
 
     /// One row restated, just as a question that stands alone.
     fn transformed(&self, row: usize, series: &Series, way: &Resolved) -> Result<[f64; 6], Fault> {
+        let reading = self.reading(row, series);
+        let answer = transform(way, &reading, series.target).map_err(|why| refuse(&why))?;
+        Ok(numbers(answer.e, answer.b))
+    }
+
+    /// What a row says of the field, as a reading.
+    pub(super) fn reading(&self, row: usize, series: &Series) -> Reading {
         let [ex, ey, ez, bx, by, bz] = self.field.each_ref().map(|column| {
             let value = column[row];
             (!value.is_nan()).then_some(value)
         });
-        let reading = Reading {
+        Reading {
             e: [ex, ey, ez],
             b: [bx, by, bz],
             ..series.blank
-        };
-        let answer = transform(way, &reading, series.target).map_err(|why| refuse(&why))?;
-        Ok(numbers(answer.e, answer.b))
+        }
     }
 
     /// A sensor has no value on an axis that it does not measure.
@@ -233,8 +228,22 @@ impl Block {
             }
         }
         for (row, fault) in found {
-            self.note(row, fault);
+            self.refuse(row, vec![fault]);
         }
+    }
+
+    /// Notes what is wrong with a row.
+    pub(super) fn refuse(&mut self, row: usize, faults: Vec<Fault>) {
+        match self.bad.binary_search_by_key(&row, |(own, _)| *own) {
+            Ok(place) => self.bad[place].1.extend(faults),
+            Err(place) => self.bad.insert(place, (row, faults)),
+        }
+    }
+
+    /// The standard uncertainties of the answer to a row, if it has some.
+    pub(super) fn standard(&self, row: usize) -> Option<&[f64; 6]> {
+        let found = self.standard.binary_search_by_key(&row, |(own, _)| *own);
+        found.ok().map(|place| &self.standard[place].1)
     }
 
     fn set(&mut self, row: usize, answer: &[f64; 6]) {

@@ -15,6 +15,7 @@ use super::header::{Column, Header};
 use super::names::Role;
 use super::number;
 use super::scan::Span;
+use super::uncertainty;
 use super::way::RowMotion;
 
 /// Where a row stands in the text of its block.
@@ -23,8 +24,8 @@ pub(super) struct Line {
     pub(super) from: usize,
     /// Without the end of the line; the other places count from its start.
     pub(super) length: usize,
-    /// The fields of ex ey ez bx by bz, in this order.
-    pub(super) field: [Span; 6],
+    /// The fields of ex ey ez bx by bz and of their uncertainties, in this order.
+    pub(super) field: [Span; 12],
     /// Whether it has as many fields as the header.
     pub(super) whole: bool,
 }
@@ -65,6 +66,7 @@ pub(super) struct Reader<'s> {
 /// What one row says.
 struct Row {
     field: [f64; 6],
+    standard: [f64; 6],
     motion: RowMotion,
     time: Option<Time>,
     faults: Vec<Fault>,
@@ -85,6 +87,7 @@ impl<'s> Reader<'s> {
     pub(super) fn read(&self, text: &[u8], block: &mut Block, carried: &mut Carried) -> Vec<Line> {
         let mut lines = Vec::with_capacity(text.len() / 96);
         let mut cells: Vec<Option<Cow<[u8]>>> = vec![None; self.cells];
+        let uncertain = self.header.uncertain();
         let mut from = 0;
         while from < text.len() {
             let blank = match text[from..] {
@@ -98,11 +101,20 @@ impl<'s> Reader<'s> {
             }
             let mut row = Row {
                 field: MISSING,
+                standard: MISSING,
                 motion: RowMotion::NONE,
                 time: None,
                 faults: Vec::new(),
             };
             let (line, next) = self.row(&text[from..], &mut row, &mut cells);
+            if uncertain != [false; 2] && row.faults.is_empty() {
+                match uncertainty::of_columns(&row.field, &row.standard, uncertain) {
+                    Ok(found) => block
+                        .uncertain
+                        .extend(found.map(|found| (block.rows, found))),
+                    Err(faults) => row.faults = faults,
+                }
+            }
             if !row.faults.is_empty() {
                 block.bad.push((block.rows, row.faults));
             }
@@ -135,8 +147,13 @@ impl<'s> Reader<'s> {
                     role: Some(role), ..
                 }) => {
                     let (value, end) = number_field(rest);
-                    if let Role::Field(i) = role {
-                        line.field[*i] = Span {
+                    let place = match role {
+                        Role::Field(i) => Some(*i),
+                        Role::Uncertainty(i) => Some(6 + *i),
+                        _ => None,
+                    };
+                    if let Some(i) = place {
+                        line.field[i] = Span {
                             from: at as u32,
                             to: (at + end) as u32,
                         };
@@ -195,7 +212,8 @@ impl<'s> Reader<'s> {
             Role::Velocity(i) => row.motion.velocity[i] = value,
             Role::Quaternion(i) => row.motion.quaternion[i] = value,
             Role::Angle => row.motion.angle = value,
-            Role::Uncertainty(_) | Role::Time => {}
+            Role::Uncertainty(i) => row.standard[i] = value,
+            Role::Time => {}
         }
     }
 

@@ -39,11 +39,6 @@ impl Header {
                     let detail = format!("there are two columns {name:?}");
                     faults.push(at(name, Code::RepeatedField, detail));
                 }
-                Some(Role::Uncertainty(_)) => {
-                    let detail = "the uncertainties of rows are not restated; give the column \
-                                  another name to pass it through";
-                    faults.push(at(name, Code::UnknownField, detail));
-                }
                 Some(_) => {}
                 None => {
                     if let Some(slip) = names::slip(name, true) {
@@ -69,19 +64,31 @@ impl Header {
         Ok(Header { names, columns })
     }
 
-    /// The components of the field, in the order of their columns.
-    pub(super) fn fields_in_order(&self) -> Vec<usize> {
-        let fields = self.columns.iter().filter_map(|column| match column.role {
+    /// The numbers of the answer, in the order of their columns: components of the field (0 to 5)
+    /// and their uncertainties (6 to 11).
+    pub(super) fn answers_in_order(&self) -> Vec<usize> {
+        let answers = self.columns.iter().filter_map(|column| match column.role {
             Some(Role::Field(i)) => Some(i),
+            Some(Role::Uncertainty(i)) => Some(6 + i),
             _ => None,
         });
-        fields.collect()
+        answers.collect()
     }
 
-    /// The column of a component of the field.
-    pub(super) fn place_of_field(&self, i: usize) -> Option<usize> {
+    /// The column of a component of the field (0 to 5) or of its uncertainty (6 to 11).
+    pub(super) fn place_of(&self, i: usize) -> Option<usize> {
+        let wanted = if i < 6 {
+            Role::Field(i)
+        } else {
+            Role::Uncertainty(i - 6)
+        };
         let mut columns = self.columns.iter();
-        columns.position(|column| column.role == Some(Role::Field(i)))
+        columns.position(|column| column.role == Some(wanted))
+    }
+
+    /// Whether there are uncertainties of E, and of B.
+    pub(super) fn uncertain(&self) -> [bool; 2] {
+        [6, 9].map(|first| self.place_of(first).is_some())
     }
 }
 
@@ -111,9 +118,11 @@ fn groups(has: &dyn Fn(&str) -> bool, series: &Series, faults: &mut Vec<Fault>) 
     let turns = own && some(&attitude);
     let both = series.needs_both() || moves;
     let neither = !some(&e) && !some(&b);
+    let u_e = all(&|role| matches!(role, Role::Uncertainty(0..3)));
+    let u_b = all(&|role| matches!(role, Role::Uncertainty(3..6)));
     let wanted = [
-        (&e, both || neither, "E is needed"),
-        (&b, both || neither, "B is needed"),
+        (&e, both || neither || some(&u_e), "E is needed"),
+        (&b, both || neither || some(&u_b), "B is needed"),
         (
             &velocity,
             series.takes(Taken::Velocity),
@@ -124,6 +133,8 @@ fn groups(has: &dyn Fn(&str) -> bool, series: &Series, faults: &mut Vec<Fault>) 
             series.takes(Taken::Quaternion),
             "the way says \"row\" for a quaternion",
         ),
+        (&u_e, false, ""),
+        (&u_b, false, ""),
     ];
     for (columns, wanted, why) in wanted {
         let missing: Vec<&str> = columns.iter().copied().filter(|name| !has(name)).collect();

@@ -251,9 +251,15 @@ impl Intake {
             _ => false,
         };
         let neither = !has("e") && !has("b");
-        let field = [has("e") || neither, has("b") || neither];
+        let uncertain = has("uncertainty");
+        let answers = [
+            has("e") || neither,
+            has("b") || neither,
+            uncertain,
+            uncertain,
+        ];
         let cells = self.cells(true, has);
-        Some((Input::Ndjson, Some(Columns { field, cells })))
+        Some((Input::Ndjson, Some(Columns { answers, cells })))
     }
 
     fn begin_arrow(&mut self) -> Result<Option<(Input, Option<Columns>)>, Refusal> {

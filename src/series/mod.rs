@@ -22,6 +22,7 @@ mod print;
 mod problem;
 mod run;
 mod scan;
+mod uncertainty;
 mod way;
 
 pub use ask::Series;

@@ -7,7 +7,7 @@ use serde_json::value::RawValue;
 
 use crate::document::{Code, Fault, Faults, Members, Node, Place};
 use crate::frames::{Clock, Time};
-use crate::question::Question;
+use crate::question::{Question, uncertainty as question_uncertainty};
 use crate::transform::transform;
 
 use super::Series;
@@ -15,6 +15,7 @@ use super::block::{Block, MISSING, Takes, numbers, refuse};
 use super::carry::Carried;
 use super::names::{self, MEMBERS};
 use super::scan::{self, Passed, Scanned, Span};
+use super::uncertainty;
 use super::way::{RowMotion, Way};
 
 /// Where the parts of a row stand in the text of its block.
@@ -25,6 +26,7 @@ pub(super) struct Line {
     pub(super) length: usize,
     pub(super) e: Span,
     pub(super) b: Span,
+    pub(super) uncertainty: Span,
     /// Whether it is an object with members, and can be answered as one.
     pub(super) object: bool,
 }
@@ -190,6 +192,7 @@ impl<'s> Reader<'s> {
                 match name.as_ref() {
                     "e" => line.e = span(),
                     "b" => line.b = span(),
+                    "uncertainty" => line.uncertainty = span(),
                     _ => {}
                 }
                 match Node::from_json(raw.get().as_bytes()) {
@@ -223,6 +226,9 @@ impl<'s> Reader<'s> {
             question.extend(asked.iter().cloned());
         }
         let time = question.iter().position(|(name, _)| name == "time");
+        let uncertain = question
+            .iter()
+            .any(|(name, node)| name == "uncertainty" && !node.is_null());
         let named = question
             .iter()
             .any(|(name, node)| name == "from" && !node.is_null());
@@ -232,11 +238,17 @@ impl<'s> Reader<'s> {
         }
         let answer = Question::read(&Node::Object(question), &self.series.deployment);
         let answer = answer.and_then(|question| {
-            transform(&question.way, &question.reading, question.target_units())
-                .map_err(|error| vec![refuse(&error)])
+            let answer = transform(&question.way, &question.reading, question.target_units())
+                .map_err(|error| vec![refuse(&error)])?;
+            Ok((question, answer))
         });
         match answer {
-            Ok(answer) => {
+            Ok((question, answer)) => {
+                if uncertain {
+                    let reading = question.uncertainty.as_deref();
+                    let standard = uncertainty::of_answer(&question.way, &answer, reading);
+                    block.standard.push((block.rows, standard));
+                }
                 block.apart.push((block.rows, numbers(answer.e, answer.b)));
                 block.push(self.takes, MISSING, &RowMotion::NONE, None);
             }
@@ -261,11 +273,10 @@ impl<'s> Reader<'s> {
                 "a reading needs \"e\", \"b\" or both; one left out is missing, never zero";
             faults.note(&root, Code::MissingField, detail);
         }
-        if members.given("uncertainty").is_some() {
-            let detail = "the uncertainties of rows are not restated; give the member another name \
-                          to pass it through";
-            faults.note(&root.field("uncertainty"), Code::UnknownField, detail);
-        }
+        let options = |v: [f64; 3]| v.map(|x| (!x.is_nan()).then_some(x));
+        let uncertain =
+            question_uncertainty::of_reading(members, [e.map(options), b.map(options)], faults);
+        question_uncertainty::of_other_ways(members, "", faults);
         let takes = self.takes;
         let used = [
             ("velocity", takes.velocity),
@@ -301,6 +312,10 @@ impl<'s> Reader<'s> {
         let time =
             time.and_then(|node| Time::read(node, &root.field("time"), self.series.clock, faults));
         if let (Some([ex, ey, ez]), Some([bx, by, bz]), true) = (e, b, faults.0.is_empty()) {
+            let uncertain = uncertain.flatten();
+            block
+                .uncertain
+                .extend(uncertain.map(|found| (block.rows, found)));
             block.push(takes, [ex, ey, ez, bx, by, bz], &motion, time);
         }
     }

@@ -4,6 +4,7 @@ use super::block::Block;
 use super::carry::Carried;
 use super::csv::push_field;
 use super::header::Header;
+use super::names::COLUMNS;
 use super::number;
 use super::outlet::Done;
 use super::scan::Span;
@@ -12,8 +13,8 @@ use super::{csv, ndjson, problem};
 /// What an answer has in another format than the question.
 #[derive(Clone, Debug)]
 pub(super) struct Columns {
-    /// Whether there is E, and B.
-    pub(super) field: [bool; 2],
+    /// Whether there is E, B, the uncertainty of E, and of B.
+    pub(super) answers: [bool; 4],
     /// The names of what goes along: the time, if there is one, and what is kept.
     pub(super) cells: Vec<String>,
 }
@@ -24,18 +25,18 @@ const CRLF: &[u8] = b"\r\n";
 impl Columns {
     /// Those of a table, with what goes along.
     pub(super) fn of(header: &Header, cells: Vec<String>) -> Columns {
-        let field = [0, 3].map(|first| header.place_of_field(first).is_some());
-        Columns { field, cells }
+        let answers = [0, 3, 6, 9].map(|first| header.place_of(first).is_some());
+        Columns { answers, cells }
     }
 
     /// The header row of CSV.
     pub(super) fn header(&self) -> Vec<u8> {
         let mut out = Vec::new();
         let (time, kept) = self.time_and_kept();
-        let names = ["ex", "ey", "ez", "bx", "by", "bz"];
-        let field = names.iter().enumerate().filter(|(i, _)| self.field[i / 3]);
+        let names = COLUMNS[1..13].iter().enumerate();
+        let field = names.filter(|(i, _)| self.answers[i / 3]);
         let names = time.iter().map(String::as_str);
-        let names = names.chain(field.map(|(_, name)| *name));
+        let names = names.chain(field.map(|(_, (name, _))| *name));
         let names = names.chain(kept.iter().map(String::as_str));
         for name in names.chain(["problem"]) {
             if !out.is_empty() {
@@ -79,15 +80,19 @@ pub(super) fn each_row(
     }
 }
 
-/// A vector of the answer as JSON; null as a whole when the row is bad.
-fn push_vector(out: &mut Vec<u8>, block: &Block, first: usize, row: usize, bad: bool) {
-    if bad {
-        out.extend_from_slice(b"null");
-        return;
+/// The number of the answer to a row: of the field (0 to 5) or an uncertainty (6 to 11).
+fn answer(block: &Block, row: usize, i: usize) -> f64 {
+    match i.checked_sub(6) {
+        None => block.field[i][row],
+        Some(i) => block.standard(row).map_or(f64::NAN, |known| known[i]),
     }
+}
+
+/// A vector of the answer as JSON.
+fn push_vector(out: &mut Vec<u8>, block: &Block, row: usize, first: usize) {
     for i in 0..3 {
         out.push(if i == 0 { b'[' } else { b',' });
-        let value = block.field[first + i][row];
+        let value = answer(block, row, first + i);
         if value.is_nan() {
             out.extend_from_slice(b"null");
         } else {
@@ -95,6 +100,19 @@ fn push_vector(out: &mut Vec<u8>, block: &Block, first: usize, row: usize, bad: 
         }
     }
     out.push(b']');
+}
+
+/// The uncertainties of an answer as JSON.
+fn push_uncertainty(out: &mut Vec<u8>, block: &Block, row: usize) {
+    if block.standard(row).is_none() {
+        out.extend_from_slice(b"null");
+        return;
+    }
+    out.extend_from_slice(b"{\"e\":");
+    push_vector(out, block, row, 6);
+    out.extend_from_slice(b",\"b\":");
+    push_vector(out, block, row, 9);
+    out.push(b'}');
 }
 
 /// The problem of a bad row, and the place for its number.
@@ -125,15 +143,17 @@ pub(super) fn ndjson_in_place(
             push_problem(done, row, faults);
             return;
         }
-        let mut parts = [(line.e, 0), (line.b, 3)];
-        if parts[1].0.from < parts[0].0.from {
-            parts.swap(0, 1);
-        }
+        let mut parts = [(line.e, 0), (line.b, 3), (line.uncertainty, 6)];
+        parts.sort_unstable_by_key(|(span, _)| span.from);
         let mut copied = 0;
         for (span, first) in parts.into_iter().filter(|(span, _)| !span.is_none()) {
             done.bytes
                 .extend_from_slice(&text[copied..span.from as usize]);
-            push_vector(&mut done.bytes, block, first, row, faults.is_some());
+            match first {
+                _ if faults.is_some() => done.bytes.extend_from_slice(b"null"),
+                6 => push_uncertainty(&mut done.bytes, block, row),
+                _ => push_vector(&mut done.bytes, block, row, first),
+            }
             copied = span.to as usize;
         }
         match faults {
@@ -161,7 +181,7 @@ pub(super) fn csv_in_place(
     done: &mut Done,
 ) {
     // In the order in which they stand in a row.
-    let order: Vec<usize> = header.fields_in_order();
+    let order: Vec<usize> = header.answers_in_order();
     each_row(block, stop, done, |row, faults, done| {
         let line = &lines[row];
         let out = &mut done.bytes;
@@ -171,7 +191,7 @@ pub(super) fn csv_in_place(
             for i in &order {
                 let span: Span = line.field[*i];
                 out.extend_from_slice(&text[copied..span.from as usize]);
-                let value = block.field[*i][row];
+                let value = answer(block, row, *i);
                 if !value.is_nan() {
                     number::print(out, value);
                 }
@@ -219,9 +239,19 @@ pub(super) fn ndjson(
             }
         }
         for (which, letter) in [b"\"e\"", b"\"b\""].into_iter().enumerate() {
-            if columns.field[which] {
+            if columns.answers[which] {
                 name(out, letter);
-                push_vector(out, block, 3 * which, row, faults.is_some());
+                match faults {
+                    None => push_vector(out, block, row, 3 * which),
+                    Some(_) => out.extend_from_slice(b"null"),
+                }
+            }
+        }
+        if columns.answers[2] || columns.answers[3] {
+            name(out, b"\"uncertainty\"");
+            match faults {
+                None => push_uncertainty(out, block, row),
+                Some(_) => out.extend_from_slice(b"null"),
             }
         }
         for (i, letter) in kept.iter().enumerate() {
@@ -258,8 +288,8 @@ pub(super) fn csv(
         for column in 0..time.len() {
             cell(out, column);
         }
-        for i in (0..6).filter(|i| columns.field[i / 3]) {
-            let value = block.field[i][row];
+        for i in (0..12).filter(|i| columns.answers[i / 3]) {
+            let value = answer(block, row, i);
             if !value.is_nan() {
                 number::print(out, value);
             }

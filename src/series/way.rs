@@ -64,6 +64,17 @@ impl RowMotion {
     };
 }
 
+impl Way {
+    /// The ways of rows that take numbers from them: one, or a boost and a turn.
+    pub(super) fn rows(&self, setting: Setting) -> Vec<Rows> {
+        match self {
+            Way::Rows(template) => vec![template.rows(setting)],
+            Way::Own { boost, turn } => vec![boost.rows(setting), turn.rows(setting)],
+            Way::Fixed(_) | Way::Walk(_) => Vec::new(),
+        }
+    }
+}
+
 impl Template {
     /// Steps, each with what it takes from the row.
     pub(super) fn new(steps: Vec<(Option<Taken>, Step)>) -> Template {
@@ -79,7 +90,11 @@ impl Template {
                 }
                 (_, change) => RowChange::Fixed(change),
             };
-            RowStep { change, inverse }
+            RowStep {
+                change,
+                inverse,
+                uncertainty: step.uncertainty,
+            }
         });
         Template {
             steps: steps.collect(),
@@ -100,7 +115,11 @@ impl Template {
     fn of(change: RowChange) -> Template {
         let inverse = false;
         Template {
-            steps: vec![RowStep { change, inverse }],
+            steps: vec![RowStep {
+                change,
+                inverse,
+                uncertainty: None,
+            }],
         }
     }
 

@@ -33,8 +33,9 @@ const FORMATS: [(&str, Format); 3] = [
 /// and without a way each row brings its own.
 ///
 /// NDJSON rows are objects with `e`, `b` and, as needed, `velocity`, `rotation`, `angle`, `time`,
-/// written as in one reading. Tables have the columns `ex ey ez bx by bz` and, as needed,
-/// `vx vy vz`, `qw qx qy qz`, `angle`, `time`. Whatever else a row holds passes through. A bad row
+/// `uncertainty`, written as in one reading. Tables, as text or as an Arrow stream, have the
+/// columns `ex ey ez bx by bz` and, as needed, `vx vy vz`, `qw qx qy qz`, `angle`, `time` and
+/// standard uncertainties `u_ex` to `u_bz`, which are replaced by those of the answer. Whatever else a row holds passes through. A bad row
 /// is answered in its place with a problem, and the next one is read.
 ///
 /// The answer is whole if it ended properly: a chunked body with its last chunk, NDJSON with its

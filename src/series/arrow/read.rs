@@ -17,6 +17,7 @@ use super::super::carry::Carried;
 use super::super::csv;
 use super::super::header::Header;
 use super::super::names::Role;
+use super::super::uncertainty;
 
 /// The columns of a stream of batches, and what they are for.
 #[derive(Clone, Debug)]
@@ -77,7 +78,7 @@ impl Table {
             .map(|field| (**field).clone())
             .collect();
         for (field, column) in fields.iter_mut().zip(&self.header.columns) {
-            if let Some(Role::Field(_)) = column.role {
+            if let Some(Role::Field(_) | Role::Uncertainty(_)) = column.role {
                 let doubles = field.clone().with_data_type(DataType::Float64);
                 *field = doubles.with_nullable(true);
             }
@@ -129,6 +130,7 @@ impl Sheets {
             field: std::array::from_fn(|_| missing(true)),
             ..Block::default()
         };
+        let mut standard: [Vec<f64>; 6] = std::array::from_fn(|_| missing(true));
         for (role, column) in &self.columns {
             let column = column.slice(from, rows);
             let place = match role {
@@ -136,7 +138,7 @@ impl Sheets {
                 Role::Velocity(i) => &mut block.velocity[*i],
                 Role::Quaternion(i) => &mut block.quaternion[*i],
                 Role::Angle => &mut block.angle,
-                Role::Uncertainty(_) => continue,
+                Role::Uncertainty(i) => &mut standard[*i],
                 Role::Time => {
                     read_times(&column, series.clock, &mut block);
                     continue;
@@ -146,6 +148,17 @@ impl Sheets {
             place.copy_from_slice(column.values());
             for row in (0..rows).filter(|row| column.is_null(*row)) {
                 place[row] = f64::NAN;
+            }
+        }
+        let uncertain = [0, 3].map(|first| {
+            let wanted = Role::Uncertainty(first);
+            self.columns.iter().any(|(role, _)| *role == wanted)
+        });
+        for row in (0..rows).filter(|_| uncertain != [false; 2]) {
+            let at = |columns: &[Vec<f64>; 6]| columns.each_ref().map(|column| column[row]);
+            match uncertainty::of_columns(&at(&block.field), &at(&standard), uncertain) {
+                Ok(found) => block.uncertain.extend(found.map(|found| (row, found))),
+                Err(faults) => block.refuse(row, faults),
             }
         }
         block

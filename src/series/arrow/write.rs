@@ -9,6 +9,7 @@ use arrow_schema::{Field, Schema, SchemaRef};
 use super::super::block::Block;
 use super::super::carry::Carried;
 use super::super::header::Header;
+use super::super::names::COLUMNS;
 use super::super::outlet::Done;
 use super::super::print::{Columns, each_row};
 use super::super::problem;
@@ -16,7 +17,8 @@ use super::super::problem;
 /// Answers gathered row by row for one batch.
 #[derive(Debug, Default)]
 pub(in crate::series) struct Sheet {
-    field: [Vec<f64>; 6],
+    /// The field, and its uncertainties.
+    answers: [Vec<f64>; 12],
     problems: Vec<Option<String>>,
     cells: Vec<Vec<Option<String>>>,
 }
@@ -25,7 +27,7 @@ impl Sheet {
     /// With room for so many rows.
     pub(in crate::series) fn with_rows(rows: usize) -> Sheet {
         Sheet {
-            field: std::array::from_fn(|_| Vec::with_capacity(rows)),
+            answers: std::array::from_fn(|_| Vec::with_capacity(rows)),
             problems: Vec::with_capacity(rows),
             cells: Vec::new(),
         }
@@ -49,7 +51,16 @@ impl Sheet {
             self.problems.push(faults.map(problem::as_text));
         });
         let rows = (done.counts.read - before) as usize;
-        for (all, column) in self.field.iter_mut().zip(block.field) {
+        if !block.standard.is_empty() || !self.answers[6].is_empty() {
+            // Rows before these had none.
+            let before = before_here(&self.answers);
+            for (i, all) in self.answers[6..].iter_mut().enumerate() {
+                all.resize(before, f64::NAN);
+                let standard = |row| block.standard(row).map_or(f64::NAN, |known| known[i]);
+                all.extend((0..rows).map(standard));
+            }
+        }
+        for (all, column) in self.answers.iter_mut().zip(block.field) {
             all.extend_from_slice(&column[..rows]);
         }
     }
@@ -62,9 +73,11 @@ impl Sheet {
             (name.clone(), Arc::new(StringArray::from(cells)) as ArrayRef)
         };
         let mut all: Vec<(String, ArrayRef)> = cells.by_ref().take(time.len()).map(text).collect();
-        for (i, column) in self.field.into_iter().enumerate() {
-            if columns.field[i / 3] {
-                let name = ["ex", "ey", "ez", "bx", "by", "bz"][i];
+        let rows = self.problems.len();
+        for (i, mut column) in self.answers.into_iter().enumerate() {
+            if columns.answers[i / 3] {
+                column.resize(rows, f64::NAN);
+                let (name, _) = COLUMNS[1 + i];
                 all.push((name.to_owned(), doubles(column)));
             }
         }
@@ -102,14 +115,20 @@ pub(in crate::series) fn answered_in_place(
             }
         })
         .collect();
-    for (i, column) in sheet.field.into_iter().enumerate() {
-        if let Some(place) = header.place_of_field(i) {
+    for (i, mut column) in sheet.answers.into_iter().enumerate() {
+        if let Some(place) = header.place_of(i) {
+            column.resize(rows, f64::NAN);
             columns[place] = doubles(column);
         }
     }
     columns.push(Arc::new(StringArray::from(sheet.problems)));
     RecordBatch::try_new(schema.clone(), columns)
         .expect("columns of one length and the types of the schema")
+}
+
+/// How many rows a sheet has so far.
+fn before_here(answers: &[Vec<f64>; 12]) -> usize {
+    answers[0].len()
 }
 
 /// Numbers of which NaN is missing.

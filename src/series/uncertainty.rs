@@ -1,0 +1,103 @@
+//! Standard uncertainties of rows: those read, and those of the answer in their place.
+
+use crate::chain;
+use crate::document::{Code, Fault, Faults, Place};
+use crate::physics::covariance::Covariance;
+use crate::physics::propagation::Inputs;
+use crate::physics::resolved::Resolved;
+use crate::physics::uncertain::UncertainReading;
+use crate::physics::uncertainty::{Standard, depends_on_missing};
+use crate::transform::{Transformed, transform};
+
+use super::Series;
+use super::block::Block;
+use super::names::COLUMNS;
+
+/// The covariance of a row of a table, in which uncertainties of E, of B, or of both stand; NaN is
+/// a missing one. `None` when all are missing.
+///
+/// # Errors
+/// One is negative, or missing beside a component that is given.
+pub(super) fn of_columns(
+    field: &[f64; 6],
+    standard: &[f64; 6],
+    has: [bool; 2],
+) -> Result<Option<Covariance<6>>, Vec<Fault>> {
+    if standard.iter().all(|x| x.is_nan()) {
+        return Ok(None);
+    }
+    let mut faults = Faults::default();
+    let mut known = [0.0; 6];
+    for i in (0..6).filter(|i| has[i / 3]) {
+        // The names of uncertainties stand behind those of the field, in the same order.
+        let (name, _) = COLUMNS[7 + i];
+        let place = Place::ROOT.field(name);
+        if !standard[i].is_nan() {
+            known[i] = standard[i];
+            if let Err(flaw) = Covariance::of_standard([standard[i]]) {
+                chain::uncertainty::note(&place, &flaw, &mut faults);
+            }
+        } else if !field[i].is_nan() {
+            let detail = "this component is given, but its standard uncertainty is missing; 0 says \
+                          that it is exact";
+            faults.note(&place, Code::MissingField, detail);
+        }
+    }
+    if !faults.0.is_empty() {
+        for path in faults.0.iter_mut().filter_map(|fault| fault.path.as_mut()) {
+            // The column alone: it holds no list.
+            path.0.truncate(1);
+        }
+        return Err(faults.0);
+    }
+    Ok(Covariance::of_standard(known).ok())
+}
+
+/// Standard uncertainties of an answer; NaN where there is none.
+pub(super) fn of_answer(
+    way: &Resolved,
+    answer: &Transformed,
+    reading: Option<&UncertainReading>,
+) -> [f64; 6] {
+    let inputs = Inputs {
+        way,
+        field: &answer.question,
+        reading,
+    };
+    let mut standard = inputs.propagate(Standard(answer.units));
+    let hidden = if answer.is_complete() {
+        [false; 6]
+    } else {
+        depends_on_missing(&inputs, answer.missing)
+    };
+    for (i, value) in answer.e.iter().chain(&answer.b).enumerate() {
+        if value.is_none() || hidden[i] || !standard[i].is_finite() {
+            standard[i] = f64::NAN;
+        }
+    }
+    standard
+}
+
+impl Block {
+    /// Finds the standard uncertainties of the answers to the rows that have some. What makes a
+    /// row bad is found when it is solved.
+    pub(super) fn find_uncertainties(&mut self, series: &Series) {
+        if self.uncertain.is_empty() {
+            return;
+        }
+        let mut walker = series.walker();
+        let rows = series.way.rows(series.setting());
+        let calibration = [series.sensor.e, series.sensor.b].map(|channel| channel?.uncertainty);
+        for (row, field) in std::mem::take(&mut self.uncertain) {
+            let Ok(Some(way)) = self.way(row, series, &rows, walker.as_mut()) else {
+                continue;
+            };
+            let Ok(answer) = transform(&way, &self.reading(row, series), series.target) else {
+                continue;
+            };
+            let reading = UncertainReading { field, calibration };
+            let standard = of_answer(&way, &answer, Some(&reading));
+            self.standard.push((row, standard));
+        }
+    }
+}
