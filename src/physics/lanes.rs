@@ -119,7 +119,6 @@ pub(super) struct Boosts {
     direction: [Numbers; 3],
     stretch: Numbers,
     gamma: Numbers,
-    gamma_less_one: Numbers,
 }
 
 impl Boosts {
@@ -127,16 +126,17 @@ impl Boosts {
         direction: [Numbers::ZERO; 3],
         stretch: Numbers::ZERO,
         gamma: Numbers::ZERO,
-        gamma_less_one: Numbers::ZERO,
     };
 
     #[inline(always)]
     pub(super) fn get<A: Arithmetic>(&self, i: usize) -> Boost<DoubleDouble<A>> {
+        let gamma = self.gamma.get(i);
         Boost {
             direction: get3(&self.direction, i),
             stretch: self.stretch.get(i),
-            gamma: self.gamma.get(i),
-            gamma_less_one: self.gamma_less_one.get(i),
+            gamma,
+            // Not kept apart: only boosts that are composed with others need all its digits.
+            gamma_less_one: gamma - DoubleDouble::from_f64(1.0),
         }
     }
 
@@ -145,7 +145,6 @@ impl Boosts {
         set3(&mut self.direction, i, boost.direction);
         self.stretch.set(i, boost.stretch);
         self.gamma.set(i, boost.gamma);
-        self.gamma_less_one.set(i, boost.gamma_less_one);
     }
 }
 

@@ -1,6 +1,8 @@
 """A series while it runs: `curl` as the client, slow and fast, and everything that can go wrong."""
 
+import csv
 import gzip
+import io
 import json
 import signal
 import socket
@@ -215,6 +217,29 @@ def test_a_header_without_a_component_is_refused_by_name(service):
     table = pyarrow.table({name: [1.0] for name in FIELD[1:] + VELOCITY})
     faults = problem(series.send(service, WHERE, ARROW, stream(table)), 400, "missing_field")
     assert [fault["column"] for fault in faults] == ["ex"]
+
+
+def test_every_bad_row_says_why(service):
+    """Also where one has several faults, and others follow it."""
+    rows = [[1, 2, "x", 1, 2, 3, 4e8, 0, 0], [1, 2, 3, 1, 2, 3, 4e8, 0, 0], [1, 2, 3, 1, 2, 3, 4e7, 0, 0],
+            [1, "1e999", 3, 1, 2, 3, 4e7, 0, 0], [1, 2, 3, 1, 2, 3, 0, 3e8, 0]]
+    header = ",".join(FIELD + VELOCITY) + "\n"
+    text = header + "".join(",".join(map(str, row)) + "\n" for row in rows)
+    expected = ["wrong_type", "faster_than_light", "", "number_out_of_range", "faster_than_light"]
+    reply = series.send(service, WHERE, CSV, text.encode())
+    found = [row["problem"].split(" ")[0].strip(":") for row in csv.DictReader(io.StringIO(reply.body.decode()))]
+    assert found == expected
+    lines = [{"e": row[:3], "b": row[3:6], "velocity": row[6:]} for row in rows]
+    lines = series.ndjson(lines).replace(b'"1e999"', b"1e999")
+    *answers, end = map(json.loads, series.send(service, WHERE, NDJSON, lines).body.splitlines())
+    codes = [row["problem"]["errors"][0]["code"] if "problem" in row else "" for row in answers]
+    assert codes == expected
+    assert end["end"] == {"read": 5, "answered": 1, "refused": 4}
+    numbers = [[float("inf") if x == "1e999" else x for x in row] for row in rows[1:]]
+    table = pyarrow.table(dict(zip(FIELD + VELOCITY, zip(*[map(float, row) for row in numbers]))))
+    answer = pyarrow.ipc.open_stream(series.send(service, WHERE, ARROW, stream(table)).body).read_all()
+    found = [(problem or "").split(":")[0].split(" ")[0] for problem in answer["problem"].to_pylist()]
+    assert found == expected[1:]
 
 
 def stream(table):
