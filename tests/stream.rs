@@ -360,3 +360,50 @@ async fn a_bad_row_can_end_the_series_and_rows_are_counted() {
         );
     }
 }
+
+#[tokio::test]
+async fn a_compressed_body_is_unpacked_while_it_arrives() {
+    use async_compression::tokio::bufread::{GzipEncoder, ZstdEncoder};
+    use tokio::io::AsyncReadExt;
+    let text = ROW.repeat(5000);
+    let plain = ask(PATH, &[("content-type", NDJSON)], text.clone()).await;
+    let (mut gzip, mut zstd) = (Vec::new(), Vec::new());
+    GzipEncoder::new(text.as_bytes())
+        .read_to_end(&mut gzip)
+        .await
+        .unwrap();
+    ZstdEncoder::new(text.as_bytes())
+        .read_to_end(&mut zstd)
+        .await
+        .unwrap();
+    for (coding, packed) in [("gzip", &gzip), ("x-gzip", &gzip), ("zstd", &zstd)] {
+        let headers = [("content-type", NDJSON), ("content-encoding", coding)];
+        let answer = ask(PATH, &headers, packed.clone()).await;
+        assert!(answer.body == plain.body, "{coding}");
+        // What is no such coding, or only half of one, is no whole question.
+        ask(PATH, &headers, ROW).await.problem("syntax");
+        let half = packed[..packed.len() / 2].to_vec();
+        let response = service()
+            .oneshot(request(PATH, &headers, half))
+            .await
+            .unwrap();
+        let problem = response.status().is_client_error();
+        assert!(
+            problem || response.into_body().collect().await.is_err(),
+            "{coding}"
+        );
+    }
+    // Members and frames may follow each other.
+    let twice = [&gzip[..], &gzip].concat();
+    let answer = ask(
+        PATH,
+        &[("content-type", NDJSON), ("content-encoding", "gzip")],
+        twice,
+    )
+    .await;
+    assert!(
+        answer
+            .text()
+            .ends_with("{\"end\":{\"read\":10000,\"answered\":10000,\"refused\":0}}\n")
+    );
+}

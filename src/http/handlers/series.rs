@@ -13,7 +13,7 @@ use crate::{
         accept::{ARROW, CSV, NDJSON, negotiate},
         problem::{CommonProblems, Problem, ProblemDocument, Source},
         schema::{Query, SeriesQuery, examples},
-        stream,
+        stream::{self, Coding},
     },
     series::{Format, Series},
 };
@@ -41,7 +41,7 @@ const FORMATS: [(&str, Format); 3] = [
 /// The answer is whole if it ended properly: a chunked body with its last chunk, NDJSON with its
 /// line `end`. After any failure the connection is cut. The counts of rows follow a table as
 /// trailers when the client sends `TE: trailers`. Read while you send: the server stops reading
-/// when much of its answer waits.
+/// when much of its answer waits. The body may be compressed (`Content-Encoding: gzip` or `zstd`).
 #[utoipa::path(
     post, path = "/v1/series", tag = "fields", operation_id = "series",
     params(SeriesQuery, Query),
@@ -75,6 +75,7 @@ pub(crate) async fn series(
 ) -> Result<Response, Problem> {
     let headers = request.headers();
     let (own, input) = format(headers)?;
+    let coding = Coding::of(headers)?;
     let offers = FORMATS.map(|(name, _)| name);
     let others = offers.into_iter().filter(|offer| *offer != own);
     let offers: Vec<&'static str> = [own].into_iter().chain(others).collect();
@@ -86,7 +87,15 @@ pub(crate) async fn series(
     let node = from_query(request.uri().query().unwrap_or_default()).map_err(refuse)?;
     let series = Series::read(node, &state.deployment).map_err(refuse)?;
     let formats = [input, output];
-    let body = stream::answer(state, series, formats, trailers, request.into_body()).await?;
+    let body = stream::answer(
+        state,
+        series,
+        formats,
+        trailers,
+        coding,
+        request.into_body(),
+    )
+    .await?;
     let mut response = body.into_response();
     let headers = response.headers_mut();
     let kind = match output {
@@ -107,13 +116,6 @@ pub(crate) async fn series(
 /// The format of the rows, by the `Content-Type`.
 fn format(headers: &HeaderMap) -> Result<(&'static str, Format), Problem> {
     let unsupported = |detail: String| Problem::new(Code::UnsupportedMediaType, detail);
-    if let Some(coding) = headers.get(header::CONTENT_ENCODING)
-        && !coding.as_bytes().eq_ignore_ascii_case(b"identity")
-    {
-        return Err(unsupported(
-            "The body is compressed (Content-Encoding); send it as it is.".to_owned(),
-        ));
-    }
     let known = FORMATS.map(|(name, _)| name).join(", ");
     let Some(kind) = headers.get(header::CONTENT_TYPE) else {
         return Err(unsupported(format!(

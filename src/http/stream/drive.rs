@@ -305,7 +305,8 @@ impl Failure {
             ),
             Failure::Broken | Failure::Gone => Fault::whole(
                 Code::Syntax,
-                "the body broke off, or its chunks were not well-formed",
+                "the body broke off, its chunks were not well-formed, or it is not compressed as its \
+                 Content-Encoding says",
             ),
         };
         Refusal {

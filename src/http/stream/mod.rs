@@ -3,6 +3,7 @@
 //! A task of its own drives it ([`drive`]); the handler waits only for the first bytes of the
 //! answer, or for what speaks against it.
 
+mod coding;
 mod drive;
 mod unread;
 
@@ -13,13 +14,14 @@ use tokio::sync::oneshot;
 
 use super::{AppState, problem::Problem};
 use crate::series::{Format, Intake, Limits, Outlet, Series};
+pub(super) use coding::Coding;
 use drive::Drive;
 
 /// Names of the trailers that hold the counts of rows: read, answered, refused.
 pub(super) const TRAILERS: [&str; 3] =
     ["lodeframe-read", "lodeframe-answered", "lodeframe-refused"];
 
-/// Answers the rows of a body, in the formats given; with counts after the last row as trailers,
+/// Answers the rows of a body that may be compressed, in the formats given; with counts after the last row as trailers,
 /// if the client takes them. The body given back ends properly only when the answer is whole.
 ///
 /// # Errors
@@ -29,6 +31,7 @@ pub(super) async fn answer(
     series: Series,
     formats: [Format; 2],
     trailers: bool,
+    coding: Coding,
     body: Body,
 ) -> Result<Body, Problem> {
     let [input, output] = formats;
@@ -40,7 +43,7 @@ pub(super) async fn answer(
     let intake = Intake::new(Arc::new(series), input, output, limits);
     let (head, begun) = oneshot::channel();
     let (unread, answer) = unread::channel(state.config.buffer);
-    let drive = Drive::new(state, intake, outlet, body, unread, head);
+    let drive = Drive::new(state, intake, outlet, coding.unpacked(body), unread, head);
     tokio::spawn(drive.run(trailers));
     match begun.await {
         Ok(begun) => begun.map(|()| Body::new(answer)),
