@@ -1,6 +1,6 @@
 //! What all requests share.
 
-use std::sync::Arc;
+use std::sync::{Arc, LazyLock};
 
 use bytes::Bytes;
 use tokio::sync::{Semaphore, watch};
@@ -24,8 +24,8 @@ pub struct Shared {
     pub trial_runs: Semaphore,
     /// What is counted.
     pub metrics: Metrics,
-    /// The OpenAPI document, as served.
-    pub openapi: Bytes,
+    /// The OpenAPI document, as served; made when first asked for, since its examples are true answers.
+    pub openapi: LazyLock<Bytes>,
     /// Turns true when series that still run must come to their end.
     pub ending: watch::Sender<bool>,
 }
@@ -44,7 +44,7 @@ impl AppState {
             trial_runs: Semaphore::new(pool.threads()),
             pool,
             metrics: Metrics::new(),
-            openapi: openapi::text().into(),
+            openapi: LazyLock::new(|| openapi::text().into()),
             ending: watch::Sender::new(false),
         }))
     }

@@ -83,7 +83,7 @@ impl Block {
                 .iter_mut()
                 .for_each(|column| column[*row] = f64::NAN);
         }
-        let mut found = if series.blank.e_dot_b_zero.is_some() {
+        let found = if series.blank.e_dot_b_zero.is_some() {
             self.solve_each(series)
         } else {
             self.solve_all(series)
