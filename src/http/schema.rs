@@ -10,7 +10,7 @@ mod uncertainty;
 mod units;
 
 pub use monte_carlo::MonteCarlo;
-pub use query::{Query, RangeQuery, ReadingQuery, SeriesQuery, WayQuery};
+pub use query::{Query, RangeQuery, ReadingQuery, SeriesQuery, UncertaintyQuery, WayQuery};
 pub use rotate::Rotate;
 pub use step::{Boost, Step};
 pub use uncertainty::Uncertainty;

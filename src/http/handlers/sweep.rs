@@ -15,7 +15,7 @@ use crate::{
         accept::{CSV, JSON, SVG, negotiate},
         cache::{IMMUTABLE, cached, etag},
         problem::{CommonProblems, Problem, ProblemDocument, Source},
-        schema::{Query, RangeQuery, ReadingQuery, examples},
+        schema::{Query, RangeQuery, ReadingQuery, UncertaintyQuery, examples},
     },
     picture,
     sweep::{Sweep, Swept},
@@ -29,7 +29,7 @@ use crate::{
 /// `steps`, so that a turn can run before a boost of fixed speed.
 #[utoipa::path(
     get, path = "/v1/sweep", tag = "fields", operation_id = "sweep",
-    params(RangeQuery, ReadingQuery, Query),
+    params(RangeQuery, ReadingQuery, Query, UncertaintyQuery),
     responses(
         (status = 200, description = "E' and B' against the quantity that runs",
             headers(

@@ -36,12 +36,6 @@ pub struct Query {
     /// Fill a missing component of E from E·B = 0; the least angle of B to the measured plane.
     #[param(required = false, rename = "assume.e_dot_b_zero.min_angle")]
     assume_e_dot_b_zero_min_angle: String,
-    /// Standard uncertainties of E as read; likewise `uncertainty.b`, `uncertainty.velocity` and `uncertainty.rotation`.
-    #[param(required = false, rename = "uncertainty.e", example = "0.1,0.1,0.1")]
-    uncertainty_e: String,
-    /// Instead of those of E and B: their 6×6 covariance matrix, as JSON text.
-    #[param(required = false, rename = "uncertainty.covariance")]
-    uncertainty_covariance: String,
     /// Take the whole way backwards.
     #[param(required = false)]
     inverse: String,
@@ -51,6 +45,19 @@ pub struct Query {
     /// Unit of B' in the answer.
     #[param(required = false, rename = "answer_units.b")]
     answer_units_b: String,
+}
+
+/// How uncertain a single question is; a series takes none in its query.
+#[derive(IntoParams)]
+#[into_params(parameter_in = Query)]
+#[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
+pub struct UncertaintyQuery {
+    /// Standard uncertainties of E as read; likewise `uncertainty.b`, `uncertainty.velocity` and `uncertainty.rotation`.
+    #[param(required = false, rename = "uncertainty.e", example = "0.1,0.1,0.1")]
+    uncertainty_e: String,
+    /// Instead of those of E and B: their 6×6 covariance matrix, as JSON text.
+    #[param(required = false, rename = "uncertainty.covariance")]
+    uncertainty_covariance: String,
 }
 
 /// The way of a question in its other forms, and further parts of its answer.
