@@ -38,6 +38,13 @@ def in_process(binary, kind, to, threads, source, answer=None):
     return float(out.split()[1])
 
 
+def kernel(binary, count):
+    """Seconds of the transformation alone, from columns to columns, on one thread."""
+    count = -(-count // 1000) * 1000
+    out = subprocess.run([binary, "kernel", str(count)], check=True, capture_output=True, text=True).stdout
+    return float(out.split()[1])
+
+
 def peer(name, source, answer):
     """Seconds of a script in Python."""
     command = [sys.executable, HERE / "peers.py", name, source, answer]
@@ -124,12 +131,15 @@ def measure(options, folder):
     count, answer = options.rows, folder / "answer"
     print(f"| {count} rows, each with its velocity | figure | ratio |\n|---|---|---|")
     two = {}
+    alone = best(lambda: kernel(options.bench, count))
+    line("the transformation alone, exact, one thread", million(count, alone))
     for kind in options.formats:
         path = paths[kind]
         size = f"{path.stat().st_size / count:.0f} bytes a row"
         one = best(lambda: in_process(options.bench, kind, kind, 1, path))
         two[kind] = best(lambda: in_process(options.bench, kind, kind, 2, path))
-        line(f"{kind}, {size}, in process, one thread", million(count, one))
+        share = f"{1 - alone / one:.2f} of reading and writing alone"
+        line(f"{kind}, {size}, in process, one thread", million(count, one), share)
         line(f"{kind}, two threads", million(count, two[kind]), f"{one / two[kind]:.2f} of one thread")
     for kind in options.formats:
         ours = best(lambda: in_process(options.bench, kind, kind, 2, paths[kind], answer))
