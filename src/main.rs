@@ -140,23 +140,25 @@ async fn run(
     } else {
         "http"
     };
+    if let Err(fault) = room(&config) {
+        log::event("warn", "too few open files", &fault);
+    }
+    let readable = config.tokens.is_some() && config.tls.is_none();
+    let state = AppState::new(config, frames);
+    let app = app(state.clone());
     println!(
         "Lodeframe {} listens on {scheme}://{address} (stop with Ctrl-C)",
         env!("CARGO_PKG_VERSION")
     );
-    if let Err(fault) = room(&config) {
-        log::event("warn", "too few open files", &fault);
-    }
-    if config.tokens.is_some() && config.tls.is_none() && !address.ip().is_loopback() {
+    if readable && !address.ip().is_loopback() {
         log::event(
             "warn",
             "tokens travel readable",
             &"without --tls-cert whoever sees the network sees them; let a proxy on this machine speak TLS, or give a certificate",
         );
     }
-    let state = AppState::new(config, frames);
     tell_manager(NotifyState::Ready);
-    serve(listener, app(state.clone()), &state, async {
+    serve(listener, app, &state, async {
         stop.await;
         tell_manager(NotifyState::Stopping);
     })

@@ -1,5 +1,10 @@
 //! Questions of the OpenAPI document and their true answers. All values are invented.
 
+use std::{
+    collections::BTreeMap,
+    sync::{Mutex, PoisonError},
+};
+
 use serde_json::{Value, json};
 
 use crate::{
@@ -90,9 +95,16 @@ pub fn plane_wave() -> Value {
     })
 }
 
-/// What the service answers.
+/// What the service answers; worked out once, however often the paths are described.
 pub fn answer_to(question: Value) -> Answer {
+    static ANSWERS: Mutex<BTreeMap<String, Answer>> = Mutex::new(BTreeMap::new());
     let text = question.to_string();
+    let mut answers = ANSWERS.lock().unwrap_or_else(PoisonError::into_inner);
+    let answer = answers.entry(text);
+    answer.or_insert_with_key(|text| work_out(text)).clone()
+}
+
+fn work_out(text: &str) -> Answer {
     let node = Node::from_json(text.as_bytes()).expect("an example is JSON");
     let question = Question::read(&node, &DEPLOYMENT).expect("an example is right");
     let mut answer = Answer::to(&question).expect("an example has an answer");
