@@ -73,6 +73,7 @@ fn blocks(c: &mut Criterion) {
     let row = |change| RowStep {
         change,
         inverse: false,
+        uncertainty: None,
     };
     let mut group = c.benchmark_group("rows");
     group.throughput(Throughput::Elements(ROWS as u64));
