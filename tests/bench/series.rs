@@ -25,6 +25,7 @@ const LIMITS: Limits = Limits {
 };
 const DEPLOYMENT: Deployment = Deployment {
     steps: 10,
+    trials: 0,
     frames: None,
 };
 
@@ -68,6 +69,7 @@ fn kernel(rows: usize) -> f64 {
             beta: Motion::to_beta(Scale::ONE),
         },
         inverse: false,
+        uncertainty: None,
     };
     let way = Rows::new(vec![own], setting);
     let mut answers = Columns::default();
