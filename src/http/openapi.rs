@@ -90,6 +90,7 @@ fn answer_examples() -> Vec<(&'static str, Value)> {
     let plane_wave = answer(examples::plane_wave());
     let swept = serde_json::to_value(examples::swept()).expect("an answer has a JSON form");
     let uncertain = &answer(examples::uncertain_reading())["uncertainty"];
+    let trials = &answer(examples::trials())["monte_carlo"];
     vec![
         ("AnswerUnits", full["units"].clone()),
         ("Invariants", full["invariants"].clone()),
@@ -111,6 +112,14 @@ fn answer_examples() -> Vec<(&'static str, Value)> {
         ("SecondOrder", uncertain["second_order"].clone()),
         ("Budget", uncertain["budget"].clone()),
         ("Share", uncertain["budget"]["e"][0][0].clone()),
+        ("MonteCarloOfAnswer", trials.clone()),
+        ("ComponentsOfTrials", trials["estimate"].clone()),
+        ("IntervalsOfTrials", trials["intervals"].clone()),
+        ("ValidationOfTrials", trials["validation"].clone()),
+        (
+            "ComparisonOfIntervals",
+            trials["validation"]["e"][0].clone(),
+        ),
         ("NoFrame", plane_wave["parallel_frame"].clone()),
         ("Notice", plane_wave["notices"][0].clone()),
         ("Columns", swept["e"].clone()),
