@@ -39,7 +39,7 @@ pub struct Answer {
     pub units: AnswerUnits,
     /// The uncertainty of `e` and `b`, when anything in the question is uncertain.
     #[serde(skip_serializing_if = "Option::is_none")]
-    pub uncertainty: Option<Uncertainty>,
+    pub uncertainty: Option<Box<Uncertainty>>,
     /// What trials say of it, when asked for.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub monte_carlo: Option<Box<MonteCarlo>>,
@@ -235,7 +235,7 @@ impl Answer {
                 detail: detail.into(),
             });
         }
-        let uncertainty = assess::uncertainty(question, &transformed, &mut notices);
+        let uncertainty = assess::uncertainty(question, &transformed, &mut notices).map(Box::new);
         let unit = |quantity| Cow::Borrowed(question.answer_units.get(quantity).code);
         Ok(Answer {
             e: transformed.e,
