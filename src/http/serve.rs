@@ -15,6 +15,7 @@ use tokio::{
     sync::{OwnedSemaphorePermit, Semaphore},
     time::timeout,
 };
+use tokio_io_timeout::TimeoutStream;
 use tokio_rustls::TlsAcceptor;
 
 use super::{AppState, doorstep::Doorstep, lazy_timer::LazyTimer, log};
@@ -130,9 +131,15 @@ async fn converse(
     http: http1::Builder,
     app: Router,
     watcher: Watcher,
-    _place: Place,
+    place: Place,
 ) {
-    let connection = http.serve_connection(TokioIo::new(stream), TowerToHyperService::new(app));
+    let idle = place.state.config.idle_timeout;
+    // A client that reads nothing is left after the idle time, whatever is still to be written: hyper
+    // would wait for it without an end.
+    let mut stream = TimeoutStream::new(stream);
+    stream.set_write_timeout(Some(idle));
+    let stream = TokioIo::new(Box::pin(stream));
+    let connection = http.serve_connection(stream, TowerToHyperService::new(app));
     if let Err(error) = watcher.watch(connection).await {
         log::event("debug", "connection ended early", &error);
     }

@@ -30,8 +30,10 @@ def test_the_linter_finds_no_error(tmp_path):
         "--extends", "recommended", cwd=tmp_path, REDOCLY_TELEMETRY="off", REDOCLY_SUPPRESS_UPDATE_NOTICE="true")
 
 
-# OpenMetrics is plain text of a stricter form; the generator has to be told.
-GENERATOR = {"content_type_overrides": {"application/openmetrics-text": "text/plain"}}
+# The generator has to be told that OpenMetrics is plain text of a stricter form, and that rows go as they are.
+BYTES = ["application/x-ndjson", "text/csv", "application/vnd.apache.arrow.stream"]
+GENERATOR = {"content_type_overrides": {"application/openmetrics-text": "text/plain"}
+             | dict.fromkeys(BYTES, "application/octet-stream")}
 
 
 @pytest.fixture(scope="module")
@@ -95,8 +97,9 @@ def test_a_generated_client_reads_units_and_constants(service, openapi, client_p
 
 def test_a_fuzzer_finds_no_answer_that_the_document_does_not_describe(service, tmp_path):
     """Schemathesis: documented examples, boundary values and random requests, right and wrong ones."""
+    # Rows have no schema that it could fill in; tests/fuzz and test_series_stream.py are for them.
     said = run("schemathesis", "run", f"{service.url}/openapi.json", "--checks", ",".join(CHECKS),
-               "--phases", "examples,coverage,fuzzing", "--mode", "all", "--seed", SEED,
+               "--exclude-path", "/v1/series", "--phases", "examples,coverage,fuzzing", "--mode", "all", "--seed", SEED,
                "--max-examples", "100", "--workers", "2", cwd=tmp_path)
     counted = re.search(r"(\d+) generated, (\d+) passed", said)
     assert counted and counted[1] == counted[2] and int(counted[1]) > 500, said
