@@ -61,6 +61,7 @@ def main():
             words = page.text("#file-status")
         taken = time.monotonic() - begun
         print(f"{path.stat().st_size / 1e9:.2f} GB in {taken:.0f} s: {words}")
+        print(page.text("#file-faults"))
         print(f"largest renderer: {most:.0f} MiB resident, {idle:.0f} MiB before")
 
 
