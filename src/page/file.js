@@ -86,7 +86,7 @@ function begin(file) {
 function showFaults(error, stopped) {
   const details = stopped ? [] : error.errors?.length
     ? error.errors.map((fault) => `${fault.column ? `Column ${fault.column}: ` : ""}${fault.detail}`)
-    : [error.detail ?? "The answer broke off; is the service still running?"];
+    : [error.detail ?? (error instanceof TypeError ? "The answer broke off; is the service still running?" : `The browser says: ${error.message}`)];
   one("#file-faults").replaceChildren(...details.map((words) => el("p", { className: "fault" }, words)));
 }
 
