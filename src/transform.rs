@@ -13,6 +13,9 @@ use crate::physics::reduction::{Calibration, Reduction};
 use crate::physics::resolved::Resolved;
 use crate::physics::scale::Scale;
 
+/// The notice that no double holds an invariant.
+pub const INVARIANT_OUT_OF_RANGE: &str = "invariant_out_of_range";
+
 /// E and B at one event, any component of which may be missing.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Reading {
@@ -95,7 +98,7 @@ pub fn transform(
         && (found.e2_minus_c2b2.is_none() || found.e_dot_cb.is_none())
     {
         notices.push(Notice {
-            code: "invariant_out_of_range",
+            code: INVARIANT_OUT_OF_RANGE,
             detail: "an invariant is larger than the largest double in V2/m2 and is null".into(),
         });
     }

@@ -21,6 +21,8 @@ mod pool;
 mod problems;
 mod schema;
 mod series;
+mod series_notices;
+mod series_uncertainty;
 mod start;
 mod stream;
 mod support;

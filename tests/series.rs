@@ -9,14 +9,14 @@ use lodeframe::question::{Deployment, Question};
 use lodeframe::series::{Counts, Format, Intake, Limits, Outlet, Refusal, Series, run};
 use serde_json::{Value, json};
 
-const NDJSON: Format = Format::Ndjson;
-const CSV: Format = Format::Csv;
+pub(crate) const NDJSON: Format = Format::Ndjson;
+pub(crate) const CSV: Format = Format::Csv;
 const LIMITS: Limits = Limits {
     row: 4096,
     batch: 1 << 20,
 };
 
-fn deployment() -> Deployment {
+pub(crate) fn deployment() -> Deployment {
     let file = concat!(env!("CARGO_MANIFEST_DIR"), "/deploy/demo/frames.toml");
     let catalogue = lodeframe::frames::load(std::path::Path::new(file));
     Deployment {
@@ -32,7 +32,7 @@ pub(crate) fn series(query: &str) -> Series {
 }
 
 /// The whole answer, when the question comes in pieces of so many bytes.
-fn in_pieces(
+pub(crate) fn in_pieces(
     query: &str,
     [input, output]: [Format; 2],
     text: &[u8],
@@ -64,7 +64,7 @@ fn in_pieces(
 }
 
 #[track_caller]
-fn answer(query: &str, formats: [Format; 2], text: &str) -> String {
+pub(crate) fn answer(query: &str, formats: [Format; 2], text: &str) -> String {
     let (whole, refusal) = in_pieces(query, formats, text.as_bytes(), usize::MAX);
     assert!(refusal.is_none(), "{refusal:?}");
     // Wherever the bytes are cut, the answer is the same.
@@ -76,7 +76,7 @@ fn answer(query: &str, formats: [Format; 2], text: &str) -> String {
 }
 
 /// The codes and columns of what a header is refused for.
-fn refused(query: &str, text: &str) -> Vec<(String, String)> {
+pub(crate) fn refused(query: &str, text: &str) -> Vec<(String, String)> {
     let (_, refusal) = in_pieces(query, [CSV, CSV], text.as_bytes(), 5);
     let faults = refusal.expect("a refusal").faults;
     let each = faults.iter().map(|fault| {
@@ -86,7 +86,7 @@ fn refused(query: &str, text: &str) -> Vec<(String, String)> {
     each.collect()
 }
 
-fn single(question: &Value) -> Answer {
+pub(crate) fn single(question: &Value) -> Answer {
     let text = question.to_string();
     let node = Node::from_json(text.as_bytes()).expect("JSON");
     let question =
@@ -117,7 +117,7 @@ impl Random {
     }
 }
 
-fn lines(text: &str) -> Vec<Value> {
+pub(crate) fn lines(text: &str) -> Vec<Value> {
     let each = text
         .lines()
         .map(|line| serde_json::from_str(line).unwrap_or_else(|error| panic!("{error}: {line}")));
@@ -624,104 +624,4 @@ fn many_threads_give_the_answer_of_one() {
     assert!(answers[0] == answers[1]);
     let last = lines(std::str::from_utf8(&answers[0]).unwrap());
     assert_eq!(last[19_000]["row"], 19_001);
-}
-
-#[test]
-fn uncertainties_of_rows_are_restated_as_in_single_readings() {
-    let units = json!({"e": "mV/m", "b": "nT", "velocity": "km/s"});
-    let steps = |v: &str| {
-        format!(
-            "[{{\"rotate\":{{\"axis\":[0,0,1],\"angle\":0.3,\"uncertainty\":[0.01,0,0.02]}}}},{{\"boost\":{{\"velocity\":{v},\"uncertainty\":[0.1,0.1,0.2]}}}}]"
-        )
-    };
-    let query = format!(
-        "units.e=mV/m&units.b=nT&units.velocity=km/s&steps={}",
-        steps("\"row\"")
-    );
-    let rows = [
-        (
-            [1.5, -20.0, 3.0],
-            [20000.0, 300.0, -45000.0],
-            [0.1, 0.2, 0.3],
-            [5.0, 6.0, 7.0],
-            [7.6, 0.1, 0.0],
-        ),
-        (
-            [0.0, 2.0, 30.0],
-            [10.0, 0.0, 4.0],
-            [0.0, 0.2, 0.0],
-            [0.0, 0.0, 1.0],
-            [0.0, 7.5, 0.0],
-        ),
-    ];
-    let mut ndjson = String::new();
-    let mut table = "ex,ey,ez,u_ex,u_ey,u_ez,bx,by,bz,u_bx,u_by,u_bz,vx,vy,vz\n".to_owned();
-    let mut expected = Vec::new();
-    for (e, b, u_e, u_b, v) in rows {
-        let uncertainty = json!({"e": u_e, "b": u_b});
-        let row = json!({"uncertainty": uncertainty, "e": e, "b": b, "velocity": v});
-        writeln!(ndjson, "{row}").unwrap();
-        let numbers = [e, u_e, b, u_b, v].concat();
-        let numbers = numbers.iter().map(|x| format!("{x:?}"));
-        writeln!(table, "{}", numbers.collect::<Vec<_>>().join(",")).unwrap();
-        let own: Value = serde_json::from_str(&steps(&json!(v).to_string())).unwrap();
-        let question =
-            json!({"e": e, "b": b, "uncertainty": uncertainty, "units": units, "steps": own});
-        expected.push(single(&question));
-    }
-    for (format, text) in [(NDJSON, &ndjson), (CSV, &table)] {
-        let answered = lines(&answer(&query, [format, NDJSON], text));
-        for (row, expected) in answered.iter().zip(&expected) {
-            let known = expected.uncertainty.as_ref().expect("an uncertainty");
-            assert_eq!(row["uncertainty"], json!({"e": known.e, "b": known.b}));
-            assert_eq!(row["e"], json!(expected.e));
-        }
-    }
-    let same = answer(&query, [CSV, CSV], &table);
-    let known = expected[0].uncertainty.as_ref().unwrap();
-    let first: Vec<&str> = same.lines().nth(1).unwrap().split(',').collect();
-    assert_eq!(first[3].parse::<f64>().unwrap(), known.e[0].unwrap());
-    assert_eq!(first[11].parse::<f64>().unwrap(), known.b[2].unwrap());
-
-    // A way of its own, a covariance, and what is missing or wrong.
-    let own = json!({"e": [1, 2, 3], "b": [0.1, 0.2, 0.3], "velocity": [1e7, 0, 0], "uncertainty": {"velocity": [1e4, 0, 0]}});
-    let covariance: Vec<Vec<f64>> = (0..6)
-        .map(|i| (0..6).map(|j| if i == j { 4.0 } else { 1.0 }).collect())
-        .collect();
-    let correlated = json!({"e": [1, 2, 3], "b": [0.1, 0.2, 0.3], "velocity": [1e7, 0, 0], "uncertainty": {"covariance": covariance}});
-    for row in [&own, &correlated] {
-        let answered = lines(&answer("", [NDJSON, NDJSON], &row.to_string()));
-        let known = single(row).uncertainty.expect("an uncertainty");
-        assert_eq!(
-            answered[0]["uncertainty"],
-            json!({"e": known.e, "b": known.b})
-        );
-    }
-    let text = "bx,by,bz,u_bx,u_by,u_bz\n1,2,3,0.5,0.5,-1\n1,2,3,,0.5,0.5\n1,2,3,,,\n";
-    let answered = answer("rotation.axis=0,0,1&rotation.angle=0", [CSV, CSV], text);
-    let rows: Vec<&str> = answered.lines().collect();
-    assert!(
-        rows[1].starts_with(",,,,,,negative_uncertainty (u_bz): "),
-        "{}",
-        rows[1]
-    );
-    assert!(
-        rows[2].starts_with(",,,,,,\"missing_field (u_bx): "),
-        "{}",
-        rows[2]
-    );
-    assert_eq!(rows[3], "1.0,2.0,3.0,,,,");
-    let text = "{\"b\":[1,2,3],\"uncertainty\":{\"b\":[1,1,-1],\"velocity\":[1,1,1]}}";
-    let rows = lines(&answer(
-        "rotation.axis=0,0,1&rotation.angle=0",
-        [NDJSON, NDJSON],
-        text,
-    ));
-    let codes: Vec<&str> = rows[0]["problem"]["errors"]
-        .as_array()
-        .unwrap()
-        .iter()
-        .map(|error| error["code"].as_str().unwrap())
-        .collect();
-    assert_eq!(codes, ["negative_uncertainty", "conflicting_fields"]);
 }

@@ -67,6 +67,13 @@ pub enum Link {
     Track(Track),
 }
 
+impl Frame {
+    /// Whether its motion is told also for times outside its track.
+    pub fn extrapolates(&self) -> bool {
+        matches!(&self.link, Link::Track(track) if track.extrapolate)
+    }
+}
+
 /// So many prepared ways are kept; past that they are prepared anew.
 const WALKS: usize = 4096;
 

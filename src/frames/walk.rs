@@ -101,6 +101,14 @@ impl Walk {
         self.legs.iter().all(|leg| matches!(leg, Leg::Fixed(_)))
     }
 
+    /// Whether it may pass a track at a time outside it.
+    pub fn extrapolates(&self) -> bool {
+        self.legs.iter().any(|leg| match leg {
+            Leg::Fixed(_) => false,
+            Leg::Moving { frame, .. } => self.frames[*frame].extrapolates(),
+        })
+    }
+
     /// How times are written.
     pub fn clock(&self) -> Clock {
         self.clock

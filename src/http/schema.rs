@@ -5,13 +5,17 @@ pub mod examples;
 mod monte_carlo;
 mod query;
 mod rotate;
+mod rows;
 mod step;
 mod uncertainty;
 mod units;
 
 pub use monte_carlo::MonteCarlo;
-pub use query::{Query, RangeQuery, ReadingQuery, SeriesQuery, UncertaintyQuery, WayQuery};
+pub use query::{
+    Query, RangeQuery, ReadingQuery, SeriesQuery, SingleQuery, UncertaintyQuery, WayQuery,
+};
 pub use rotate::Rotate;
+pub use rows::Batches;
 pub use step::{Boost, Step};
 pub use uncertainty::Uncertainty;
 pub use units::{AnswerUnits, Units};

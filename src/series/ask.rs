@@ -4,20 +4,24 @@ use std::borrow::Cow;
 use std::sync::Arc;
 
 use crate::document::{Code, Fault, Faults, Members, Node, Place};
-use crate::frames::{Clock, Sensor, Walker};
+use crate::frames::{Clock, Frame, Sensor, Walker};
 use crate::physics::block::Setting;
 use crate::physics::field::FieldUnits;
 use crate::physics::resolved::Resolved;
-use crate::question::{Deployment, Question, way as question_way};
+use crate::question::{
+    Deployment, Question, uncertainty as question_uncertainty, way as question_way,
+};
 use crate::transform::Reading;
 
+use super::Format;
+use super::uncertainty;
 use super::way::{self, Taken, Template, Way};
 
 /// The names that the query of a series has beside those of a question.
 const KNOWN: [&str; 3] = ["keep", "on_error", "end"];
 
 /// Parts of a question that have no place in a series, and why.
-const NOT_HERE: [(&str, &str); 6] = [
+const NOT_HERE: [(&str, &str); 5] = [
     ("e", "is read from the rows"),
     ("b", "is read from the rows"),
     (
@@ -27,10 +31,6 @@ const NOT_HERE: [(&str, &str); 6] = [
     (
         "signature",
         "has no place in a series; ask /v1/transform for it",
-    ),
-    (
-        "uncertainty",
-        "stands in each row, and that of a step inside the step",
     ),
     (
         "monte_carlo",
@@ -59,6 +59,8 @@ pub struct Series {
     /// What a row with a way of its own is asked with.
     pub(super) question: Node<'static>,
     pub(super) deployment: Deployment,
+    /// Whether the query states an uncertainty of its way, so that every answer has one.
+    pub(super) uncertain: bool,
 }
 
 impl Series {
@@ -92,6 +94,20 @@ impl Series {
             Way::Walk(walk) => Some(Walker::new(walk.clone())),
             _ => None,
         }
+    }
+
+    /// Whether answers to rows of a format may come with notices.
+    pub(super) fn notices(&self, input: Format) -> bool {
+        self.blank.e_dot_b_zero.is_some()
+            || match &self.way {
+                Way::Walk(walk) => walk.extrapolates(),
+                // Only a row of NDJSON names frames.
+                Way::Own { .. } if input == Format::Ndjson => {
+                    let catalogue = self.deployment.frames.as_ref();
+                    catalogue.is_some_and(|known| known.frames().iter().any(Frame::extrapolates))
+                }
+                _ => false,
+            }
     }
 
     /// What is the same in every block.
@@ -137,7 +153,11 @@ fn read(node: Node<'static>, deployment: &Deployment, faults: &mut Faults) -> Op
         }
     }
     asked.retain(|(name, _)| NOT_HERE.iter().all(|(not, _)| name != not));
-    let question = Node::Object(asked.clone());
+    let errors = asked.iter().find(|(name, _)| name == "uncertainty");
+    uncertainty::of_query(errors.map(|(_, node)| node), faults);
+    let mut question = asked.clone();
+    question.retain(|(name, _)| name != "uncertainty");
+    let question = Node::Object(question);
     let gaps = gaps(&mut asked);
     asked.extend(["e", "b"].map(|name| (Cow::Borrowed(name), Node::Null)));
     let mut found = None;
@@ -160,8 +180,15 @@ fn read(node: Node<'static>, deployment: &Deployment, faults: &mut Faults) -> Op
         .ok()?;
     let (way, sensor) = found?;
     let catalogue = deployment.frames.as_ref();
+    let named = asked_for(&question, "from");
+    let uncertain = match &way {
+        Way::Fixed(way) => !named && way.is_uncertain(),
+        Way::Rows(template) => template.is_uncertain(),
+        Way::Walk(_) | Way::Own { .. } => false,
+    };
     Some(Series {
         way,
+        uncertain,
         sensor: sensor.unwrap_or_default(),
         target: read.target_units(),
         blank: read.reading,
@@ -172,6 +199,16 @@ fn read(node: Node<'static>, deployment: &Deployment, faults: &mut Faults) -> Op
         question,
         deployment: deployment.clone(),
     })
+}
+
+/// Whether a question has a member.
+fn asked_for(question: &Node, name: &str) -> bool {
+    let Node::Object(members) = question else {
+        return false;
+    };
+    members
+        .iter()
+        .any(|(own, node)| own == name && !node.is_null())
 }
 
 /// Replaces every `"row"` of the way; the gaps of its steps, if it has steps.
@@ -202,6 +239,7 @@ fn read_way(
             .iter()
             .any(|name| members.get(name).is_some())
     {
+        question_uncertainty::of_other_ways(members, "", faults);
         let inverse = question_way::inverse(members, faults)?;
         if inverse {
             let detail = "\"inverse\" turns the way of the query around, and there is none";
@@ -218,6 +256,7 @@ fn read_way(
         let inverse = question_way::inverse(members, faults);
         let walk = question_way::walk(members, inverse, deployment, faults)?;
         if !walk.is_fixed() {
+            question_uncertainty::of_other_ways(members, "from", faults);
             let sensor = walk.sensor().filter(|_| inverse == Some(false));
             let units = deployment.frames.as_ref()?.units;
             let sensed = question_way::Way {

@@ -3,14 +3,13 @@
 use std::sync::Arc;
 
 use crate::chain;
-use crate::document::{Code, Fault, Path, Segment};
-use crate::frames::{Time, Walker};
+use crate::document::{Code, Fault, Notice, Path, Segment};
+use crate::frames::{Passage, Time, Walker};
 use crate::physics::block::{Columns, Readings, Refused};
 use crate::physics::covariance::Covariance;
-use crate::physics::resolved::Resolved;
 use crate::physics::rows::{Motions, Rows};
 use crate::physics::{self, Impossible};
-use crate::transform::{Reading, transform};
+use crate::transform::{INVARIANT_OUT_OF_RANGE, Reading, transform};
 
 use super::Series;
 use super::way::{RowMotion, Taken, Way};
@@ -36,6 +35,8 @@ pub(super) struct Block {
     pub(super) uncertain: Vec<(usize, Covariance<6>)>,
     /// The standard uncertainties of their answers; NaN where there is none.
     pub(super) standard: Vec<(usize, [f64; 6])>,
+    /// The codes of notices on answers, in order.
+    pub(super) notices: Vec<(usize, Vec<&'static str>)>,
     /// What is wrong with rows, in order.
     pub(super) bad: Vec<(usize, Vec<Fault>)>,
 }
@@ -147,32 +148,41 @@ impl Block {
         let mut found = Vec::new();
         for row in 0..self.rows {
             let answer = self
-                .way(row, series, &rows, walker.as_mut())
-                .and_then(|way| match way {
-                    Some(way) => self.transformed(row, series, &way),
-                    None => Ok(MISSING),
+                .passage(row, series, &rows, walker.as_mut())
+                .and_then(|passage| match passage {
+                    Some(passage) => self.transformed(row, series, passage),
+                    None => Ok((MISSING, Vec::new())),
                 });
             match answer {
-                Ok(answer) => self.set(row, &answer),
+                Ok((answer, notices)) => {
+                    self.set(row, &answer);
+                    self.note(row, &notices);
+                }
                 Err(fault) => {
                     self.set(row, &MISSING);
                     found.push((row, fault));
                 }
             }
         }
+        // Those of rows with a way of another kind were noted as they were read.
+        self.notices.sort_by_key(|(row, _)| *row);
         found
     }
 
     /// The way of one row; `None` where it is not known.
-    pub(super) fn way(
+    pub(super) fn passage(
         &self,
         row: usize,
         series: &Series,
         rows: &[Rows],
         walker: Option<&mut Walker>,
-    ) -> Result<Option<Arc<Resolved>>, Fault> {
+    ) -> Result<Option<Passage>, Fault> {
+        let unremarkable = |way| Passage {
+            way,
+            notices: Vec::new(),
+        };
         if let Way::Fixed(way) = &series.way {
-            return Ok(Some(way.clone()));
+            return Ok(Some(unremarkable(way.clone())));
         }
         if let Some(walker) = walker {
             let Some(time) = self.time[row] else {
@@ -182,18 +192,27 @@ impl Block {
                 let time = Path(vec![Segment::Field("time".into())]);
                 Fault::at(&time, fault.code, fault.detail)
             })?;
-            return Ok(Some(passage.way));
+            return Ok(Some(passage));
         }
         let turns = rows.len() > 1 && !self.quaternion[0][row].is_nan();
         let way = rows[usize::from(turns)].way(self.motions(), row);
-        way.map(|way| way.map(Arc::new)).map_err(|why| refuse(&why))
+        way.map(|way| way.map(|way| unremarkable(Arc::new(way))))
+            .map_err(|why| refuse(&why))
     }
 
     /// One row restated, just as a question that stands alone.
-    fn transformed(&self, row: usize, series: &Series, way: &Resolved) -> Result<[f64; 6], Fault> {
+    fn transformed(
+        &self,
+        row: usize,
+        series: &Series,
+        passage: Passage,
+    ) -> Result<([f64; 6], Vec<Notice>), Fault> {
         let reading = self.reading(row, series);
-        let answer = transform(way, &reading, series.target).map_err(|why| refuse(&why))?;
-        Ok(numbers(answer.e, answer.b))
+        let answer = transform(&passage.way, &reading, series.target);
+        let answer = answer.map_err(|why| refuse(&why))?;
+        let mut notices = passage.notices;
+        notices.extend(answer.notices);
+        Ok((numbers(answer.e, answer.b), notices))
     }
 
     /// What a row says of the field, as a reading.
@@ -238,6 +257,25 @@ impl Block {
             Ok(place) => self.bad[place].1.extend(faults),
             Err(place) => self.bad.insert(place, (row, faults)),
         }
+    }
+
+    /// Notes what is to be said of the answer to a row.
+    pub(super) fn note(&mut self, row: usize, notices: &[Notice]) {
+        // Rows have no invariants.
+        let codes = notices.iter().map(|notice| notice.code);
+        let mut codes: Vec<_> = codes
+            .filter(|code| *code != INVARIANT_OUT_OF_RANGE)
+            .collect();
+        codes.dedup();
+        if !codes.is_empty() {
+            self.notices.push((row, codes));
+        }
+    }
+
+    /// The codes of the notices on the answer to a row.
+    pub(super) fn notices(&self, row: usize) -> &[&'static str] {
+        let found = self.notices.binary_search_by_key(&row, |(own, _)| *own);
+        found.map_or(&[], |place| &self.notices[place].1)
     }
 
     /// The standard uncertainties of the answer to a row, if it has some.

@@ -2,15 +2,40 @@
 
 use crate::document::{Code, Fault, Path};
 
-use super::Series;
 use super::names::{self, COLUMNS, Role};
 use super::way::{Taken, Way};
+use super::{Format, Series};
 
 /// The columns of a table, in their order.
 #[derive(Clone, Debug)]
 pub(super) struct Header {
     pub(super) names: Vec<String>,
     pub(super) columns: Vec<Column>,
+    /// Columns of the answer that the question has not, before `problem`.
+    pub(super) added: Added,
+}
+
+/// What answers have beside the columns of the question and `problem`.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub(super) struct Added {
+    /// Uncertainties of E, and of B.
+    pub(super) uncertainty: [bool; 2],
+    /// Codes of notices.
+    pub(super) notices: bool,
+}
+
+impl Added {
+    /// Their numbers: uncertainties (6 to 11).
+    pub(super) fn numbers(self) -> impl Iterator<Item = usize> {
+        (6..12).filter(move |i| self.uncertainty[i / 3 - 2])
+    }
+
+    /// Their names, in order, with that of the problem, which comes last.
+    pub(super) fn names(self) -> impl Iterator<Item = &'static str> {
+        let numbers = self.numbers().map(|i| COLUMNS[1 + i].0);
+        let notices = self.notices.then_some("notices");
+        numbers.chain(notices).chain(["problem"])
+    }
 }
 
 /// What a column is for.
@@ -41,7 +66,7 @@ impl Header {
                 }
                 Some(_) => {}
                 None => {
-                    if let Some(slip) = names::slip(name, true) {
+                    if let Some(slip) = names::slip(name, true, series.notices(Format::Csv)) {
                         faults.push(at(name, Code::UnknownField, slip));
                     }
                 }
@@ -61,7 +86,20 @@ impl Header {
             cell: cells.iter().position(|cell| cell == name),
         });
         let columns = columns.collect();
-        Ok(Header { names, columns })
+        let mut header = Header {
+            names,
+            columns,
+            added: Added::default(),
+        };
+        let adds = |first| {
+            let has = |i| header.place_of(i).is_some();
+            series.uncertain && has(first) && !has(6 + first)
+        };
+        header.added = Added {
+            uncertainty: [0, 3].map(adds),
+            notices: series.notices(Format::Csv),
+        };
+        Ok(header)
     }
 
     /// The numbers of the answer, in the order of their columns: components of the field (0 to 5)

@@ -10,7 +10,7 @@ use super::header::Header;
 use super::job::{Input, Job, Plan, Rows};
 use super::print::Columns;
 use super::run::BLOCK;
-use super::{Format, Series, csv};
+use super::{Format, Series, csv, uncertainty};
 
 /// How much a series may hold at once.
 #[derive(Clone, Copy, Debug)]
@@ -230,7 +230,12 @@ impl Intake {
         let header =
             Header::read(names, &self.series, &cells).map_err(|faults| Refusal { faults })?;
         if !anew {
-            self.preamble = [row, b",problem", line_end].concat();
+            let mut added = String::new();
+            for name in header.added.names() {
+                added += ",";
+                added += name;
+            }
+            self.preamble = [row, added.as_bytes(), line_end].concat();
         }
         let columns = anew.then(|| Columns::of(&header, cells));
         Ok(Some((Input::Csv(header, line_end), columns)))
@@ -251,7 +256,7 @@ impl Intake {
             _ => false,
         };
         let neither = !has("e") && !has("b");
-        let uncertain = has("uncertainty");
+        let uncertain = self.series.uncertain || node.as_ref().is_ok_and(uncertainty::is_stated);
         let answers = [
             has("e") || neither,
             has("b") || neither,
@@ -259,7 +264,12 @@ impl Intake {
             uncertain,
         ];
         let cells = self.cells(true, has);
-        Some((Input::Ndjson, Some(Columns { answers, cells })))
+        let columns = Columns {
+            answers,
+            notices: self.series.notices(Format::Ndjson),
+            cells,
+        };
+        Some((Input::Ndjson, Some(columns)))
     }
 
     fn begin_arrow(&mut self) -> Result<Option<(Input, Option<Columns>)>, Refusal> {

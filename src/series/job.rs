@@ -92,7 +92,7 @@ impl Plan {
             Input::Ndjson => {
                 let mut reader = ndjson::Reader::new(series, cells);
                 let lines = reader.read(text, &mut block, &mut carried);
-                block.solve(series);
+                self.solve(&mut block);
                 if anew.is_none() {
                     print::ndjson_in_place(text, &lines, &block, stop, done);
                 }
@@ -100,7 +100,7 @@ impl Plan {
             Input::Csv(header, line_end) => {
                 let reader = csv::Reader::new(series, header, carried.columns);
                 let lines = reader.read(text, &mut block, &mut carried);
-                block.solve(series);
+                self.solve(&mut block);
                 if anew.is_none() {
                     print::csv_in_place(text, &lines, header, line_end, &block, stop, done);
                 }
@@ -127,7 +127,7 @@ impl Plan {
         while from < batch.num_rows() && !done.stopped {
             let rows = TOGETHER.min(batch.num_rows() - from);
             let mut block = sheets.block(series, from, rows);
-            block.solve(series);
+            self.solve(&mut block);
             if self.anew.is_none() {
                 sheet.add(block, &Carried::new(0), series.stop, done);
             } else {
@@ -144,6 +144,18 @@ impl Plan {
             done.batch = Some(answered_in_place(batch, &table.header, schema, sheet));
         } else {
             self.finish(sheet, done);
+        }
+    }
+
+    fn solve(&self, block: &mut Block) {
+        block.solve(&self.series);
+        let input = match self.input {
+            Input::Ndjson => Format::Ndjson,
+            Input::Csv(..) => Format::Csv,
+            Input::Arrow(..) => Format::Arrow,
+        };
+        if !self.series.notices(input) {
+            block.notices.clear();
         }
     }
 

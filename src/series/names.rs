@@ -76,10 +76,11 @@ pub(super) fn role(name: &str) -> Option<Role> {
 }
 
 /// Why a name that is not among `ours` may not pass through, if so: it is so like one of ours
-/// that it looks like a slip, which would silently change the answer.
-pub(super) fn slip(name: &str, table: bool) -> Option<String> {
+/// that it looks like a slip, which would silently change the answer. `notices` says whether the
+/// answer has some.
+pub(super) fn slip(name: &str, table: bool, notices: bool) -> Option<String> {
     let lower = name.trim().to_ascii_lowercase();
-    if lower == "problem" {
+    if lower == "problem" || (notices && lower == "notices") {
         return Some(format!(
             "{name:?} is a name of the answer; give the column another one"
         ));

@@ -10,13 +10,13 @@ use crate::frames::{Clock, Time};
 use crate::question::{Question, uncertainty as question_uncertainty};
 use crate::transform::transform;
 
-use super::Series;
 use super::block::{Block, MISSING, Takes, numbers, refuse};
 use super::carry::Carried;
 use super::names::{self, MEMBERS};
 use super::scan::{self, Passed, Scanned, Span};
 use super::uncertainty;
 use super::way::{RowMotion, Way};
+use super::{Format, Series};
 
 /// Where the parts of a row stand in the text of its block.
 #[derive(Clone, Copy, Debug, Default)]
@@ -199,7 +199,8 @@ impl<'s> Reader<'s> {
                     Ok(node) => ours.push((name.clone(), node)),
                     Err(fault) => faults.note(&place, fault.code, fault.detail),
                 }
-            } else if let Some(slip) = names::slip(name, false) {
+            } else if let Some(slip) = names::slip(name, false, self.series.notices(Format::Ndjson))
+            {
                 faults.note(&place, Code::UnknownField, slip);
             } else {
                 self.passed.add(name);
@@ -244,11 +245,14 @@ impl<'s> Reader<'s> {
         });
         match answer {
             Ok((question, answer)) => {
-                if uncertain {
+                if uncertain || (!named && question.way.is_uncertain()) {
                     let reading = question.uncertainty.as_deref();
                     let standard = uncertainty::of_answer(&question.way, &answer, reading);
                     block.standard.push((block.rows, standard));
                 }
+                let mut notices = question.notices;
+                notices.extend(answer.notices);
+                block.note(block.rows, &notices);
                 block.apart.push((block.rows, numbers(answer.e, answer.b)));
                 block.push(self.takes, MISSING, &RowMotion::NONE, None);
             }

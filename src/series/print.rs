@@ -3,7 +3,7 @@
 use super::block::Block;
 use super::carry::Carried;
 use super::csv::push_field;
-use super::header::Header;
+use super::header::{Added, Header};
 use super::names::COLUMNS;
 use super::number;
 use super::outlet::Done;
@@ -15,6 +15,8 @@ use super::{csv, ndjson, problem};
 pub(super) struct Columns {
     /// Whether there is E, B, the uncertainty of E, and of B.
     pub(super) answers: [bool; 4],
+    /// Whether there are notices.
+    pub(super) notices: bool,
     /// The names of what goes along: the time, if there is one, and what is kept.
     pub(super) cells: Vec<String>,
 }
@@ -25,8 +27,19 @@ const CRLF: &[u8] = b"\r\n";
 impl Columns {
     /// Those of a table, with what goes along.
     pub(super) fn of(header: &Header, cells: Vec<String>) -> Columns {
-        let answers = [0, 3, 6, 9].map(|first| header.place_of(first).is_some());
-        Columns { answers, cells }
+        let mut answers = [0, 3, 6, 9].map(|first| header.place_of(first).is_some());
+        let Added {
+            uncertainty,
+            notices,
+        } = header.added;
+        for (there, added) in answers[2..].iter_mut().zip(uncertainty) {
+            *there |= added;
+        }
+        Columns {
+            answers,
+            notices,
+            cells,
+        }
     }
 
     /// The header row of CSV.
@@ -38,7 +51,8 @@ impl Columns {
         let names = time.iter().map(String::as_str);
         let names = names.chain(field.map(|(_, (name, _))| *name));
         let names = names.chain(kept.iter().map(String::as_str));
-        for name in names.chain(["problem"]) {
+        let notices = self.notices.then_some("notices");
+        for name in names.chain(notices).chain(["problem"]) {
             if !out.is_empty() {
                 out.push(b',');
             }
@@ -115,6 +129,21 @@ fn push_uncertainty(out: &mut Vec<u8>, block: &Block, row: usize) {
     out.push(b'}');
 }
 
+/// The notices on an answer as a member after others, if there are any.
+fn push_notices(out: &mut Vec<u8>, block: &Block, row: usize) {
+    let codes = block.notices(row);
+    if !codes.is_empty() {
+        out.extend_from_slice(b",\"notices\":[\"");
+        out.extend_from_slice(codes.join("\",\"").as_bytes());
+        out.extend_from_slice(b"\"]");
+    }
+}
+
+/// The notices on an answer as text: their codes with spaces between them.
+pub(super) fn noted(block: &Block, row: usize) -> String {
+    block.notices(row).join(" ")
+}
+
 /// The problem of a bad row, and the place for its number.
 fn push_problem(done: &mut Done, row: usize, faults: &[crate::document::Fault]) {
     done.bytes.extend_from_slice(b"\"row\":");
@@ -156,13 +185,17 @@ pub(super) fn ndjson_in_place(
             }
             copied = span.to as usize;
         }
+        done.bytes.extend_from_slice(&text[copied..text.len() - 1]);
         match faults {
             None => {
-                done.bytes.extend_from_slice(&text[copied..]);
-                done.bytes.push(b'\n');
+                if line.uncertainty.is_none() && block.standard(row).is_some() {
+                    done.bytes.extend_from_slice(b",\"uncertainty\":");
+                    push_uncertainty(&mut done.bytes, block, row);
+                }
+                push_notices(&mut done.bytes, block, row);
+                done.bytes.extend_from_slice(b"}\n");
             }
             Some(faults) => {
-                done.bytes.extend_from_slice(&text[copied..text.len() - 1]);
                 done.bytes.push(b',');
                 push_problem(done, row, faults);
             }
@@ -202,6 +235,19 @@ pub(super) fn csv_in_place(
             out.extend(std::iter::repeat_n(b',', header.names.len() - 1));
         }
         out.push(b',');
+        for i in header.added.numbers() {
+            let value = answer(block, row, i);
+            if !value.is_nan() {
+                number::print(out, value);
+            }
+            out.push(b',');
+        }
+        if header.added.notices {
+            if faults.is_none() {
+                push_field(out, noted(block, row).as_bytes());
+            }
+            out.push(b',');
+        }
         if let Some(faults) = faults {
             push_field(out, problem::as_text(faults).as_bytes());
         }
@@ -261,7 +307,10 @@ pub(super) fn ndjson(
             }
         }
         match faults {
-            None => out.extend_from_slice(b"}\n"),
+            None => {
+                push_notices(out, block, row);
+                out.extend_from_slice(b"}\n");
+            }
             Some(faults) => {
                 out.push(b',');
                 push_problem(done, row, faults);
@@ -297,6 +346,12 @@ pub(super) fn csv(
         }
         for column in 0..kept.len() {
             cell(out, time.len() + column);
+        }
+        if columns.notices {
+            if faults.is_none() {
+                push_field(out, noted(block, row).as_bytes());
+            }
+            out.push(b',');
         }
         if let Some(faults) = faults {
             push_field(out, problem::as_text(faults).as_bytes());

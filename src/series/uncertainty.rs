@@ -1,7 +1,8 @@
 //! Standard uncertainties of rows: those read, and those of the answer in their place.
 
 use crate::chain;
-use crate::document::{Code, Fault, Faults, Place};
+use crate::document::{Code, Fault, Faults, Node, Place};
+use crate::frames::Passage;
 use crate::physics::covariance::Covariance;
 use crate::physics::propagation::Inputs;
 use crate::physics::resolved::Resolved;
@@ -53,6 +54,41 @@ pub(super) fn of_columns(
     Ok(Covariance::of_standard(known).ok())
 }
 
+/// Refuses errors of readings, which each row says for itself.
+pub(super) fn of_query(node: Option<&Node>, faults: &mut Faults) {
+    let place = Place::ROOT.field("uncertainty");
+    let members = node.and_then(|node| Faults::default().any_members(node, &place, ""));
+    let given = |name| members.is_some_and(|members| members.get(name).is_some());
+    for name in ["e", "b", "covariance"]
+        .into_iter()
+        .filter(|name| given(name))
+    {
+        let detail = format!("the uncertainty {name:?} of a reading stands in each row");
+        faults.note(&place.field(name), Code::UnknownField, detail);
+    }
+}
+
+/// Whether a row says how uncertain its reading or a step of its own way is.
+pub(super) fn is_stated(row: &Node) -> bool {
+    fn somewhere(node: &Node) -> bool {
+        match node {
+            Node::List(items) => items.iter().any(somewhere),
+            Node::Object(members) => members
+                .iter()
+                .any(|(name, node)| name == "uncertainty" || somewhere(node)),
+            _ => false,
+        }
+    }
+    let Node::Object(members) = row else {
+        return false;
+    };
+    members.iter().any(|(name, node)| match name.as_ref() {
+        "uncertainty" => true,
+        "boost" | "rotation" | "steps" => somewhere(node),
+        _ => false,
+    })
+}
+
 /// Standard uncertainties of an answer; NaN where there is none.
 pub(super) fn of_answer(
     way: &Resolved,
@@ -79,24 +115,31 @@ pub(super) fn of_answer(
 }
 
 impl Block {
-    /// Finds the standard uncertainties of the answers to the rows that have some. What makes a
-    /// row bad is found when it is solved.
+    /// Finds the standard uncertainties of the answers to the rows that have some: of all of them
+    /// if the query states those of its way. What makes a row bad is found when it is solved.
     pub(super) fn find_uncertainties(&mut self, series: &Series) {
-        if self.uncertain.is_empty() {
+        if self.uncertain.is_empty() && !series.uncertain {
             return;
         }
         let mut walker = series.walker();
         let rows = series.way.rows(series.setting());
         let calibration = [series.sensor.e, series.sensor.b].map(|channel| channel?.uncertainty);
-        for (row, field) in std::mem::take(&mut self.uncertain) {
-            let Ok(Some(way)) = self.way(row, series, &rows, walker.as_mut()) else {
+        let mut own = std::mem::take(&mut self.uncertain).into_iter().peekable();
+        for row in 0..self.rows {
+            let field = own.next_if(|(own, _)| *own == row).map(|(_, field)| field);
+            let is_bad = self.bad.binary_search_by_key(&row, |(bad, _)| *bad).is_ok();
+            if is_bad || !(series.uncertain || field.is_some()) {
+                continue;
+            }
+            let Ok(Some(Passage { way, .. })) = self.passage(row, series, &rows, walker.as_mut())
+            else {
                 continue;
             };
             let Ok(answer) = transform(&way, &self.reading(row, series), series.target) else {
                 continue;
             };
-            let reading = UncertainReading { field, calibration };
-            let standard = of_answer(&way, &answer, Some(&reading));
+            let reading = field.map(|field| UncertainReading { field, calibration });
+            let standard = of_answer(&way, &answer, reading.as_ref());
             self.standard.push((row, standard));
         }
     }

@@ -133,6 +133,11 @@ impl Template {
         })
     }
 
+    /// Whether any step has errors of its own.
+    pub(super) fn is_uncertain(&self) -> bool {
+        self.steps.iter().any(|step| step.uncertainty.is_some())
+    }
+
     /// Whether any step moves.
     pub(super) fn moves(&self) -> bool {
         self.steps.iter().any(|step| match &step.change {

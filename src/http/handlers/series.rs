@@ -12,7 +12,7 @@ use crate::{
         AppState,
         accept::{ARROW, CSV, NDJSON, negotiate},
         problem::{CommonProblems, Problem, ProblemDocument, Source},
-        schema::{Query, SeriesQuery, examples},
+        schema::{Batches, Query, SeriesQuery, WayQuery, examples},
         stream::{self, Coding},
     },
     series::{Format, Series},
@@ -35,8 +35,12 @@ const FORMATS: [(&str, Format); 3] = [
 /// NDJSON rows are objects with `e`, `b` and, as needed, `velocity`, `rotation`, `angle`, `time`,
 /// `uncertainty`, written as in one reading. Tables, as text or as an Arrow stream, have the
 /// columns `ex ey ez bx by bz` and, as needed, `vx vy vz`, `qw qx qy qz`, `angle`, `time` and
-/// standard uncertainties `u_ex` to `u_bz`, which are replaced by those of the answer. Whatever else a row holds passes through. A bad row
-/// is answered in its place with a problem, and the next one is read.
+/// standard uncertainties `u_ex` to `u_bz`, which are replaced by those of the answer. Whatever else
+/// a row holds passes through. Where the query states an uncertainty of its way, every answer has
+/// those columns. Where it lets something be assumed, or a track on the way may be extrapolated,
+/// `notices` holds the codes of the notices that a single reading would have: a list in NDJSON, else
+/// a column of codes with spaces between them. A bad row is answered in its place with a `problem`,
+/// the last column, and the next row is read.
 ///
 /// The answer is whole if it ended properly: a chunked body with its last chunk, NDJSON with its
 /// line `end`. After any failure the connection is cut. The counts of rows follow a table as
@@ -44,13 +48,13 @@ const FORMATS: [(&str, Format); 3] = [
 /// when much of its answer waits. The body may be compressed (`Content-Encoding: gzip` or `zstd`).
 #[utoipa::path(
     post, path = "/v1/series", tag = "fields", operation_id = "series",
-    params(SeriesQuery, Query),
+    params(SeriesQuery, WayQuery, Query),
     request_body(
         description = "Rows, each with a reading",
         content(
             (String = "application/x-ndjson", example = json!(examples::rows(Format::Ndjson))),
             (String = "text/csv", example = json!(examples::rows(Format::Csv))),
-            (Vec<u8> = "application/vnd.apache.arrow.stream"),
+            (inline(Batches) = "application/vnd.apache.arrow.stream"),
         ),
     ),
     responses(
@@ -58,7 +62,7 @@ const FORMATS: [(&str, Format); 3] = [
             content(
                 (String = "application/x-ndjson", example = json!(examples::rows_answered(Format::Ndjson))),
                 (String = "text/csv", example = json!(examples::rows_answered(Format::Csv))),
-                (Vec<u8> = "application/vnd.apache.arrow.stream"),
+                (inline(Batches) = "application/vnd.apache.arrow.stream"),
             )),
         (status = 400, description = "The query, the header or the first rows cannot be understood", body = ProblemDocument, content_type = "application/problem+json"),
         (status = 406, description = "No acceptable representation", body = ProblemDocument, content_type = "application/problem+json"),

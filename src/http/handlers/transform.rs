@@ -18,7 +18,7 @@ use crate::{
         cache::{IMMUTABLE, cached, etag},
         monte_carlo::add_trials,
         problem::{CommonProblems, Problem, ProblemDocument, Source},
-        schema::{self, Query, ReadingQuery, UncertaintyQuery, WayQuery},
+        schema::{self, Query, ReadingQuery, SingleQuery, UncertaintyQuery, WayQuery},
     },
     physics::Impossible,
     picture,
@@ -91,7 +91,7 @@ pub(crate) async fn transform(
 /// vectors are comma lists, `steps` is JSON text, and a literal `+` is written `%2B`.
 #[utoipa::path(
     get, path = "/v1/transform", tag = "fields", operation_id = "transform_by_url",
-    params(ReadingQuery, Query, UncertaintyQuery, WayQuery),
+    params(ReadingQuery, Query, UncertaintyQuery, WayQuery, SingleQuery),
     responses(
         (status = 200, description = "The same field in the target frame, as JSON or as a picture",
             content(

@@ -47,12 +47,12 @@ pub struct Query {
     answer_units_b: String,
 }
 
-/// How uncertain a single question is; a series takes none in its query.
+/// How uncertain a reading is; in a series each row says it.
 #[derive(IntoParams)]
 #[into_params(parameter_in = Query)]
 #[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
 pub struct UncertaintyQuery {
-    /// Standard uncertainties of E as read; likewise `uncertainty.b`, `uncertainty.velocity` and `uncertainty.rotation`.
+    /// Standard uncertainties of E as read; likewise `uncertainty.b`.
     #[param(required = false, rename = "uncertainty.e", example = "0.1,0.1,0.1")]
     uncertainty_e: String,
     /// Instead of those of E and B: their 6×6 covariance matrix, as JSON text.
@@ -60,18 +60,15 @@ pub struct UncertaintyQuery {
     uncertainty_covariance: String,
 }
 
-/// The way of a question in its other forms, and further parts of its answer.
+/// The way in its other forms, of one reading or of a series.
 #[derive(IntoParams)]
 #[into_params(parameter_in = Query)]
 #[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
 pub struct WayQuery {
-    /// The way as one boost: three numbers joined by commas.
-    #[param(required = false, example = "7.6,0,0")]
-    velocity: String,
     /// The way as one rotation: its axis; likewise `rotation.matrix`, `rotation.quaternion.w` and so on.
     #[param(required = false, rename = "rotation.axis")]
     rotation_axis: String,
-    /// The angle of that rotation.
+    /// The angle of that rotation; in a series also `row`, for the angle of each row.
     #[param(required = false, rename = "rotation.angle")]
     rotation_angle: String,
     /// The way as one boost: its direction; likewise `boost.beta`, `boost.rapidity` and so on.
@@ -80,12 +77,25 @@ pub struct WayQuery {
     /// The Lorentz factor of that boost.
     #[param(required = false, rename = "boost.gamma")]
     boost_gamma: String,
+    /// Standard uncertainties of the way given as `velocity`; likewise `uncertainty.boost` and `uncertainty.rotation`. Those of a step stand inside it.
+    #[param(required = false, rename = "uncertainty.velocity")]
+    uncertainty_velocity: String,
     /// The way by names of the catalogue: the frame of the reading.
     #[param(required = false)]
     from: String,
     /// The target frame, with `from`.
     #[param(required = false)]
     to: String,
+}
+
+/// What only one reading by URL is asked.
+#[derive(IntoParams)]
+#[into_params(parameter_in = Query)]
+#[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
+pub struct SingleQuery {
+    /// The way as one boost: three numbers joined by commas.
+    #[param(required = false, example = "7.6,0,0")]
+    velocity: String,
     /// When the reading was taken: RFC 3339 (a `+` is written %2B), or seconds from the epoch of the catalogue.
     #[param(required = false)]
     time: String,
@@ -103,35 +113,17 @@ pub struct WayQuery {
     signature: String,
 }
 
-/// The way of a series, which may take a row's own motion, and how rows are treated.
+/// What only a series is asked: the motion of each row, and how rows are treated.
 #[derive(IntoParams)]
 #[into_params(parameter_in = Query)]
 #[allow(dead_code, reason = "describes parameters for the OpenAPI document")]
 pub struct SeriesQuery {
-    /// The way as one boost: three numbers joined by commas, or `row` for the velocity of each row.
+    /// The way as one boost: `row` for the velocity of each row, or three numbers joined by commas.
     #[param(required = false, example = "row")]
     velocity: String,
     /// The way as one rotation: `row` for the quaternion of each row; likewise `rotation.inverse`.
     #[param(required = false, rename = "rotation.quaternion")]
     rotation_quaternion: String,
-    /// The way as one rotation: its axis.
-    #[param(required = false, rename = "rotation.axis")]
-    rotation_axis: String,
-    /// The angle of that rotation, or `row` for the angle of each row.
-    #[param(required = false, rename = "rotation.angle")]
-    rotation_angle: String,
-    /// The way as one boost: its direction; likewise `boost.beta`, `boost.rapidity` and so on.
-    #[param(required = false, rename = "boost.direction")]
-    boost_direction: String,
-    /// The Lorentz factor of that boost.
-    #[param(required = false, rename = "boost.gamma")]
-    boost_gamma: String,
-    /// The way by names of the catalogue: the frame of the rows. Where it changes with time, each row has its `time`.
-    #[param(required = false)]
-    from: String,
-    /// The target frame, with `from`.
-    #[param(required = false)]
-    to: String,
     /// Other columns that go along as text when the answer is in another format, joined by commas.
     #[param(required = false)]
     keep: String,

@@ -83,7 +83,16 @@ impl Table {
                 *field = doubles.with_nullable(true);
             }
         }
-        fields.push(Field::new("problem", DataType::Utf8, true));
+        let added = self.header.added;
+        for (i, name) in added.names().enumerate() {
+            let number = i < added.numbers().count();
+            let kind = if number {
+                DataType::Float64
+            } else {
+                DataType::Utf8
+            };
+            fields.push(Field::new(name, kind, true));
+        }
         Arc::new(Schema::new_with_metadata(fields, schema.metadata().clone()))
     }
 

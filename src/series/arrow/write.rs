@@ -11,7 +11,7 @@ use super::super::carry::Carried;
 use super::super::header::Header;
 use super::super::names::COLUMNS;
 use super::super::outlet::Done;
-use super::super::print::{Columns, each_row};
+use super::super::print::{Columns, each_row, noted};
 use super::super::problem;
 
 /// Answers gathered row by row for one batch.
@@ -19,6 +19,7 @@ use super::super::problem;
 pub(in crate::series) struct Sheet {
     /// The field, and its uncertainties.
     answers: [Vec<f64>; 12],
+    notices: Vec<Option<String>>,
     problems: Vec<Option<String>>,
     cells: Vec<Vec<Option<String>>>,
 }
@@ -29,7 +30,7 @@ impl Sheet {
         Sheet {
             answers: std::array::from_fn(|_| Vec::with_capacity(rows)),
             problems: Vec::with_capacity(rows),
-            cells: Vec::new(),
+            ..Sheet::default()
         }
     }
 
@@ -47,6 +48,12 @@ impl Sheet {
             for (i, cells) in self.cells.iter_mut().enumerate() {
                 let cell = carried.cell(row, i);
                 cells.push(cell.map(|text| String::from_utf8_lossy(text).into_owned()));
+            }
+            if !block.notices.is_empty() {
+                self.notices.resize(self.problems.len(), None);
+                let codes = noted(&block, row);
+                let given = faults.is_none() && !codes.is_empty();
+                self.notices.push(given.then_some(codes));
             }
             self.problems.push(faults.map(problem::as_text));
         });
@@ -82,6 +89,9 @@ impl Sheet {
             }
         }
         all.extend(cells.map(text));
+        if columns.notices {
+            all.push(("notices".to_owned(), texts(self.notices, rows)));
+        }
         all.push((
             "problem".to_owned(),
             Arc::new(StringArray::from(self.problems)),
@@ -115,15 +125,31 @@ pub(in crate::series) fn answered_in_place(
             }
         })
         .collect();
+    let mut added = Vec::new();
     for (i, mut column) in sheet.answers.into_iter().enumerate() {
-        if let Some(place) = header.place_of(i) {
-            column.resize(rows, f64::NAN);
-            columns[place] = doubles(column);
+        let place = header.place_of(i);
+        if place.is_none() && header.added.numbers().all(|added| added != i) {
+            continue;
         }
+        column.resize(rows, f64::NAN);
+        match place {
+            Some(place) => columns[place] = doubles(column),
+            None => added.push(doubles(column)),
+        }
+    }
+    columns.extend(added);
+    if header.added.notices {
+        columns.push(texts(sheet.notices, rows));
     }
     columns.push(Arc::new(StringArray::from(sheet.problems)));
     RecordBatch::try_new(schema.clone(), columns)
         .expect("columns of one length and the types of the schema")
+}
+
+/// Texts of so many rows, of which the last ones may be missing.
+fn texts(mut texts: Vec<Option<String>>, rows: usize) -> ArrayRef {
+    texts.resize(rows, None);
+    Arc::new(StringArray::from(texts))
 }
 
 /// How many rows a sheet has so far.
