@@ -1,14 +1,22 @@
-//! The life of the process under systemd, and the number of its connections.
+//! The life of the process under systemd, the number of its connections, and panics.
 
 use std::{
     io::{Read, Write},
     net::{TcpListener, TcpStream},
     os::{fd::OwnedFd, unix::net::UnixDatagram},
+    pin::Pin,
     process::{Command, Stdio},
+    task::{Context, Poll},
     time::Duration,
 };
 
+use axum::{body::Body, http::Request};
+use http_body_util::BodyExt;
+use tower::ServiceExt;
+
 use crate::start::{Running, lodeframe};
+use crate::stream::{NDJSON, PATH, ROW, request};
+use crate::support::{send, service};
 
 const GET: &str = "GET /health/ready HTTP/1.1\r\nhost: localhost\r\n";
 
@@ -169,4 +177,68 @@ fn a_series_without_an_end_is_told_that_the_service_stops() {
         "not as if it were whole: {last}"
     );
     assert_eq!(running.end().0, Some(0));
+}
+
+/// A body that hands over one row, lets it be answered and then panics, as a fault of the service
+/// would while a series runs.
+struct Panics(Vec<Option<&'static str>>);
+
+impl axum::body::HttpBody for Panics {
+    type Data = axum::body::Bytes;
+    type Error = std::convert::Infallible;
+
+    fn poll_frame(
+        mut self: Pin<&mut Self>,
+        cx: &mut Context<'_>,
+    ) -> Poll<Option<Result<hyper::body::Frame<Self::Data>, Self::Error>>> {
+        match self.0.pop().expect("a panic that was meant") {
+            Some(row) => Poll::Ready(Some(Ok(hyper::body::Frame::data(row.into())))),
+            None => {
+                cx.waker().wake_by_ref();
+                Poll::Pending
+            }
+        }
+    }
+}
+
+#[tokio::test]
+async fn a_panic_ends_its_series_alone_and_is_counted() {
+    let app = service();
+    let headers = [("content-type", NDJSON)];
+    for (before, answer, counted) in [(vec![None, Some(ROW)], 200, 1), (vec![], 500, 2)] {
+        let body = Body::new(Panics(before));
+        let response = app.clone().oneshot(request(PATH, &headers, body)).await;
+        let response = response.expect("a router does not fail");
+        assert_eq!(response.status(), answer);
+        let mut body = response.into_body();
+        let mut text = Vec::new();
+        let cut = loop {
+            match body.frame().await {
+                Some(Ok(frame)) => text.extend_from_slice(frame.data_ref().expect("data")),
+                Some(Err(_)) => break true,
+                None => break false,
+            }
+        };
+        // An answer that has begun is cut after a last word; no panic is ever a proper end.
+        assert_eq!(cut, answer == 200);
+        let last = text
+            .split(|byte| *byte == b'\n')
+            .rfind(|line| !line.is_empty());
+        let last: serde_json::Value = serde_json::from_slice(last.expect("a word")).expect("JSON");
+        let problem = if cut { &last["problem"] } else { &last };
+        assert_eq!(problem["type"], "/problems/internal");
+        assert!(!problem.to_string().contains("that was meant"));
+        let metrics = Request::get("/metrics").body(Body::empty()).unwrap();
+        let metrics = send(app.clone(), metrics).await;
+        for line in [
+            format!("lodeframe_panics_total {counted}"),
+            "lodeframe_requests_in_flight 1".to_owned(),
+        ] {
+            let found = metrics.text().lines().any(|own| own == line);
+            assert!(found, "{line}: {}", metrics.text());
+        }
+    }
+    // Others go on.
+    let answer = send(app, request(PATH, &headers, ROW)).await;
+    assert!(answer.text().contains("\"answered\":1"));
 }

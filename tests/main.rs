@@ -25,6 +25,7 @@ mod series_notices;
 mod series_uncertainty;
 mod start;
 mod stream;
+mod stream_coding;
 mod support;
 mod sweep;
 mod times;

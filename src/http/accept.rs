@@ -1,6 +1,9 @@
-//! Which representation a client would like (RFC 9110 §12.5.1).
+//! Which representation a client would like, and how it may be coded (RFC 9110 §12.5.1, §12.5.3).
 
-use axum::http::{HeaderMap, header::ACCEPT};
+use axum::http::{
+    HeaderMap,
+    header::{ACCEPT, ACCEPT_ENCODING},
+};
 
 use super::problem::Problem;
 use crate::document::Code;
@@ -59,11 +62,73 @@ pub fn negotiate(headers: &HeaderMap, offers: &[&'static str]) -> Result<&'stati
     })
 }
 
+/// Chooses among `offers`, content codings in our order of preference, the last of them
+/// `identity`.
+///
+/// The highest quality wins, among equals the first offer. A client that does not say otherwise
+/// takes `identity`, but rather than that whatever it names.
+///
+/// # Errors
+/// `not_acceptable` when the client rules out every offer.
+pub fn negotiate_coding(
+    headers: &HeaderMap,
+    offers: &[&'static str],
+) -> Result<&'static str, Problem> {
+    let values = headers.get_all(ACCEPT_ENCODING).iter();
+    let named: Vec<(&str, u16)> = values
+        .filter_map(|value| value.to_str().ok())
+        .flat_map(|value| value.split(','))
+        .filter_map(|coding| {
+            let mut parts = coding.split(';').map(str::trim);
+            let name = parts.next()?;
+            Some((name.strip_prefix("x-").unwrap_or(name), quality(parts)?))
+        })
+        .collect();
+    let quality = |offer: &str| {
+        let of = |name: &str| {
+            let mut named = named.iter();
+            named.find(|(own, _)| own.eq_ignore_ascii_case(name))
+        };
+        match of(offer).or_else(|| of("*")) {
+            Some((_, quality)) => *quality,
+            None => u16::from(offer == "identity"),
+        }
+    };
+    let mut best = (0, None);
+    for offer in offers {
+        if quality(offer) > best.0 {
+            best = (quality(offer), Some(*offer));
+        }
+    }
+    best.1.ok_or_else(|| {
+        let detail = format!(
+            "The Accept-Encoding header rules out what this path can answer: {}.",
+            offers.join(", ")
+        );
+        Problem::new(Code::NotAcceptable, detail)
+    })
+}
+
+/// The quality among parameters, in thousandths, the finest that the grammar allows; `None` when
+/// it is no number.
+fn quality<'a>(parameters: impl Iterator<Item = &'a str>) -> Option<u16> {
+    let mut quality = 1000;
+    for part in parameters {
+        if let Some((name, value)) = part.split_once('=')
+            && name.trim().eq_ignore_ascii_case("q")
+        {
+            let q: f64 = value.trim().parse().ok()?;
+            quality = (q.clamp(0.0, 1.0) * 1000.0).round() as u16;
+        }
+    }
+    Some(quality)
+}
+
 /// One media range of an `Accept` header.
 struct Range<'a> {
     kind: &'a str,
     subtype: &'a str,
-    /// In thousandths, the finest that the grammar allows.
+    /// In thousandths.
     quality: u16,
 }
 
@@ -71,19 +136,10 @@ impl<'a> Range<'a> {
     fn parse(text: &'a str) -> Option<Range<'a>> {
         let mut parts = text.split(';').map(str::trim);
         let (kind, subtype) = parts.next()?.split_once('/')?;
-        let mut quality = 1000;
-        for part in parts {
-            if let Some((name, value)) = part.split_once('=')
-                && name.trim().eq_ignore_ascii_case("q")
-            {
-                let q: f64 = value.trim().parse().ok()?;
-                quality = (q.clamp(0.0, 1.0) * 1000.0).round() as u16;
-            }
-        }
         Some(Range {
             kind,
             subtype,
-            quality,
+            quality: quality(parts)?,
         })
     }
 

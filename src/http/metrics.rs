@@ -38,7 +38,7 @@ pub struct Metrics {
     pub shed: Counter,
     /// Monte Carlo trials made.
     pub trials: Counter,
-    /// Requests answered with 500 because a handler panicked.
+    /// Requests that ended because a handler, or the task of a series, panicked.
     pub panics: Counter,
 }
 
@@ -162,7 +162,7 @@ impl Metrics {
         let panics = Counter::default();
         registry.register(
             "panics",
-            "Requests answered with 500 because of a fault in the service",
+            "Requests answered with 500, or series cut, because of a fault in the service",
             panics.clone(),
         );
         let build = Info::new([("version", env!("CARGO_PKG_VERSION"))]);

@@ -1,7 +1,6 @@
 """A series while it runs: `curl` as the client, slow and fast, and everything that can go wrong."""
 
 import csv
-import gzip
 import io
 import json
 import signal
@@ -273,19 +272,6 @@ def test_a_cut_arrow_stream_gives_no_whole_answer(service):
     # Neither the marker at the end, nor the last chunk.
     assert b"\xff\xff\xff\xff\0\0\0\0\r\n" not in answer
     assert not answer.endswith(b"0\r\n\r\n")
-
-
-def test_a_compressed_body_is_unpacked_and_bounded(service):
-    """gzip (RFC 1952): the same answer as plain; a bomb is one endless row, and what is no gzip says so."""
-    headers = {"Content-Type": NDJSON, "Content-Encoding": "gzip"}
-    idle = memory(service, "VmRSS")
-    plain = service.request("POST", WHERE, LINE * 3, {"Content-Type": NDJSON})
-    packed = service.request("POST", WHERE, gzip.compress(LINE * 3), headers)
-    assert packed.status == 200 and packed.body == plain.body
-    problem(service.request("POST", WHERE, gzip.compress(b" " * (1 << 28)), headers), 413, "row_too_long")
-    problem(service.request("POST", WHERE, b"no gzip at all", headers), 400, "syntax")
-    problem(service.request("POST", WHERE, LINE, headers | {"Content-Encoding": "br"}), 415, "unsupported_media_type")
-    assert memory(service) < idle + BOUND
 
 
 def test_many_series_at_once_are_each_answered_whole(service, tmp_path):

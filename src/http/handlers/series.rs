@@ -45,7 +45,8 @@ const FORMATS: [(&str, Format); 3] = [
 /// The answer is whole if it ended properly: a chunked body with its last chunk, NDJSON with its
 /// line `end`. After any failure the connection is cut. The counts of rows follow a table as
 /// trailers when the client sends `TE: trailers`. Read while you send: the server stops reading
-/// when much of its answer waits. The body may be compressed (`Content-Encoding: gzip` or `zstd`).
+/// when much of its answer waits. The body may be compressed (`Content-Encoding: gzip` or `zstd`), and
+/// so is the answer for a client that takes it (`Accept-Encoding`).
 #[utoipa::path(
     post, path = "/v1/series", tag = "fields", operation_id = "series",
     params(SeriesQuery, WayQuery, Query),
@@ -79,7 +80,7 @@ pub(crate) async fn series(
 ) -> Result<Response, Problem> {
     let headers = request.headers();
     let (own, input) = format(headers)?;
-    let coding = Coding::of(headers)?;
+    let codings = [Coding::of(headers)?, Coding::accepted(headers)?];
     let offers = FORMATS.map(|(name, _)| name);
     let others = offers.into_iter().filter(|offer| *offer != own);
     let offers: Vec<&'static str> = [own].into_iter().chain(others).collect();
@@ -96,7 +97,7 @@ pub(crate) async fn series(
         series,
         formats,
         trailers,
-        coding,
+        codings,
         request.into_body(),
     )
     .await?;
@@ -109,6 +110,12 @@ pub(crate) async fn series(
     };
     headers.insert(header::CONTENT_TYPE, kind);
     headers.insert(header::CACHE_CONTROL, HeaderValue::from_static("no-store"));
+    let vary = HeaderValue::from_static("accept, accept-encoding");
+    headers.insert(header::VARY, vary);
+    if let Some(name) = codings[1].name() {
+        let name = HeaderValue::from_static(name);
+        headers.insert(header::CONTENT_ENCODING, name);
+    }
     if trailers {
         let names = stream::TRAILERS.join(", ");
         let names = HeaderValue::from_str(&names).expect("names of headers");

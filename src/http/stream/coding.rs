@@ -1,5 +1,5 @@
-//! Bodies that come compressed (`Content-Encoding`), unpacked a piece at a time: what is held does
-//! not grow with what they unpack to.
+//! How bodies are compressed. Those that come so (`Content-Encoding`) are unpacked a piece at a
+//! time: what is held does not grow with what they unpack to.
 
 use std::io;
 
@@ -11,7 +11,10 @@ use axum::{
 use http_body_util::BodyExt;
 use tokio_util::io::{ReaderStream, StreamReader};
 
-use crate::{document::Code, http::problem::Problem};
+use crate::{
+    document::Code,
+    http::{accept::negotiate_coding, problem::Problem},
+};
 
 /// Bytes unpacked at once.
 const PIECE: usize = 64 * 1024;
@@ -46,6 +49,29 @@ impl Coding {
                     "The Content-Encoding is {named:?}; a series is read as it is, or as gzip or zstd."
                 ),
             )),
+        }
+    }
+
+    /// The coding of the answer that the client would like best (RFC 9110 §12.5.3).
+    ///
+    /// # Errors
+    /// It takes none that is written here.
+    pub(in crate::http) fn accepted(headers: &HeaderMap) -> Result<Coding, Problem> {
+        Ok(
+            match negotiate_coding(headers, &["zstd", "gzip", "identity"])? {
+                "zstd" => Coding::Zstd,
+                "gzip" => Coding::Gzip,
+                _ => Coding::Identity,
+            },
+        )
+    }
+
+    /// Its name, where one is sent.
+    pub(in crate::http) fn name(self) -> Option<&'static str> {
+        match self {
+            Coding::Identity => None,
+            Coding::Gzip => Some("gzip"),
+            Coding::Zstd => Some("zstd"),
         }
     }
 

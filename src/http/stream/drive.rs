@@ -1,12 +1,16 @@
 //! Drives a series: reads while there is room, has blocks answered, sends them in order.
 
-use std::{collections::VecDeque, future::poll_fn, pin::Pin, task::Poll, time::Duration};
+use std::{
+    collections::VecDeque, future::poll_fn, panic::AssertUnwindSafe, pin::Pin, task::Poll,
+    time::Duration,
+};
 
 use axum::{
     body::{Body, HttpBody},
     http::{HeaderMap, HeaderValue},
 };
 use bytes::Bytes;
+use futures_util::FutureExt;
 use http_body_util::BodyExt;
 use tokio::{
     sync::{oneshot, watch},
@@ -14,7 +18,7 @@ use tokio::{
     time::timeout,
 };
 
-use super::{TRAILERS, unread::Unread};
+use super::{Coding, TRAILERS, packing::Packer, unread::Unread};
 use crate::{
     document::{Code, Fault},
     http::{
@@ -46,6 +50,15 @@ pub(super) struct Drive {
     working: VecDeque<JoinHandle<Done>>,
     /// Whether the service must come to its end.
     ending: watch::Receiver<bool>,
+    packing: Packing,
+}
+
+/// How the answer is compressed.
+enum Packing {
+    Not,
+    By(Packer),
+    /// It broke, and no bytes can follow.
+    Broken,
 }
 
 /// Counts the series among the requests that run, for as long as it does.
@@ -63,6 +76,8 @@ enum Failure {
     Gone,
     /// The service was told to stop, and its grace is over.
     Ending,
+    /// A fault of the service.
+    Panicked,
 }
 
 /// What happened next.
@@ -82,6 +97,7 @@ impl Drive {
         body: Body,
         unread: Unread,
         head: oneshot::Sender<Result<(), Problem>>,
+        packs: Coding,
     ) -> Drive {
         state.metrics.enter();
         let ending = state.ending.subscribe();
@@ -95,19 +111,20 @@ impl Drive {
             head: Some(head),
             working: VecDeque::new(),
             ending,
+            packing: Packer::new(packs).map_or(Packing::Not, Packing::By),
         }
     }
 
     /// Drives the series to its end.
     pub(super) async fn run(mut self, trailers: bool) {
-        let finished = self.rows().await;
+        // A panic harms this series alone: nothing of it is shared but counters.
+        let finished = AssertUnwindSafe(self.whole()).catch_unwind().await;
+        let finished = finished.unwrap_or(Err(Failure::Panicked));
         let counts = self.outlet.counts();
-        self.running.0.metrics.rows(counts);
+        let metrics = &self.running.0.metrics;
+        metrics.rows(counts);
         match finished {
             Ok(()) => {
-                self.begin(Ok(()));
-                let end = self.outlet.end();
-                self.send(end);
                 let numbers = [counts.read, counts.answered, counts.refused];
                 let pairs = TRAILERS.into_iter().zip(numbers).filter(|_| trailers);
                 let trailers: HeaderMap = pairs
@@ -120,12 +137,17 @@ impl Drive {
             }
             Err(Failure::Gone) => return,
             Err(failure) => {
+                if let Failure::Panicked = failure {
+                    metrics.panics.inc();
+                    self.all_arrived = true;
+                }
                 let refusal = failure.refusal(self.running.0.config.idle_timeout);
                 if self.head.is_some() {
                     let problem = Problem::from_faults(refusal.faults, Source::Table);
                     self.begin(Err(problem));
                 } else {
-                    self.send(self.outlet.failed(&refusal));
+                    let last_word = self.outlet.failed(&refusal);
+                    self.send(last_word, false).await;
                 }
                 drop(self.unread);
             }
@@ -133,6 +155,18 @@ impl Drive {
         let rest = async { while let Some(Ok(_)) = self.body.frame().await {} };
         if !self.all_arrived {
             let _ = timeout(LINGER, rest).await;
+        }
+    }
+
+    /// Answers all rows, and what stands after them.
+    async fn whole(&mut self) -> Result<(), Failure> {
+        self.rows().await?;
+        self.begin(Ok(()));
+        let end = self.outlet.end();
+        if self.send(end, true).await {
+            Ok(())
+        } else {
+            Err(Failure::Gone)
         }
     }
 
@@ -166,7 +200,7 @@ impl Drive {
                 Ok(Event::Gone) => return Err(Failure::Gone),
                 Ok(Event::Ending) => return Err(Failure::Ending),
                 Ok(Event::Read) => {}
-                Ok(Event::Answered(done)) => self.accept(done)?,
+                Ok(Event::Answered(done)) => self.accept(done).await?,
                 Ok(Event::Arrived(Some(bytes))) => {
                     self.intake.push(&bytes.map_err(|_| Failure::Broken)?);
                 }
@@ -202,7 +236,7 @@ impl Drive {
         match job {
             Ok(None) => Ok(false),
             Ok(Some(job)) if job.bytes() <= SMALL && self.working.is_empty() => {
-                self.accept(job.run())?;
+                self.accept(job.run()).await?;
                 Ok(!self.outlet.stopped())
             }
             Ok(Some(job)) => {
@@ -213,7 +247,7 @@ impl Drive {
             }
             Err(refusal) => {
                 while let Some(work) = self.working.pop_front() {
-                    self.accept(answered(work.await))?;
+                    self.accept(answered(work.await)).await?;
                 }
                 if self.outlet.stopped() {
                     return Ok(false);
@@ -255,21 +289,41 @@ impl Drive {
     }
 
     /// Sends the next answers.
-    fn accept(&mut self, done: Done) -> Result<(), Failure> {
+    async fn accept(&mut self, done: Done) -> Result<(), Failure> {
         let pieces = self.outlet.accept(done);
         if pieces.is_empty() {
             return Ok(());
         }
         self.begin(Ok(()));
-        if self.send(pieces) {
+        if self.send(pieces, false).await {
             Ok(())
         } else {
             Err(Failure::Gone)
         }
     }
 
-    /// Sends pieces of the answer; whether anyone is still there to read them.
-    fn send(&self, pieces: Vec<Bytes>) -> bool {
+    /// Sends pieces of the answer, the `last` ones or not; whether anyone is still there to read
+    /// them.
+    async fn send(&mut self, mut pieces: Vec<Bytes>, last: bool) -> bool {
+        match std::mem::replace(&mut self.packing, Packing::Broken) {
+            Packing::Not => self.packing = Packing::Not,
+            Packing::Broken => return true,
+            Packing::By(mut packer) => {
+                let size: usize = pieces.iter().map(Bytes::len).sum();
+                let pack = move || {
+                    let packed = packer.pack(&pieces, last);
+                    (packer, packed)
+                };
+                let (packer, packed) = if size <= SMALL {
+                    pack()
+                } else {
+                    let state = self.running.0.clone();
+                    state.pool.run(pack).await
+                };
+                self.packing = Packing::By(packer);
+                pieces = vec![packed];
+            }
+        }
         pieces.into_iter().all(|piece| self.unread.send(piece))
     }
 
@@ -302,6 +356,11 @@ impl Failure {
             Failure::Ending => Fault::whole(
                 Code::Stopping,
                 "the service was told to stop; send the rows that have no answer again",
+            ),
+            Failure::Panicked => Fault::whole(
+                Code::Internal,
+                "the service failed in a way its authors did not foresee; the rows were not the \
+                 cause. Send those that have no answer again",
             ),
             Failure::Broken | Failure::Gone => Fault::whole(
                 Code::Syntax,

@@ -5,6 +5,7 @@
 
 mod coding;
 mod drive;
+mod packing;
 mod unread;
 
 use std::sync::Arc;
@@ -21,8 +22,9 @@ use drive::Drive;
 pub(super) const TRAILERS: [&str; 3] =
     ["lodeframe-read", "lodeframe-answered", "lodeframe-refused"];
 
-/// Answers the rows of a body that may be compressed, in the formats given; with counts after the last row as trailers,
-/// if the client takes them. The body given back ends properly only when the answer is whole.
+/// Answers the rows of a body, in the formats and codings given for question and answer; with counts
+/// after the last row as trailers, if the client takes them. The body given back ends properly only
+/// when the answer is whole.
 ///
 /// # Errors
 /// What is wrong before the first byte of the answer.
@@ -31,7 +33,7 @@ pub(super) async fn answer(
     series: Series,
     formats: [Format; 2],
     trailers: bool,
-    coding: Coding,
+    codings: [Coding; 2],
     body: Body,
 ) -> Result<Body, Problem> {
     let [input, output] = formats;
@@ -43,11 +45,13 @@ pub(super) async fn answer(
     let intake = Intake::new(Arc::new(series), input, output, limits);
     let (head, begun) = oneshot::channel();
     let (unread, answer) = unread::channel(state.config.buffer);
-    let drive = Drive::new(state, intake, outlet, coding.unpacked(body), unread, head);
+    let [packed, packs] = codings;
+    let body = packed.unpacked(body);
+    let drive = Drive::new(state, intake, outlet, body, unread, head, packs);
     tokio::spawn(drive.run(trailers));
     match begun.await {
         Ok(begun) => begun.map(|()| Body::new(answer)),
-        // The task ended without a word: it panicked, and the log says where.
+        // The task ended without a word, with all others: the service is at its end.
         Err(_) => Err(Problem::from_status(
             axum::http::StatusCode::INTERNAL_SERVER_ERROR,
         )),
