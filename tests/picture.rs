@@ -70,6 +70,10 @@ async fn extreme_readings_still_make_pictures() {
         "over=rapidity&start=-600&stop=600&e=1,2,3&b=1,2,3&scale=log",
         "over=rapidity&start=0&stop=1e-300&e=1,2,3&b=1,2,3",
         "over=rapidity&start=0&stop=1&e=1,2,3",
+        "over=rapidity&start=0&stop=1&e=1,,3&b=1,2,3&uncertainty.e=1,,1",
+        "over=rapidity&start=0&stop=1&e=1,2,3&b=1,2,3&uncertainty.e=1e300,0,1&scale=log",
+        "over=rapidity&start=-600&stop=600&e=1,2,3&b=1,2,3&uncertainty.b=1,1,1&scale=log",
+        "over=beta&start=0&stop=0.5&e=0,0,0&b=0,0,0&uncertainty.e=1,0,0&scale=log",
     ] {
         let url = format!("/v1/sweep?{range}&boost.direction=1,0,0");
         let picture = picture(&url).await;

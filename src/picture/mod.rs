@@ -3,6 +3,7 @@
 //! They are drawn to be read at a width of 400 pixels, on paper, on a light or a dark screen, and
 //! without colour: what differs in colour differs in dashes, marks or labels too.
 
+mod band;
 mod draw;
 mod number;
 mod plot;

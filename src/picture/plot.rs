@@ -2,6 +2,7 @@
 
 use svg::node::element::{Circle, Group, Rectangle};
 
+use super::band::band;
 use super::draw::{Anchor, Point, line, polygon, polyline, text};
 use super::number::short;
 use super::ticks;
@@ -15,6 +16,18 @@ pub(super) struct Area {
     pub(super) bottom: f64,
 }
 
+impl Area {
+    /// Where something stands that is so far along the horizontal axis.
+    pub(super) fn across(&self, along: f64) -> f64 {
+        self.left + along * (self.right - self.left)
+    }
+
+    /// Where something stands that is so far along the vertical axis.
+    pub(super) fn up(&self, along: f64) -> f64 {
+        self.bottom - along * (self.bottom - self.top)
+    }
+}
+
 /// One curve. A missing value breaks it.
 pub(super) struct Curve<'a> {
     pub(super) name: String,
@@ -22,6 +35,8 @@ pub(super) struct Curve<'a> {
     pub(super) dashes: &'static str,
     pub(super) mark: Mark,
     pub(super) values: &'a [Option<f64>],
+    /// Standard uncertainties of the values, when they have any.
+    pub(super) uncertainties: Option<&'a [Option<f64>]>,
 }
 
 /// What is drawn on a curve here and there, so that it is known without its colour.
@@ -82,7 +97,7 @@ impl Axis {
     }
 
     /// How far along the axis a value is, from 0 to 1; `None` where it has no place.
-    fn along(&self, value: f64) -> Option<f64> {
+    pub(super) fn along(&self, value: f64) -> Option<f64> {
         let value = if self.logarithmic {
             libm::log10(value.abs())
         } else {
@@ -112,8 +127,9 @@ impl Axis {
 /// Draws the frame with its ticks, the curves and their names.
 pub(super) fn plot(area: Area, x: Axis, at: &[f64], y: Axis, curves: &[Curve]) -> Group {
     let mut group = frame(area, x, y);
-    let across = |along: f64| area.left + along * (area.right - area.left);
-    let up = |along: f64| area.bottom - along * (area.bottom - area.top);
+    for curve in curves {
+        group = band(group, area, x, at, y, curve);
+    }
     let mut ends: Vec<(f64, &Curve)> = Vec::new();
     for (n, curve) in curves.iter().enumerate() {
         let mut pieces: Vec<Vec<Point>> = vec![Vec::new()];
@@ -121,7 +137,7 @@ pub(super) fn plot(area: Area, x: Axis, at: &[f64], y: Axis, curves: &[Curve]) -
             match (x.along(*at), value.and_then(|value| y.along(value))) {
                 (Some(at), Some(value)) => {
                     if let Some(piece) = pieces.last_mut() {
-                        piece.push((across(at), up(value)));
+                        piece.push((area.across(at), area.up(value)));
                     }
                 }
                 _ => pieces.push(Vec::new()),
@@ -144,7 +160,7 @@ pub(super) fn plot(area: Area, x: Axis, at: &[f64], y: Axis, curves: &[Curve]) -
 fn frame(area: Area, x: Axis, y: Axis) -> Group {
     let mut group = Group::new();
     for (along, words) in y.ticks(5) {
-        let at = area.bottom - along * (area.bottom - area.top);
+        let at = area.up(along);
         group = group
             .add(line("grid", (area.left, at), (area.right, at)))
             .add(text(
@@ -155,7 +171,7 @@ fn frame(area: Area, x: Axis, y: Axis) -> Group {
             ));
     }
     for (along, words) in x.ticks(6) {
-        let at = area.left + along * (area.right - area.left);
+        let at = area.across(along);
         group = group
             .add(line("grid", (at, area.top), (at, area.bottom)))
             .add(text(
@@ -176,7 +192,7 @@ fn frame(area: Area, x: Axis, y: Axis) -> Group {
 }
 
 /// The same curve without points that fall on one another.
-fn thinned(points: &[Point]) -> Vec<Point> {
+pub(super) fn thinned(points: &[Point]) -> Vec<Point> {
     let mut kept = vec![points[0]];
     let last = points.len() - 1;
     for (i, point) in points.iter().enumerate().skip(1) {

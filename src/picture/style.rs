@@ -20,7 +20,7 @@ text{font:11px system-ui,sans-serif;fill:#1b1f24}
 .dashed{stroke-dasharray:7 3}.dotted{stroke-dasharray:1.5 3}.thick{stroke-width:3}
 .full-one{fill:#0b5c9e}.full-two{fill:#ab4300}.full-three{fill:#00695a}.full-all{fill:#1b1f24}
 .bold{font-weight:700}
-.band{fill-opacity:.16;stroke:none}
+.band{fill-opacity:.16;stroke:none}.edge{stroke-width:.9;fill:none}
 .region{fill-opacity:.12;stroke-width:1;stroke-dasharray:3 2}
 @media screen and (prefers-color-scheme:dark){
 text{fill:#e9ecef}.paper{fill:#15191e}.soft{fill:#aab2bb}

@@ -2,20 +2,22 @@
 
 use svg::node::element::Group;
 
+use super::band::extent;
 use super::draw::{Anchor, sheet, text};
-use super::number::short;
+use super::number::{self, short};
 use super::plot::{Area, Axis, Curve, Mark, plot};
 use crate::sweep::{Columns, Division, Swept};
 
 const WIDTH: f64 = 400.0;
-const HEIGHT: f64 = 440.0;
+const HEIGHT: f64 = 446.0;
 
 /// The picture of an answered sweep.
 pub fn sweep(swept: &Swept, division: Division) -> String {
     let mut content = Group::new();
+    let known = swept.uncertainty.as_ref();
     let fields = [
-        ("E", &swept.e, &swept.units.e),
-        ("B", &swept.b, &swept.units.b),
+        ("E", &swept.e, known.map(|known| &known.e), &swept.units.e),
+        ("B", &swept.b, known.map(|known| &known.b), &swept.units.b),
     ];
     let (low, high) = ends(swept);
     let x = Axis {
@@ -24,7 +26,7 @@ pub fn sweep(swept: &Swept, division: Division) -> String {
         logarithmic: false,
     };
     let logarithmic = division == Division::Logarithmic;
-    for (i, (name, columns, unit)) in fields.into_iter().enumerate() {
+    for (i, (name, columns, uncertain, unit)) in fields.into_iter().enumerate() {
         let top = 30.0 + 200.0 * i as f64;
         let area = Area {
             left: 58.0,
@@ -32,13 +34,9 @@ pub fn sweep(swept: &Swept, division: Division) -> String {
             top,
             bottom: top + 156.0,
         };
-        let curves = curves(name, columns);
-        let values = curves
-            .iter()
-            .flat_map(|curve| curve.values)
-            .flatten()
-            .copied();
-        let y = Axis::holding(values, logarithmic);
+        let curves = curves(name, columns, uncertain);
+        let held = curves.iter().flat_map(|curve| extent(curve, logarithmic));
+        let y = Axis::holding(held, logarithmic);
         let words = match logarithmic {
             true => format!("{name}′ in {unit}, absolute values"),
             false => format!("{name}′ in {unit}"),
@@ -48,12 +46,11 @@ pub fn sweep(swept: &Swept, division: Division) -> String {
             .add(plot(area, x, &swept.values, y, &curves));
     }
     let words = running(swept);
-    content = content.add(text(
-        "soft",
-        (210.0, HEIGHT - 18.0),
-        Anchor::Middle,
-        &*words,
-    ));
+    content = content.add(text("soft", (210.0, 422.0), Anchor::Middle, &*words));
+    if known.is_some() {
+        let words = "bands: ± one standard uncertainty";
+        content = content.add(text("soft", (210.0, 438.0), Anchor::Middle, words));
+    }
     let title = format!("E and B in the target frame against {words}");
     sheet((WIDTH, HEIGHT), &title, &about(swept), content)
 }
@@ -72,53 +69,63 @@ fn running(swept: &Swept) -> String {
     }
 }
 
-fn curves<'a>(name: &str, columns: &'a Columns) -> [Curve<'a>; 4] {
-    let [x, y, z, magnitude] = columns.named();
-    let curve = |(component, values), colour, dashes, mark| Curve {
-        name: format!("{name}′{component}"),
+fn curves<'a>(name: &str, of: &'a Columns, uncertain: Option<&'a Columns>) -> [Curve<'a>; 4] {
+    let curve = |name, column: fn(&Columns) -> &[Option<f64>], colour, dashes, mark| Curve {
+        name,
         colour,
         dashes,
         mark,
-        values,
+        values: column(of),
+        uncertainties: uncertain.map(column),
     };
+    let component = |component| format!("{name}′{component}");
     [
-        Curve {
-            name: format!("|{name}′|"),
-            colour: "all",
-            dashes: "thick",
-            mark: Mark::None,
-            values: magnitude.1,
-        },
-        curve((x.0, x.1), "one", "", Mark::Disc),
-        curve((y.0, y.1), "two", "dashed", Mark::Square),
-        curve((z.0, z.1), "three", "dotted", Mark::Triangle),
+        curve(
+            format!("|{name}′|"),
+            |c| &c.magnitude,
+            "all",
+            "thick",
+            Mark::None,
+        ),
+        curve(component('x'), |c| &c.x, "one", "", Mark::Disc),
+        curve(component('y'), |c| &c.y, "two", "dashed", Mark::Square),
+        curve(component('z'), |c| &c.z, "three", "dotted", Mark::Triangle),
     ]
 }
 
 fn about(swept: &Swept) -> String {
     let (low, high) = ends(swept);
-    let field = |name: &str, unit: &str, columns: &Columns| {
-        let parts = columns.named().map(|(component, values)| {
-            let end = |value: Option<&Option<f64>>| {
-                value
-                    .copied()
-                    .flatten()
-                    .map_or("missing".into(), |value| short(value, 6))
-            };
-            format!(
-                "{component} from {} to {}",
-                end(values.first()),
-                end(values.last())
-            )
-        });
-        format!("{name}′ in {unit}: {}.", parts.join(", "))
+    let known = swept.uncertainty.as_ref();
+    let last = swept.values.len() - 1;
+    let field = |name: &str, unit: &str, columns: &Columns, uncertain: Option<&Columns>| {
+        let uncertain = uncertain.map(Columns::named);
+        let parts = columns
+            .named()
+            .into_iter()
+            .enumerate()
+            .map(|(n, (component, values))| {
+                let end = |i: usize| {
+                    let value = number::component(values[i]);
+                    let known = uncertain.and_then(|columns| columns[n].1[i]);
+                    known.map_or(value.clone(), |u| format!("{value} ± {}", short(u, 2)))
+                };
+                format!("{component} from {} to {}", end(0), end(last))
+            });
+        format!(
+            "{name}′ in {unit}: {}.",
+            parts.collect::<Vec<_>>().join(", ")
+        )
+    };
+    let bands = match known {
+        Some(_) => " The bands, and what follows ±, are one standard uncertainty.",
+        None => "",
     };
     format!(
-        "As the {} goes from {} to {}, {} {}",
+        "As the {} goes from {} to {}, {} {}{bands}",
         running(swept),
         short(low, 6),
         short(high, 6),
-        field("E", &swept.units.e, &swept.e),
-        field("B", &swept.units.b, &swept.b),
+        field("E", &swept.units.e, &swept.e, known.map(|known| &known.e)),
+        field("B", &swept.units.b, &swept.b, known.map(|known| &known.b)),
     )
 }

@@ -1,6 +1,7 @@
 """Pictures: well-formed SVG without scripts, with the right numbers at the right places."""
 
 import math
+import re
 import xml.etree.ElementTree as ET
 
 import pytest
@@ -132,9 +133,70 @@ def test_curves_pass_where_the_columns_say(service, scale):
             assert abs(pixel - expected) < 0.05
 
 
+UNCERTAIN = READING | {"boost": {"direction": [1, 2, -2]}, "over": "beta", "start": 0.1, "stop": 0.9, "points": 9,
+                       "uncertainty": {"e": [40, 300, 2], "b": [200, 500, 900],
+                                       "boost": {"value": 0.03, "direction": 0.02}}}
+
+
+@pytest.mark.parametrize("scale", ["linear", "log"])
+def test_bands_reach_as_far_as_the_standard_uncertainties(service, scale):
+    """Their edges stand at the values less and plus u, on the scale that the curves themselves tell."""
+    question = UNCERTAIN | {"scale": scale}
+    columns = service.get(by_url(question, "/v1/sweep")).json
+    picture = draw(service, question, "/v1/sweep")
+    lines = list(picture.iter(f"{SVG}polyline"))
+    curves = [line for line in lines if line.get("class").startswith("line ")]
+    edges = [line for line in lines if line.get("class").startswith("edge ")]
+    bands = [area for area in picture.iter(f"{SVG}polygon") if area.get("class").startswith("band ")]
+    frames = [frame for frame in picture.iter(f"{SVG}rect") if frame.get("class") == "frame"]
+    assert (len(curves), len(edges), len(bands), len(frames)) == (8, 16, 8, 2)
+    logarithmic = scale == "log"
+    place = (lambda x: math.log10(abs(x))) if logarithmic else float
+    heights = lambda line: [float(point.split(",")[1]) for point in line.get("points").split()]  # noqa: E731
+    names, below = ["magnitude", "x", "y", "z"], 0
+    for n, (field, frame) in enumerate(zip("eb", frames)):
+        values = [columns[field][name] for name in names]
+        known = [(place(v), pixel) for column, curve in zip(values, curves[4 * n:4 * n + 4])
+                 for v, pixel in zip(column, heights(curve))]
+        (low, bottom), (high, top) = min(known), max(known)
+        pixel = lambda v: bottom + (place(v) - low) / (high - low) * (top - bottom)  # noqa: E731
+        floor = float(frame.get("y")) + float(frame.get("height"))
+        for k, name in enumerate(names):
+            lower, upper = heights(edges[8 * n + 2 * k]), heights(edges[8 * n + 2 * k + 1])
+            around = bands[4 * n + k].get("points").split()
+            assert around[:9] == edges[8 * n + 2 * k].get("points").split()
+            assert around[:8:-1] == edges[8 * n + 2 * k + 1].get("points").split()
+            for i, (v, u) in enumerate(zip(values[k], columns["uncertainty"][field][name])):
+                assert u > 0
+                ends = [v - u, v + u]
+                if logarithmic:
+                    ends = sorted(map(abs, ends))
+                if logarithmic and u >= abs(v):  # zero is within reach, and no power of ten is low enough
+                    below += 1
+                    ends[0] = None
+                expected = [floor if end is None else min(pixel(end), floor) for end in ends]
+                assert abs(lower[i] - expected[0]) < 0.1 and abs(upper[i] - expected[1]) < 0.1, (field, name, i)
+    assert (below > 0) == logarithmic, "the question no longer has a value within its uncertainty of zero"
+
+
+def test_bands_are_said_in_words_and_differ_by_their_edges(service):
+    picture = draw(service, UNCERTAIN, "/v1/sweep")
+    columns = service.get(by_url(UNCERTAIN, "/v1/sweep")).json
+    assert "bands: ± one standard uncertainty" in texts(picture)
+    about = next("".join(child.itertext()) for child in picture if child.tag == f"{SVG}desc")
+    value, known = re.search(r"E′ in mV/m:.*? y from \S+ ± \S+ to (\S+) ± ([^\s,]+),", about).groups()
+    assert [six(float(value)), float(known)] == [six(columns["e"]["y"][-1]), float(f"{columns['uncertainty']['e']['y'][-1]:.2g}")]
+    assert "one standard uncertainty" in about
+    edges = [line.get("class").split()[1:] for line in picture.iter(f"{SVG}polyline") if line.get("class").startswith("edge")]
+    assert len({tuple(words[1:]) for words in edges[:8]}) == 4
+    certain = draw(service, {name: value for name, value in UNCERTAIN.items() if name != "uncertainty"}, "/v1/sweep")
+    assert not any("band" in word for word in texts(certain))
+
+
 @pytest.mark.parametrize("question, path", [
     (READING | WAYS["both"], "/v1/transform"),
-    (READING | {"boost": {"direction": [1, 0, 0]}, "over": "rapidity", "start": 0, "stop": 5}, "/v1/sweep")])
+    (READING | {"boost": {"direction": [1, 0, 0]}, "over": "rapidity", "start": 0, "stop": 5}, "/v1/sweep"),
+    (UNCERTAIN, "/v1/sweep")])
 def test_a_picture_is_complete_in_itself(service, question, path):
     """It runs nothing, loads nothing, and has words for those who do not see it (SVG-AAM 1.0)."""
     picture = draw(service, question, path)
