@@ -31,14 +31,16 @@ function table(caption, head, rows) {
 }
 
 function fields(answer, full) {
-  const row = (name, field) => {
-    const v = answer[field];
-    const known = answer.uncertainty?.[field] ?? [];
-    const show = (x, u) => (x === null ? "missing" : full ? String(x) + (u ? ` ± ${u}` : "") : rounded(x, u));
-    return [`${name}, ${answer.units[field]}`, ...v.map((x, i) => show(x, known[i])), show(length(v))];
+  const show = (x, u) => (x === null ? "missing" : full ? String(x) + (u ? ` ± ${u}` : "") : rounded(x, u));
+  const column = (field) => {
+    const values = [...answer[field], length(answer[field])];
+    const known = answer.uncertainty ? [...answer.uncertainty[field], answer.uncertainty.magnitudes[field]?.uncertainty] : [];
+    return values.map((x, i) => show(x, known[i]));
   };
+  const [e, b] = [column("e"), column("b")];
   const known = answer.uncertainty ? "; ± is one standard uncertainty" : "";
-  return table(`In the target frame${known}`, ["", "x", "y", "z", "length"], [row("E′", "e"), row("B′", "b")]);
+  return table(`In the target frame${known}`, ["", `E′, ${answer.units.e}`, `B′, ${answer.units.b}`],
+    ["x", "y", "z", "length"].map((name, i) => [name, e[i], b[i]]));
 }
 
 /** E²−c²B² and E·cB in V²/m², computed here from doubles. */

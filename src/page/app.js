@@ -11,10 +11,10 @@ import { chosenUnits, empty, loadUnits, numbers, read, unitChoice } from "./fiel
 import { query, stringify } from "./numbers.js";
 import { understand } from "./paste.js";
 import * as range from "./range.js";
-import { addStep, loadSteps, readSteps, untouched } from "./steps.js";
+import { addStep, loadSteps, readSteps, unfinished } from "./steps.js";
 
 /** Milliseconds of quiet before the service is asked. */
-const QUIET = 40;
+const QUIET = 20;
 /** Milliseconds more before a fault is shown. */
 const PATIENCE = 350;
 
@@ -34,13 +34,15 @@ let asked = null;
 let answered = null;
 
 /** What must still be entered before there is a question; nothing when all is there. */
-function lacking(e, b) {
-  const list = named() ? [] : all(".step", steps);
-  const blank = list.findIndex(untouched);
-  if (empty(e) && empty(b)) {
-    return "Enter E, B or both, and how the target moves or is turned. The answer appears here while you type.";
-  }
+const lacking = (e, b) => (empty(e) && empty(b)
+  ? "Enter E, B or both, and how the target moves or is turned. The answer appears here while you type."
+  : lackingWay());
+
+/** What must still be entered of the way. */
+function lackingWay() {
   if (named()) return "";
+  const list = all(".step", steps);
+  const blank = list.findIndex(unfinished);
   if (list.length === 0) return "Add a motion or a turn: how does the target move or stand, seen from where you measured?";
   if (blank < 0) return "";
   const more = list.length > 1 ? ", or remove it" : ", or remove it and add a turn";
@@ -108,9 +110,8 @@ function show(answer, problem) {
   one("#waiting").textContent = problem
     ? `There is no answer yet: ${places > 1 ? `${places} things` : "something"} must be mended, as said beside the fields.`
     : lacking(...Object.values(read(one("#reading-fields"))));
-  if (!answer) return;
-  showAnswer(asked, answer, one("#full").checked);
-  one("#status").textContent = sentence(answer);
+  one("#status").textContent = answer ? sentence(answer) : "";
+  if (answer) showAnswer(asked, answer, one("#full").checked);
 }
 
 async function drawPicture(answer) {
@@ -173,7 +174,6 @@ const shell = (text) => `'${text.replaceAll("'", "'\\''")}'`;
 function wire() {
   const soon = settled(update, QUIET);
   work.addEventListener("input", (event) => {
-    event.target.closest?.(".step")?.setAttribute("data-touched", "");
     if (event.target.closest("#paste-field, #range, #file-drop, #file-way")) return;
     soon();
   });
@@ -197,7 +197,7 @@ function wire() {
   one("#range").addEventListener("toggle", redraw);
   one("#range-save").onclick = () => range.save(asked);
   one("#range-copy").onclick = (event) => copy(event.target, location.origin + range.address(asked));
-  wireFile(way);
+  wireFile(way, lackingWay);
   window.addEventListener("hashchange", reopen);
 }
 

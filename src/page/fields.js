@@ -52,12 +52,13 @@ export function numbers({ label, path, names, unit, values = [], hint }) {
 }
 
 /** One of a few words; a `flag` is yes or no, said in words. */
-export function choice({ label, path, options, value, flag = false }) {
+export function choice({ label, path, options, value, hint, flag = false }) {
   const id = fresh();
   const select = el("select", { id, data: path ? { path } : {} }, ...options.map(([code, words]) => el("option", { value: code }, words)));
   if (value !== undefined) select.value = value;
   if (flag) select.dataset.flag = "";
-  return el("div", { className: "field" }, el("label", { htmlFor: id, className: "label" }, label), select);
+  return el("div", { className: "field" }, el("label", { htmlFor: id, className: "label" }, label), select,
+    hint ? el("span", { className: "hint" }, hint) : null);
 }
 
 /** A short text. */

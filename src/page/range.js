@@ -2,7 +2,7 @@
 
 import { ask, forget, picture } from "./ask.js";
 import { all, el, one } from "./dom.js";
-import { chosenUnits, read } from "./fields.js";
+import { chosenUnits, empty, read } from "./fields.js";
 import { clearFaults, showFaults } from "./faults.js";
 import { query } from "./numbers.js";
 
@@ -46,9 +46,23 @@ function ranged(question) {
       return { rotate: rest };
     }
     const { velocity, beta, direction, inverse } = step.boost;
-    return { boost: { direction: direction ?? velocity ?? beta, ...(inverse ? { inverse } : {}) } };
+    const uncertainty = kept(step.boost, over);
+    return { boost: { direction: direction ?? velocity ?? beta, ...(inverse ? { inverse } : {}), ...(uncertainty ? { uncertainty } : {}) } };
   });
   return { ...question, steps, over, ...read(one("#range-form")) };
+}
+
+/** What still holds of the uncertainty of a motion as its speed runs: a value has that of the form it is given in. */
+function kept({ direction, uncertainty, ...given }, over) {
+  if (!direction || !uncertainty) return undefined;
+  return over in given ? uncertainty : { direction: uncertainty.direction };
+}
+
+/** Whether something of the uncertainty of the step that runs is left out. */
+function loses(question) {
+  const [i, over] = one("#range-over").value.split(" ");
+  const { boost } = question.steps[Number(i)];
+  return Boolean(boost?.uncertainty) && (!boost.direction || !(empty(boost.uncertainty.value) || over in boost));
 }
 
 /** Draws the range of a question, when it is open and can be asked. */
@@ -60,7 +74,9 @@ export async function draw(question) {
     image.hidden = true;
     return;
   }
+  one("#range-note").hidden = !loses(question);
   const { answer, problem } = await ask("range", address(question), { headers: { accept: "image/svg+xml" } });
+  if (!answer && !problem) return;
   if (answer) picture(image, answer, `E and B in the target frame as the ${one("#range-over").selectedOptions[0].text} runs`);
   if (problem) {
     image.hidden = true;

@@ -5,7 +5,7 @@ const SLICE = 256 * 1024;
 const NEWLINE = 10, RETURN = 13, QUOTE = 34, COMMA = 44;
 
 /** How the service ends a refused row: its number, then its problem. Inside a text the quotes would be escaped. */
-const REFUSED = /"row":(\d+),"problem":\{"type":"\/problems\//g;
+const REFUSED = /"row":(\d+),("problem":\{"type":"\/problems\/.*)/g;
 
 /** The places where rows end. In CSV a quoted value may hold line ends. */
 function* rowEnds(bytes, csv) {
@@ -49,30 +49,42 @@ export async function* slices(file, csv, start) {
   }
 }
 
-/** The rows of a CSV answer, with its header or without, and how many of them were refused: those with a problem. */
-export function csvRows(bytes, withHeader) {
-  let [begin, from, read, refused] = [0, 0, 0, 0];
+/**
+ * The rows of a CSV answer, with its header or without; how many of them there are; and of those that were
+ * refused, which have a problem in their last field, the number and the words. `before` counts earlier rows.
+ */
+export function csvRows(bytes, before, withHeader) {
+  let [begin, from, read] = [0, 0, 0];
+  const refused = [];
   for (const end of rowEnds(bytes, true)) {
     if (from === 0) begin = end;
     else {
       const last = bytes[end - 2] === RETURN ? end - 3 : end - 2;
       read += 1;
-      if (bytes[last] !== COMMA) refused += 1;
+      const row = bytes.subarray(from, last + 1);
+      if (bytes[last] !== COMMA) refused.push({ row: before + read, words: () => lastField(row) });
     }
     from = end;
   }
   return { rows: withHeader ? bytes : bytes.subarray(begin), read, refused };
 }
 
-/** The rows of an NDJSON answer and its last word; the numbers of refused rows count on from `before`. */
+/** The last field of a CSV row, whose quotes are doubled inside quotes (RFC 4180). */
+function lastField(row) {
+  const text = new TextDecoder().decode(row);
+  const [, quoted, plain] = /,(?:"((?:[^"]|"")*)"|([^",]*))$/.exec(text);
+  return quoted?.replaceAll('""', '"') ?? plain;
+}
+
+/** The same of an NDJSON answer, whose last row is the service's own count. */
 export function ndjsonRows(bytes, before) {
-  const body = bytes.subarray(0, bytes.lastIndexOf(NEWLINE));
-  const start = body.lastIndexOf(NEWLINE) + 1;
-  const { read, refused } = JSON.parse(new TextDecoder().decode(body.subarray(start))).end;
-  let rows = bytes.subarray(0, start);
-  if (refused > 0 && before > 0) {
-    const text = new TextDecoder().decode(rows);
-    rows = new TextEncoder().encode(text.replace(REFUSED, (_, row) => `"row":${Number(row) + before},"problem":{"type":"/problems/`));
-  }
-  return { rows, read, refused };
+  const start = bytes.lastIndexOf(NEWLINE, bytes.length - 2) + 1;
+  const { read } = JSON.parse(new TextDecoder().decode(bytes.subarray(start))).end;
+  const refused = [];
+  const text = new TextDecoder().decode(bytes.subarray(0, start)).replace(REFUSED, (_, own, problem) => {
+    const row = Number(own) + before;
+    refused.push({ row, words: () => JSON.parse(`{${problem}`).problem.detail });
+    return `"row":${row},${problem}`;
+  });
+  return { rows: refused.length ? new TextEncoder().encode(text) : bytes.subarray(0, start), read, refused };
 }

@@ -51,10 +51,11 @@ function uncertain(kind, form) {
 
 const TITLES = { boost: "Motion", rotate: "Turn" };
 const SIDES = {
-  boost: { label: "this is the motion", path: "inverse", flag: true, options: [
-    ["false", "of the target, as seen from the reading"], ["true", "of the reading, as seen from the target"]] },
-  rotate: { label: "this turn carries", path: "inverse", flag: true, options: [
-    ["false", "the reading's axes onto the target's"], ["true", "the target's axes onto the reading's (such as body to ground)"]] },
+  boost: { label: "this is the motion of the", path: "inverse", flag: true, options: [
+    ["false", "target, seen from the reading"], ["true", "reading, seen from the target"]] },
+  rotate: { label: "this turn carries the axes of the", path: "inverse", flag: true, options: [
+    ["false", "reading onto those of the target"], ["true", "target onto those of the reading"]],
+    hint: "a reported attitude carries ground axes onto the body's: take the second for readings on the body" },
 };
 
 /** Adds an empty step and gives it. */
@@ -105,10 +106,9 @@ export const readSteps = (list) => all(".step", list).map((step) => {
   return { [step.dataset.kind]: empty(uncertainty) ? content : { ...content, uncertainty } };
 });
 
-/** Whether nothing has been typed into a step yet. */
-export function untouched(step) {
-  return all("input[data-path]", step).filter((input) => !input.dataset.path.startsWith("uncertainty")).some((input) => empty(input.value)) && !step.dataset.touched;
-}
+/** Whether a step still lacks a number. */
+export const unfinished = (step) =>
+  all("input[data-path]", step).some((input) => !input.dataset.path.startsWith("uncertainty") && empty(input.value));
 
 /** Rebuilds the steps of a question. */
 export function loadSteps(list, steps) {

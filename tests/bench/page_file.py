@@ -1,15 +1,20 @@
 """A large file through the page: how long it takes, and how much memory its tab needs.
 
-    CARGO_TARGET_DIR=.. python tests/bench/page_file.py [GIGABYTES]
+    CARGO_TARGET_DIR=.. python tests/bench/page_file.py [GIGABYTES] [--in-memory]
 
 Makes an invented CSV file of that size (1 by default), drops it on the page of the release binary in
-headless Chromium, and prints the largest resident size of any of the browser's renderers meanwhile.
+headless Chromium, saves what comes back, and compares it with what curl gets for the whole file at once.
+Prints the largest resident size of any of the browser's renderers meanwhile. `--in-memory` takes the
+browser's private files away, as it has none for a page over plain HTTP from another machine.
 """
 
+import filecmp
 import pathlib
+import subprocess
 import sys
 import tempfile
 import time
+import urllib.parse
 
 HERE = pathlib.Path(__file__).resolve()
 sys.path.insert(0, str(HERE.parents[1] / "python"))
@@ -18,15 +23,20 @@ from browser import Browser  # noqa: E402
 from service import Service  # noqa: E402
 
 ROW = "%.17g,%.17g,%.17g,%.17g,%.17g,%.17g,payload %d\n"
+WAY = '[{"boost": {"velocity": [7600, 0, 0]}}]'
 
 
 def write(path, size):
-    """Rows of about 130 bytes until the file has `size` of them."""
-    block = "".join(ROW % (i / 7, -i / 11, 1 / (i + 1), 1e-5 * i / 13, 4.5e-5, -1e-5 / (i + 3), i) for i in range(10_000))
+    """Rows of about 110 bytes until the file has `size` of them; every 10,000th is refused."""
+    rows = [ROW % (i / 7, -i / 11, 1 / (i + 1), 1e-5 * i / 13, 4.5e-5, -1e-5 / (i + 3), i) for i in range(9_999)]
+    block = "".join(rows) + "east,0,0,0,0,0,refused\n"
     with open(path, "w") as file:
         file.write("ex,ey,ez,bx,by,bz,note\n")
+        blocks = 0
         while file.tell() < size:
             file.write(block)
+            blocks += 1
+    return blocks
 
 
 def resident():
@@ -43,26 +53,49 @@ def resident():
     return sizes
 
 
+def save(page, folder):
+    """Saves the answer and waits until it is there."""
+    path = folder / page.run("return document.querySelector('#file-result a').download")
+    page.click("#file-result a")
+    while not path.exists():
+        time.sleep(0.2)
+    return path
+
+
 def main():
-    size = float(sys.argv[1] if len(sys.argv) > 1 else 1) * 1e9
-    with tempfile.TemporaryDirectory() as folder, Service(pathlib.Path(folder) / "log.txt") as service, Browser() as page:
-        path = pathlib.Path(folder) / "archive.csv"
-        write(path, size)
-        page.open(service.url)
-        page.until("return document.querySelectorAll('.step').length === 1")
-        page.type('[data-path="velocity/0"]', "7600")
-        idle = max(resident())
-        begun = time.monotonic()
-        page.send("#file-input", str(path))
-        most, words = idle, ""
-        while "restated" not in words:
-            time.sleep(0.5)
-            most = max([most, *resident()])
-            words = page.text("#file-status")
-        taken = time.monotonic() - begun
-        print(f"{path.stat().st_size / 1e9:.2f} GB in {taken:.0f} s: {words}")
-        print(page.text("#file-faults"))
-        print(f"largest renderer: {most:.0f} MiB resident, {idle:.0f} MiB before")
+    options = sys.argv[1:]
+    sizes = [float(option) for option in options if not option.startswith("--")]
+    size = (sizes or [1])[0] * 1e9
+    with tempfile.TemporaryDirectory() as name, Service(pathlib.Path(name) / "log.txt") as service:
+        folder = pathlib.Path(name)
+        path, downloads, whole = folder / "archive.csv", folder / "downloads", folder / "whole.csv"
+        downloads.mkdir()
+        blocks = write(path, size)
+        with Browser(downloads=downloads) as page:
+            page.open(service.url)
+            page.until("return document.querySelectorAll('.step').length === 1")
+            if "--in-memory" in options:
+                page.run("delete StorageManager.prototype.getDirectory")
+            page.type('[data-path="velocity/0"]', "7600")
+            idle = max(resident())
+            begun = time.monotonic()
+            page.send("#file-input", str(path))
+            most, words = idle, ""
+            while not words or words.endswith("on its way."):
+                time.sleep(0.2)
+                most = max([most, *resident()])
+                words = page.text("#file-status")
+            taken = time.monotonic() - begun
+            print(f"{path.stat().st_size / 1e9:.2f} GB in {taken:.0f} s: {words} {page.text('#file-faults')}")
+            print(f"written with {10_000 * blocks:,} rows, {blocks} of them to be refused")
+            print(f"largest renderer: {most:.0f} MiB resident, {idle:.0f} MiB before")
+            if not page.text("#file-result"):
+                return
+            saved = save(page, downloads)
+            url = f"{service.url}/v1/series?steps={urllib.parse.quote(WAY)}"
+            subprocess.run(["curl", "-sS", "-X", "POST", "-H", "content-type: text/csv", "-T", path, "-o", whole, url], check=True)
+            same = filecmp.cmp(saved, whole, shallow=False)
+            print(f"saved: {saved.stat().st_size:,} bytes, {'equal to' if same else 'NOT equal to'} what curl gets")
 
 
 main()

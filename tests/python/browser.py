@@ -1,6 +1,7 @@
 """A real browser, driven over WebDriver (W3C Recommendation, 5 June 2018) without a client library."""
 
 import base64
+import contextlib
 import json
 import re
 import subprocess
@@ -74,6 +75,16 @@ class Browser:
 
     def open(self, url):
         self._do("POST", "/url", {"url": url})
+
+    @contextlib.contextmanager
+    def tab(self, url):
+        """Another tab of the same browser for a while."""
+        first = self._do("GET", "/window")
+        self._do("POST", "/window", {"handle": self._do("POST", "/window/new", {"type": "tab"})["handle"]})
+        self.open(url)
+        yield
+        self._do("DELETE", "/window")
+        self._do("POST", "/window", {"handle": first})
 
     def run(self, script, *arguments):
         """The value of a function body run in the page."""

@@ -45,10 +45,11 @@ def answered(page):
 
 
 def shown(page):
-    """The components shown, row by row."""
+    """The components shown, of E' and of B'."""
     rows = page.run("return [...document.querySelectorAll('#answer-fields tbody tr')]"
                     ".map(row => [...row.querySelectorAll('td')].map(cell => cell.textContent))")
-    return rows[0][:3], rows[1][:3]
+    e, b = zip(*rows[:3])
+    return list(e), list(b)
 
 
 def enter_reading(page, e=("0", "1.2", "0"), b=("0", "0", "45000")):
@@ -166,7 +167,7 @@ def test_every_form_of_a_step_asks_what_it_says(page, service, kind, form, typed
         page.choose('.step [data-path="inverse"]', inverse)
         body = next(iter(step.values())) | ({"inverse": True} if inverse == "true" else {})
         answer = service.ask({"e": [1, 2, 3], "b": [1, 2, 3], "steps": [{kind: body}]})
-        page.until("return [...document.querySelectorAll('#answer-fields tbody tr:first-child td')].slice(0, 3)"
+        page.until("return [...document.querySelectorAll('#answer-fields tbody td:nth-child(2)')].slice(0, 3)"
                    ".every((cell, i) => Number(cell.textContent) === arguments[0][i])", answer["e"])
 
 
@@ -315,10 +316,37 @@ def test_uncertainties_are_entered_beside_what_they_belong_to(page, service):
     decimals = 1 - math.floor(math.log10(u))
     page.until_text("#answer-fields", f"{answer['e'][1]:.{decimals}f} ± {u:.{decimals}f}")
     page.screenshot(SHOTS / "uncertainty.png")
+    range_with_its_bands(page, service)
     page.type('[data-path="uncertainty/e/1"]', "-1")
     page.until("return document.querySelector('.fault')")
     group = page.run("return document.querySelector('.fault').closest('.field').getAttribute('aria-label')")
     assert group == "of E, in its unit"
+
+
+def range_with_its_bands(page, service):
+    """The range is asked with the uncertainties that still hold, and says which one does not."""
+    page.run("window.copied = []; navigator.clipboard.writeText = async text => { copied.push(text) }")
+    page.until("const p = document.querySelector('#range-picture'); return !p.hidden && p.complete && p.naturalWidth > 0")
+    assert not page.run("return document.querySelector('#range-note').hidden")
+    page.click("#range-copy")
+    address = page.until("return copied[0]").removeprefix(service.url)
+    assert "class=\"band" in service.get(address, Accept="image/svg+xml").body.decode()
+    asked = urllib.parse.parse_qs(urllib.parse.urlsplit(address).query)
+    assert asked["uncertainty.e"] == ["0.1,0.1,0.1"] and "uncertainty" not in asked["steps"][0]
+    page.screenshot(SHOTS / "uncertain-range.png")
+    # A speed that is given over c has an uncertainty over c, which stays as it runs over β, not over rapidity.
+    page.choose(".step .field select", "speed")
+    page.type('.step [data-path="beta"]', "0.5")
+    page.run("for (const part of document.querySelectorAll('.step details')) part.open = true")
+    page.type('.step [data-path="uncertainty/value"]', "0.01")
+    page.type('.step [data-path="uncertainty/direction"]', "0.02")
+    for over, kept in (("0 beta", {"value": 0.01, "direction": 0.02}), ("0 rapidity", {"direction": 0.02})):
+        page.choose("#range-over", over)
+        page.until("return document.querySelector('#range-note').hidden === arguments[0]", "value" in kept)
+        page.run("copied.length = 0")
+        page.click("#range-copy")
+        query = urllib.parse.urlsplit(page.until("return copied[0]")).query
+        assert json.loads(urllib.parse.parse_qs(query)["steps"][0])[0]["boost"]["uncertainty"] == kept
 
 
 def test_digits_are_sent_as_they_were_typed(page):
@@ -377,6 +405,13 @@ def test_no_rule_of_accessibility_is_broken(service, dark, size):
         page.type('[data-path="e/0"]', "x")
         page.until("return document.querySelector('.fault')")
         assert violations(page) == []
+        # Where the answer is below the fields, its sentence is in sight beside them.
+        if size[0] < 800:
+            page.click("#example")
+            answered(page)
+            page.run("scrollTo(0, 0)")
+            box = page.run("const b = document.querySelector('#status').getBoundingClientRect(); return [b.top, b.bottom, b.height]")
+            assert 0 < box[0] < box[1] <= size[1] and box[2] > 20
         # Nothing makes the page wider than the screen.
         assert page.run("return document.documentElement.scrollWidth") <= size[0]
         assert page.run("return matchMedia('(prefers-color-scheme: dark)').matches") is dark

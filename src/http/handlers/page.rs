@@ -38,6 +38,7 @@ const FILES: &[File] = files![
     "fields.js" "text/javascript",
     "file.js" "text/javascript",
     "frames.js" "text/javascript",
+    "keep.js" "text/javascript",
     "numbers.js" "text/javascript",
     "paste.js" "text/javascript",
     "range.js" "text/javascript",
