@@ -5,6 +5,8 @@
 
 mod band;
 mod draw;
+mod mark;
+mod motion;
 mod number;
 mod plot;
 mod reading;

@@ -1,4 +1,4 @@
-//! Numbers as people read them: few digits, or as many as the uncertainty supports.
+//! Numbers as people read them: in few digits.
 
 /// A number with this many significant digits, without trailing zeros.
 pub(super) fn short(value: f64, digits: usize) -> String {

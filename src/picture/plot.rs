@@ -1,9 +1,10 @@
 //! One plot: curves over a range, with their names at their right ends.
 
-use svg::node::element::{Circle, Group, Rectangle};
+use svg::node::element::{Group, Rectangle};
 
 use super::band::band;
-use super::draw::{Anchor, Point, line, polygon, polyline, text};
+use super::draw::{Anchor, Point, line, polyline, text};
+use super::mark::{Mark, marks};
 use super::number::short;
 use super::ticks;
 
@@ -39,15 +40,6 @@ pub(super) struct Curve<'a> {
     pub(super) uncertainties: Option<&'a [Option<f64>]>,
 }
 
-/// What is drawn on a curve here and there, so that it is known without its colour.
-#[derive(Clone, Copy)]
-pub(super) enum Mark {
-    Disc,
-    Square,
-    Triangle,
-    None,
-}
-
 /// An axis: what it stands for from one end of the area to the other.
 #[derive(Clone, Copy)]
 pub(super) struct Axis {
@@ -61,8 +53,6 @@ pub(super) struct Axis {
 const DECADES: f64 = 12.0;
 /// Points closer than this, in pixels, are drawn as one.
 const RESOLUTION: f64 = 0.25;
-/// Pixels between marks on a curve.
-const MARKS: f64 = 58.0;
 
 impl Axis {
     /// An axis that holds all the values.
@@ -147,9 +137,7 @@ pub(super) fn plot(area: Area, x: Axis, at: &[f64], y: Axis, curves: &[Curve]) -
         for piece in pieces.iter().filter(|piece| piece.len() > 1) {
             group = group.add(polyline(&class, &thinned(piece)));
         }
-        for point in marked(&pieces, MARKS * (0.4 + 0.2 * n as f64)) {
-            group = mark(group, curve, point);
-        }
+        group = marks(group, curve.mark, curve.colour, &pieces, n);
         if let Some((_, y)) = pieces.iter().flatten().max_by(|a, b| a.0.total_cmp(&b.0)) {
             ends.push((*y, curve));
         }
@@ -202,44 +190,6 @@ pub(super) fn thinned(points: &[Point]) -> Vec<Point> {
         }
     }
     kept
-}
-
-/// Points of a curve about evenly apart, the first after `first` pixels.
-fn marked(pieces: &[Vec<Point>], first: f64) -> Vec<Point> {
-    let mut found = Vec::new();
-    let mut left = first;
-    for piece in pieces {
-        for pair in piece.windows(2) {
-            left -= libm::hypot(pair[1].0 - pair[0].0, pair[1].1 - pair[0].1);
-            if left <= 0.0 {
-                found.push(pair[1]);
-                left = MARKS;
-            }
-        }
-    }
-    found
-}
-
-fn mark(group: Group, curve: &Curve, (x, y): Point) -> Group {
-    let full = format!("full-{}", curve.colour);
-    match curve.mark {
-        Mark::Disc => group.add(
-            Circle::new()
-                .set("class", full)
-                .set("cx", (x * 100.0).round() / 100.0)
-                .set("cy", (y * 100.0).round() / 100.0)
-                .set("r", 3),
-        ),
-        Mark::Square => {
-            let corners = [(-3.0, -3.0), (3.0, -3.0), (3.0, 3.0), (-3.0, 3.0)];
-            group.add(polygon(&full, &corners.map(|(dx, dy)| (x + dx, y + dy))))
-        }
-        Mark::Triangle => {
-            let corners = [(0.0, -4.0), (3.8, 3.0), (-3.8, 3.0)];
-            group.add(polygon(&full, &corners.map(|(dx, dy)| (x + dx, y + dy))))
-        }
-        Mark::None => group,
-    }
 }
 
 /// The names beside the right ends, moved apart where they would cover one another.

@@ -132,3 +132,8 @@ impl View {
 fn distance(a: Point, b: Point) -> f64 {
     libm::hypot(a.0 - b.0, a.1 - b.1)
 }
+
+/// The length of a vector.
+pub(super) fn length([x, y, z]: [f64; 3]) -> f64 {
+    libm::hypot(libm::hypot(x, y), z)
+}

@@ -4,8 +4,9 @@ use svg::node::element::Group;
 
 use super::band::extent;
 use super::draw::{Anchor, sheet, text};
+use super::mark::Mark;
 use super::number::{self, short};
-use super::plot::{Area, Axis, Curve, Mark, plot};
+use super::plot::{Area, Axis, Curve, plot};
 use crate::sweep::{Columns, Division, Swept};
 
 const WIDTH: f64 = 400.0;

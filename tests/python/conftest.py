@@ -4,6 +4,7 @@ import json
 
 import pytest
 
+from browser import Browser
 from service import ROOT, Service
 
 ERRORS = []
@@ -22,6 +23,22 @@ def demo(tmp_path_factory):
     catalogue = ROOT / "deploy" / "demo" / "frames.toml"
     with Service(tmp_path_factory.mktemp("demo") / "log.txt", "--frames", catalogue) as running:
         yield running
+
+
+@pytest.fixture(scope="module")
+def chromium():
+    with Browser() as browser:
+        yield browser
+
+
+@pytest.fixture
+def page(chromium, service):
+    """The page, just opened."""
+    chromium.open("about:blank")
+    chromium.open(service.url)
+    chromium.until("return document.querySelectorAll('.step').length === 1")
+    chromium.complaints()  # of tests before
+    return chromium
 
 
 @pytest.fixture

@@ -7,67 +7,8 @@ import urllib.parse
 
 import pytest
 
-from browser import ENTER, SPACE, TAB, Browser
-from service import ROOT, TARGET, Service
-
-SHOTS = TARGET / "tests" / "screenshots"
-AXE = TARGET / "tests/npm/node_modules/axe-core/axe.min.js"
-
-# What the example on the page asks. Invented.
-EXAMPLE = {
-    "e": [12.5, 340, -3.75], "b": [1200, -450, 44700],
-    "units": {"e": "mV/m", "b": "nT", "velocity": "km/s", "angle": "deg"},
-    "steps": [{"rotate": {"axis": [0, 0, 1], "angle": 30, "inverse": True}},
-              {"boost": {"velocity": [7.6, 0, 0], "inverse": True}}],
-}
-
-
-@pytest.fixture(scope="module")
-def chromium():
-    with Browser() as browser:
-        yield browser
-
-
-@pytest.fixture
-def page(chromium, service):
-    """The page, just opened."""
-    chromium.open("about:blank")
-    chromium.open(service.url)
-    chromium.until("return document.querySelectorAll('.step').length === 1")
-    chromium.complaints()  # of tests before
-    return chromium
-
-
-def answered(page):
-    """Waits for an answer, and for the picture that belongs to it."""
-    page.until("const p = document.querySelector('#picture');"
-               "return !document.querySelector('#answer-parts').hidden && !p.hidden && p.complete && p.naturalWidth > 0")
-
-
-def shown(page):
-    """The components shown, of E' and of B'."""
-    rows = page.run("return [...document.querySelectorAll('#answer-fields tbody tr')]"
-                    ".map(row => [...row.querySelectorAll('td')].map(cell => cell.textContent))")
-    e, b = zip(*rows[:3])
-    return list(e), list(b)
-
-
-def enter_reading(page, e=("0", "1.2", "0"), b=("0", "0", "45000")):
-    page.choose('select[data-unit="e"]', "mV/m")
-    page.choose('select[data-unit="b"]', "nT")
-    for field, values in (("e", e), ("b", b)):
-        for i, value in enumerate(values):
-            page.type(f'[data-path="{field}/{i}"]', value)
-
-
-def violations(page):
-    """What the rules of WCAG 2.2 A and AA and the best practices of axe-core find wrong."""
-    page.run(AXE.read_text())
-    found = page.run_async(
-        "const done = arguments[arguments.length - 1];"
-        "axe.run(document).then(r => done(r.violations.map("
-        "v => v.id + ': ' + v.nodes.map(n => n.target.join(' ') + ' ' + n.failureSummary).join(' | '))))")
-    return found
+from service import ROOT, Service
+from workbench import EXAMPLE, SHOTS, answered, enter_reading, enter_uncertain, shown, violations
 
 
 def test_from_the_empty_page_to_an_answer_with_its_picture(page, service):
@@ -257,28 +198,6 @@ def test_several_faults_are_shown_at_once_and_go_when_mended(page):
     page.until("return document.querySelectorAll('.fault, [aria-invalid]').length === 0")
 
 
-def test_a_range_is_drawn_and_its_faults_stand_beside_their_fields(page):
-    page.click("#example")
-    answered(page)
-    page.click("#range summary")
-    drawn = "const p = document.querySelector('#range-picture'); return !p.hidden && p.complete && p.naturalWidth > 0"
-    page.until(drawn)
-    page.screenshot(SHOTS / "3-range.png")
-    options = page.run("return [...document.querySelector('#range-over').options].map(o => o.value)")
-    assert options == ["0 angle", "1 beta", "1 rapidity"]
-    page.choose("#range-over", "1 beta")
-    assert page.run("return document.querySelector('#range-stop').value") == "0.99"
-    for field, value, words in (("#range-stop", "1", "slower than c"), ("#range-points", "1", "takes from 2")):
-        before = page.run("return document.querySelector(arguments[0]).value", field)
-        page.type(field, value)
-        page.until("return document.querySelector(arguments[0]).closest('.field').querySelector('.fault')"
-                   "?.textContent.includes(arguments[1])", field, words)
-        page.type(field, before)
-        page.until(drawn)
-    page.choose("#range-scale", "log")
-    page.until(drawn)
-
-
 def test_the_question_is_copied_as_curl_and_as_a_link_that_reopens_it(page, service):
     page.run("window.copied = []; navigator.clipboard.writeText = async text => { copied.push(text) }")
     page.click("#example")
@@ -299,16 +218,7 @@ def test_the_question_is_copied_as_curl_and_as_a_link_that_reopens_it(page, serv
 
 
 def test_uncertainties_are_entered_beside_what_they_belong_to(page, service):
-    enter_reading(page)
-    page.choose('select[data-unit="velocity"]', "km/s")
-    page.type('[data-path="velocity/0"]', "7.6")
-    page.run("for (const part of document.querySelectorAll('details')) part.open = true")
-    for path, value in (("uncertainty/e", "0.1"), ("uncertainty/b", "5")):
-        for i in range(3):
-            page.type(f'[data-path="{path}/{i}"]', value)
-    for i in range(3):
-        page.type(f'.step [data-path="uncertainty/{i}"]', "0.01")
-    page.until("return /±/.test(document.querySelector('#answer-fields').textContent)")
+    enter_uncertain(page)
     answer = service.ask({"e": [0, 1.2, 0], "b": [0, 0, 45000], "units": {"e": "mV/m", "b": "nT", "velocity": "km/s"},
                           "steps": [{"boost": {"velocity": [7.6, 0, 0], "uncertainty": [0.01, 0.01, 0.01]}}],
                           "uncertainty": {"e": [0.1, 0.1, 0.1], "b": [5, 5, 5]}})
@@ -316,37 +226,10 @@ def test_uncertainties_are_entered_beside_what_they_belong_to(page, service):
     decimals = 1 - math.floor(math.log10(u))
     page.until_text("#answer-fields", f"{answer['e'][1]:.{decimals}f} ± {u:.{decimals}f}")
     page.screenshot(SHOTS / "uncertainty.png")
-    range_with_its_bands(page, service)
     page.type('[data-path="uncertainty/e/1"]', "-1")
     page.until("return document.querySelector('.fault')")
     group = page.run("return document.querySelector('.fault').closest('.field').getAttribute('aria-label')")
     assert group == "of E, in its unit"
-
-
-def range_with_its_bands(page, service):
-    """The range is asked with the uncertainties that still hold, and says which one does not."""
-    page.run("window.copied = []; navigator.clipboard.writeText = async text => { copied.push(text) }")
-    page.until("const p = document.querySelector('#range-picture'); return !p.hidden && p.complete && p.naturalWidth > 0")
-    assert not page.run("return document.querySelector('#range-note').hidden")
-    page.click("#range-copy")
-    address = page.until("return copied[0]").removeprefix(service.url)
-    assert "class=\"band" in service.get(address, Accept="image/svg+xml").body.decode()
-    asked = urllib.parse.parse_qs(urllib.parse.urlsplit(address).query)
-    assert asked["uncertainty.e"] == ["0.1,0.1,0.1"] and "uncertainty" not in asked["steps"][0]
-    page.screenshot(SHOTS / "uncertain-range.png")
-    # A speed that is given over c has an uncertainty over c, which stays as it runs over β, not over rapidity.
-    page.choose(".step .field select", "speed")
-    page.type('.step [data-path="beta"]', "0.5")
-    page.run("for (const part of document.querySelectorAll('.step details')) part.open = true")
-    page.type('.step [data-path="uncertainty/value"]', "0.01")
-    page.type('.step [data-path="uncertainty/direction"]', "0.02")
-    for over, kept in (("0 beta", {"value": 0.01, "direction": 0.02}), ("0 rapidity", {"direction": 0.02})):
-        page.choose("#range-over", over)
-        page.until("return document.querySelector('#range-note').hidden === arguments[0]", "value" in kept)
-        page.run("copied.length = 0")
-        page.click("#range-copy")
-        query = urllib.parse.urlsplit(page.until("return copied[0]")).query
-        assert json.loads(urllib.parse.parse_qs(query)["steps"][0])[0]["boost"]["uncertainty"] == kept
 
 
 def test_digits_are_sent_as_they_were_typed(page):
@@ -359,79 +242,3 @@ def test_digits_are_sent_as_they_were_typed(page):
     page.click("#copy-curl")
     page.until("return copied.length === 1")
     assert "[0.10000000000000000000001, 340, -3.75]" in page.run("return copied[0]")
-
-
-def test_the_keyboard_alone_is_enough(page):
-    """WCAG 2.2, 2.1.1 and 2.4.7: every part is reached with Tab, and what has the focus is seen."""
-    reached = []
-    page.run("document.body.focus()")
-    for _ in range(100):
-        page.keys(TAB)
-        at = page.run("const f = document.activeElement; return [f.dataset.path || f.dataset.unit || f.id || f.textContent.trim(),"
-                      "getComputedStyle(f).outlineStyle]")
-        if reached and (at[0] == reached[0] or page.run("return document.activeElement === document.body")):
-            break  # once around
-        reached.append(at[0])
-        assert at[1] != "none", at[0]
-        if at[0] == "example":
-            page.keys(ENTER)
-            answered(page)
-        if at[0] == "full":
-            page.keys(SPACE)
-            page.until("return document.querySelector('#full').checked")
-        if at[0] == "Draw the answer over a range":
-            page.keys(ENTER)
-            page.until("return document.querySelector('#range').open")
-            page.until("return !document.querySelector('#range-picture').hidden")
-    for part in ("e/0", "b/2", "e", "paste", "axis/0", "angle", "inverse", "velocity/0", "Remove", "add-boost", "add-rotate",
-                 "copy-curl", "copy-link", "range-over", "start", "range-save"):
-        assert part in reached, reached
-
-
-@pytest.mark.parametrize("dark", [False, True], ids=["light", "dark"])
-@pytest.mark.parametrize("size", [(1280, 1000), (390, 844), (320, 640)], ids=["desk", "phone", "small phone"])
-def test_no_rule_of_accessibility_is_broken(service, dark, size):
-    """axe-core, in both colour schemes and down to the width that WCAG 2.2, 1.4.10 asks for."""
-    with Browser(dark=dark, size=size) as page:
-        page.open(service.url)
-        page.until("return document.querySelectorAll('.step').length === 1")
-        assert violations(page) == []
-        page.click("#example")
-        answered(page)
-        page.click("#range summary")
-        page.until("return !document.querySelector('#range-picture').hidden")
-        assert violations(page) == []
-        page.screenshot(SHOTS / f"{'dark' if dark else 'light'}-{size[0]}.png")
-        page.type('[data-path="e/0"]', "x")
-        page.until("return document.querySelector('.fault')")
-        assert violations(page) == []
-        # Where the answer is below the fields, its sentence is in sight beside them.
-        if size[0] < 800:
-            page.click("#example")
-            answered(page)
-            page.run("scrollTo(0, 0)")
-            box = page.run("const b = document.querySelector('#status').getBoundingClientRect(); return [b.top, b.bottom, b.height]")
-            assert 0 < box[0] < box[1] <= size[1] and box[2] > 20
-        # Nothing makes the page wider than the screen.
-        assert page.run("return document.documentElement.scrollWidth") <= size[0]
-        assert page.run("return matchMedia('(prefers-color-scheme: dark)').matches") is dark
-
-
-def test_it_is_small_and_asks_no_other_host(page, service):
-    page.click("#example")
-    answered(page)
-    loads = page.run("return performance.getEntriesByType('resource').map(entry => entry.name)")
-    assert all(load.startswith((service.url, "blob:", "data:")) for load in loads), loads
-    names = [load.removeprefix(service.url) for load in loads if "/page/" in load]
-    scripts = {path.name for path in (ROOT / "src/page").glob("*.js")} - {"reference.js"}  # which is of another page
-    assert {name.removeprefix("/page/") for name in names} == scripts | {"style.css"}
-    size = sum(len(service.get(name).body) for name in ["/", *names])
-    assert size < 100 * 1024
-    policy = service.get("/").headers["content-security-policy"]
-    assert "unsafe" not in policy and "default-src 'none'" in policy and "http" not in policy
-    assert page.complaints() == []
-
-
-def test_it_says_that_results_are_no_safety_clearance(page):
-    words = " ".join(page.text("footer").split())
-    assert "not a safety clearance" in words and "local codes and licensed practice" in words

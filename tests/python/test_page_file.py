@@ -10,7 +10,7 @@ import pytest
 
 from browser import Browser
 from service import Service
-from test_page import SHOTS, violations
+from workbench import SHOTS, violations
 
 STEP = {"boost": {"velocity": [7600, 0, 0]}}
 
@@ -231,6 +231,7 @@ def test_a_file_may_be_stopped(page, tmp_path):
     page.run("document.querySelector('#file-status').textContent = ''")
     page.send("#file-input", str(path))
     page.until("return document.querySelector('#file-progress').value > .4")
+    assert violations(page) == []
     page.click("#file-stop")
     page.until_text("#file-status", "not the whole file")
     assert page.text("#file-faults") == page.text("#file-result") == ""
