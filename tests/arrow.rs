@@ -15,19 +15,19 @@ use lodeframe::series::{Format, Intake, Limits, Outlet, Refusal, Series};
 
 use crate::series::series;
 
-const LIMITS: Limits = Limits {
+pub(crate) const LIMITS: Limits = Limits {
     row: 4096,
     batch: 1 << 20,
 };
 
-type Column = (&'static str, ArrayRef);
+pub(crate) type Column = (&'static str, ArrayRef);
 
-fn doubles(values: Vec<f64>) -> ArrayRef {
+pub(crate) fn doubles(values: Vec<f64>) -> ArrayRef {
     Arc::new(Float64Array::from(values))
 }
 
 /// A stream of one batch, given so many times.
-fn stream(columns: Vec<Column>, times: usize) -> Vec<u8> {
+pub(crate) fn stream(columns: Vec<Column>, times: usize) -> Vec<u8> {
     let batch = RecordBatch::try_from_iter(columns).expect("columns of one length");
     let mut bytes = Vec::new();
     let mut writer = StreamWriter::try_new(&mut bytes, &batch.schema()).unwrap();
@@ -39,14 +39,14 @@ fn stream(columns: Vec<Column>, times: usize) -> Vec<u8> {
     bytes
 }
 
-fn batches(bytes: &[u8]) -> Vec<RecordBatch> {
+pub(crate) fn batches(bytes: &[u8]) -> Vec<RecordBatch> {
     // The end, which the reader does not insist on.
     assert!(bytes.ends_with(&[0xff, 0xff, 0xff, 0xff, 0, 0, 0, 0]));
     let reader = StreamReader::try_new(bytes, None).expect("a schema");
     reader.map(|batch| batch.expect("a batch")).collect()
 }
 
-fn answer(
+pub(crate) fn answer(
     series: Series,
     formats: [Format; 2],
     bytes: &[u8],
@@ -68,12 +68,12 @@ fn answer(
     Ok(answer)
 }
 
-fn numbers(column: &ArrayRef) -> Vec<Option<f64>> {
+pub(crate) fn numbers(column: &ArrayRef) -> Vec<Option<f64>> {
     column.as_primitive::<Float64Type>().iter().collect()
 }
 
 /// Columns ex to bz and vx to vz of so many rows.
-fn motion(rows: usize) -> Vec<Column> {
+pub(crate) fn motion(rows: usize) -> Vec<Column> {
     let names = ["ex", "ey", "ez", "bx", "by", "bz", "vx", "vy", "vz"];
     let column =
         |i: usize| (0..rows).map(move |row| ((row * 37 + i * 11) % 1000) as f64 * 0.37 - 99.0);
@@ -301,7 +301,7 @@ fn times_are_timestamps_or_seconds() {
     );
 }
 
-fn refused(query: &str, bytes: &[u8]) -> Vec<String> {
+pub(crate) fn refused(query: &str, bytes: &[u8]) -> Vec<String> {
     let refusal = answer(series(query), [Format::Arrow; 2], bytes, 64).expect_err("a refusal");
     let each = refusal.faults.iter().map(|fault| {
         let place = fault.path.as_ref().map(|path| path.parameter());
@@ -376,62 +376,4 @@ fn a_stream_without_rows_has_its_columns() {
     }
     let table = answer(series(""), [Format::Arrow, Format::Csv], &empty, 9).unwrap();
     assert_eq!(table, b"ex,ey,ez,bx,by,bz,problem\r\n");
-}
-
-#[test]
-fn notices_and_uncertainties_of_the_query_are_columns_before_the_problem() {
-    let gap: ArrayRef = Arc::new(Float64Array::from(vec![None, Some(1.0), None]));
-    let three = |x: f64| doubles(vec![x; 3]);
-    let columns = vec![
-        ("ex", three(3.0)),
-        ("ey", three(-4.0)),
-        ("ez", gap),
-        ("bx", three(1.0)),
-        ("by", three(2.0)),
-        ("bz", doubles(vec![8.0, 8.0, f64::NAN])),
-    ];
-    let bytes = stream(columns, 2);
-    let query = "velocity=0,0,0&uncertainty.velocity=2,0,0&assume.e_dot_b_zero.min_angle=0.1";
-    let arrow = answer(series(query), [Format::Arrow; 2], &bytes, 999).expect("an answer");
-    let csv = answer(series(query), [Format::Arrow, Format::Csv], &bytes, 999).expect("an answer");
-    let table = b"ex,ey,ez,bx,by,bz\n3,-4,,1,2,8\n3,-4,1,1,2,8\n3,-4,,1,2,\n";
-    let back = [Format::Csv, Format::Arrow];
-    let back = answer(series(query), back, table, 4096).expect("an answer");
-    let names = [
-        "ex", "ey", "ez", "bx", "by", "bz", "u_ex", "u_ey", "u_ez", "u_bx", "u_by", "u_bz",
-        "notices", "problem",
-    ];
-    for batch in batches(&arrow).iter().chain(&batches(&back)) {
-        let schema = batch.schema();
-        let own: Vec<&str> = schema
-            .fields()
-            .iter()
-            .map(|field| field.name().as_str())
-            .collect();
-        assert_eq!(own, names);
-        // With v = (±2, 0, 0) m/s beside B = (1, 2, 8) T, E' is off by v×B = (0, -16, 4) V/m.
-        assert_eq!(numbers(&batch.columns()[7])[1], Some(16.0));
-        assert_eq!(numbers(&batch.columns()[8])[1], Some(4.0));
-        let notices = batch.columns()[12].as_string::<i32>();
-        let notices: Vec<Option<&str>> = notices.iter().collect();
-        let strong = "strong_field";
-        assert_eq!(
-            notices,
-            [
-                Some("e_dot_b_assumed strong_field"),
-                Some(strong),
-                Some("missing_component strong_field")
-            ]
-        );
-        assert_eq!(batch.columns()[13].null_count(), 3);
-    }
-    let text = String::from_utf8(csv).expect("UTF-8");
-    let header = text.lines().next().expect("a header");
-    assert_eq!(header, names.join(","));
-    assert_eq!(text.lines().count(), 7);
-    let filled = text.lines().nth(1).expect("a row");
-    assert!(
-        filled.ends_with(",e_dot_b_assumed strong_field,"),
-        "{filled}"
-    );
 }

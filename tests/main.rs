@@ -4,6 +4,7 @@
 mod access;
 mod arithmetic;
 mod arrow;
+mod arrow_packed;
 mod block;
 mod corpus;
 mod covariance;

@@ -4,13 +4,16 @@
 use std::path::Path;
 use std::sync::Arc;
 
+use arrow_array::cast::AsArray;
+use arrow_array::{Array, ArrayRef, Float64Array};
 use lodeframe::document::{Node, from_query};
 use lodeframe::question::{Deployment, Question};
 use lodeframe::series::{Format, Limits, Series, run};
 use lodeframe::{answer::Answer, frames};
 use serde_json::{Value, json};
 
-use crate::series::{CSV, NDJSON, answer, lines, refused, single};
+use crate::arrow;
+use crate::series::{CSV, NDJSON, answer, lines, refused, series, single};
 
 const ASSUMED: &str = "velocity=row&assume.e_dot_b_zero.min_angle=15&units.angle=deg";
 
@@ -200,5 +203,64 @@ fn an_extrapolated_time_is_said_of_its_row() {
     assert!(
         answered.starts_with("bx,by,bz,ex,ey,ez,vx,vy,vz,problem\n"),
         "{answered}"
+    );
+}
+
+#[test]
+fn notices_and_uncertainties_of_the_query_are_columns_before_the_problem() {
+    let gap: ArrayRef = Arc::new(Float64Array::from(vec![None, Some(1.0), None]));
+    let three = |x: f64| arrow::doubles(vec![x; 3]);
+    let columns = vec![
+        ("ex", three(3.0)),
+        ("ey", three(-4.0)),
+        ("ez", gap),
+        ("bx", three(1.0)),
+        ("by", three(2.0)),
+        ("bz", arrow::doubles(vec![8.0, 8.0, f64::NAN])),
+    ];
+    let bytes = arrow::stream(columns, 2);
+    let query = "velocity=0,0,0&uncertainty.velocity=2,0,0&assume.e_dot_b_zero.min_angle=0.1";
+    let arrow = arrow::answer(series(query), [Format::Arrow; 2], &bytes, 999).expect("an answer");
+    let csv =
+        arrow::answer(series(query), [Format::Arrow, Format::Csv], &bytes, 999).expect("an answer");
+    let table = b"ex,ey,ez,bx,by,bz\n3,-4,,1,2,8\n3,-4,1,1,2,8\n3,-4,,1,2,\n";
+    let back = [Format::Csv, Format::Arrow];
+    let back = arrow::answer(series(query), back, table, 4096).expect("an answer");
+    let names = [
+        "ex", "ey", "ez", "bx", "by", "bz", "u_ex", "u_ey", "u_ez", "u_bx", "u_by", "u_bz",
+        "notices", "problem",
+    ];
+    for batch in arrow::batches(&arrow).iter().chain(&arrow::batches(&back)) {
+        let schema = batch.schema();
+        let own: Vec<&str> = schema
+            .fields()
+            .iter()
+            .map(|field| field.name().as_str())
+            .collect();
+        assert_eq!(own, names);
+        // With v = (±2, 0, 0) m/s beside B = (1, 2, 8) T, E' is off by v×B = (0, -16, 4) V/m.
+        assert_eq!(arrow::numbers(&batch.columns()[7])[1], Some(16.0));
+        assert_eq!(arrow::numbers(&batch.columns()[8])[1], Some(4.0));
+        let notices = batch.columns()[12].as_string::<i32>();
+        let notices: Vec<Option<&str>> = notices.iter().collect();
+        let strong = "strong_field";
+        assert_eq!(
+            notices,
+            [
+                Some("e_dot_b_assumed strong_field"),
+                Some(strong),
+                Some("missing_component strong_field")
+            ]
+        );
+        assert_eq!(batch.columns()[13].null_count(), 3);
+    }
+    let text = String::from_utf8(csv).expect("UTF-8");
+    let header = text.lines().next().expect("a header");
+    assert_eq!(header, names.join(","));
+    assert_eq!(text.lines().count(), 7);
+    let filled = text.lines().nth(1).expect("a row");
+    assert!(
+        filled.ends_with(",e_dot_b_assumed strong_field,"),
+        "{filled}"
     );
 }

@@ -93,7 +93,18 @@ impl Intake {
     pub fn is_full(&self) -> bool {
         match &self.source {
             Source::Text(_, cutter) => cutter.waiting() >= BLOCK,
-            Source::Arrow(frames) => frames.is_ready() || self.refusal.is_some(),
+            Source::Arrow(frames) => frames.is_ready() || frames.waits() || self.refusal.is_some(),
+        }
+    }
+
+    /// Whether the next job has to be unpacked first, which takes as long as to answer it.
+    pub fn is_packed(&self) -> bool {
+        matches!(&self.source, Source::Arrow(frames) if frames.waits() && !frames.is_ready())
+    }
+
+    fn unpack(&mut self) {
+        if let (Source::Arrow(frames), None) = (&mut self.source, &self.refusal) {
+            self.refusal = frames.unpack().map_err(Refusal::of).err();
         }
     }
 
@@ -103,6 +114,7 @@ impl Intake {
     /// # Errors
     /// The header is wrong, a row or batch is too long, or the bytes are none of the format.
     pub fn job(&mut self, least: usize) -> Result<Option<Job>, Refusal> {
+        self.unpack();
         let begun = self.begin(false)?;
         let rows = match &mut self.source {
             Source::Text(_, cutter) => {
@@ -128,6 +140,7 @@ impl Intake {
     /// # Errors
     /// As for [`job`](Self::job), or the bytes end too early.
     pub fn last(&mut self) -> Result<Option<Job>, Refusal> {
+        self.unpack();
         self.begin(true)?;
         let rows = match &mut self.source {
             Source::Text(_, cutter) => {

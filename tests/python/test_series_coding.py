@@ -7,11 +7,12 @@ import socket
 import subprocess
 import zlib
 
+import numpy as np
 import pyarrow
 import pytest
 
 import series
-from series import ARROW, CSV, NDJSON, curl, memory, problem
+from series import ARROW, CSV, FIELD, NDJSON, VELOCITY, curl, memory, problem
 from test_series_stream import BOUND, LINE, ROW, WHERE, chunk, counts, everything, opened, until
 
 CODINGS = ["gzip", "zstd"]
@@ -140,3 +141,44 @@ def test_an_answer_goes_plain_where_a_client_does_not_ask(service):
     assert "content-encoding" not in reply.headers and reply.headers["vary"] == "accept, accept-encoding"
     refused = service.request("POST", WHERE, LINE, {"Content-Type": NDJSON, "Accept-Encoding": "br, *;q=0"})
     problem(refused, 406, "not_acceptable")
+
+
+def arrow(table, compression, rows=None):
+    out = pyarrow.BufferOutputStream()
+    options = pyarrow.ipc.IpcWriteOptions(compression=compression)
+    with pyarrow.ipc.new_stream(out, table.schema, options=options) as stream:
+        stream.write_table(table, max_chunksize=rows)
+    return out.getvalue().to_pybytes()
+
+
+@pytest.mark.parametrize("compression", ["lz4", "zstd"])
+def test_compressed_buffers_of_arrow_are_read(service, compression):
+    """As PyArrow writes them by option; foreign columns, with dictionaries, nulls and nesting, pass."""
+    count = 5000
+    table = pyarrow.table(series.columns(series.questions(count, "buffers")) | {
+        "station": pyarrow.array(["mast", None, "roof", "mast", ""] * (count // 5)).dictionary_encode(),
+        "spectrum": pyarrow.array([[1.5, 2], [], None, [3], [4]] * (count // 5), pyarrow.list_(pyarrow.float32())),
+    })
+    plain, sent = arrow(table, None, 999), arrow(table, compression, 999)
+    assert len(sent) < len(plain)
+    for accept in (ARROW, CSV):
+        expected = series.send(service, WHERE, ARROW, plain, accept)
+        found = series.send(service, WHERE, ARROW, sent, accept)
+        assert found.status == 200 and found.body == expected.body
+    answer = pyarrow.ipc.open_stream(series.send(service, WHERE, ARROW, sent).body).read_all()
+    assert answer["station"].to_pylist() == table["station"].to_pylist()
+    assert answer["spectrum"].to_pylist() == table["spectrum"].to_pylist()
+
+
+@pytest.mark.parametrize("compression", ["lz4", "zstd"])
+def test_what_compressed_buffers_hold_is_bounded(service, compression):
+    """Fourteen batches of 14 MB, each of some kilobytes when packed, are unpacked one after the other; a larger
+    one is refused before that."""
+    zeros = lambda rows: pyarrow.table({name: np.zeros(rows) for name in FIELD + VELOCITY})  # noqa: E731
+    idle = memory(service, "VmRSS")
+    many = arrow(pyarrow.concat_tables([zeros(200_000)] * 14), compression)
+    assert len(many) < 10e6
+    reply = series.send(service, WHERE + "&keep=vx", ARROW, many, CSV)
+    assert reply.status == 200 and reply.body.count(b"\n") == 14 * 200_000 + 1
+    assert memory(service) < idle + 2 * BOUND
+    problem(series.send(service, WHERE, ARROW, arrow(zeros(300_000), compression)), 413, "batch_too_large")

@@ -18,9 +18,8 @@ use tokio::{
     time::timeout,
 };
 
-use super::{Coding, TRAILERS, packing::Packer, unread::Unread};
+use super::{Coding, TRAILERS, failure::Failure, packing::Packer, unread::Unread};
 use crate::{
-    document::{Code, Fault},
     http::{
         AppState,
         problem::{Problem, Source},
@@ -38,7 +37,8 @@ const LINGER: Duration = Duration::from_secs(2);
 /// One series under way.
 pub(super) struct Drive {
     running: Running,
-    intake: Intake,
+    /// Away only while the pool unpacks for it.
+    intake: Option<Intake>,
     outlet: Outlet,
     body: Body,
     /// Whether the body has ended.
@@ -64,22 +64,6 @@ enum Packing {
 /// Counts the series among the requests that run, for as long as it does.
 struct Running(AppState);
 
-/// Why a series ends before its end.
-enum Failure {
-    /// The rows cannot be understood.
-    Refused(Refusal),
-    /// Nothing was sent, or nothing read, for too long.
-    Idle,
-    /// The body broke off.
-    Broken,
-    /// Nobody reads the answer any more.
-    Gone,
-    /// The service was told to stop, and its grace is over.
-    Ending,
-    /// A fault of the service.
-    Panicked,
-}
-
 /// What happened next.
 enum Event {
     Arrived(Option<Result<Bytes, axum::Error>>),
@@ -103,7 +87,7 @@ impl Drive {
         let ending = state.ending.subscribe();
         Drive {
             running: Running(state),
-            intake,
+            intake: Some(intake),
             outlet,
             body,
             all_arrived: false,
@@ -179,14 +163,7 @@ impl Drive {
             let mut room = self.working.len() < depth && !self.unread.is_full();
             if room && !ended {
                 ended = self.read_what_is_there().await?;
-                let job = if ended {
-                    self.intake.last()
-                } else if self.working.is_empty() {
-                    // Nothing else to do, and nothing more at hand: what there is.
-                    self.intake.job(1)
-                } else {
-                    self.intake.job(BLOCK)
-                };
+                let job = self.job(ended).await;
                 if self.take_on(job, &state).await? {
                     continue;
                 }
@@ -202,16 +179,42 @@ impl Drive {
                 Ok(Event::Read) => {}
                 Ok(Event::Answered(done)) => self.accept(done).await?,
                 Ok(Event::Arrived(Some(bytes))) => {
-                    self.intake.push(&bytes.map_err(|_| Failure::Broken)?);
+                    self.intake().push(&bytes.map_err(|_| Failure::Broken)?);
                 }
                 Ok(Event::Arrived(None)) => self.all_arrived = true,
             }
         }
     }
 
+    /// The next job, if there is one.
+    async fn job(&mut self, ended: bool) -> Result<Option<Job>, Refusal> {
+        // With nothing else to do, and nothing more at hand: what there is.
+        let least = if self.working.is_empty() { 1 } else { BLOCK };
+        let next = move |intake: &mut Intake| match ended {
+            true => intake.last(),
+            false => intake.job(least),
+        };
+        let intake = self.intake();
+        if !intake.is_packed() {
+            return next(intake);
+        }
+        let mut intake = self.intake.take().expect("it is here");
+        let work = move || {
+            let job = next(&mut intake);
+            (intake, job)
+        };
+        let (intake, job) = self.running.0.pool.run(work).await;
+        self.intake = Some(intake);
+        job
+    }
+
+    fn intake(&mut self) -> &mut Intake {
+        self.intake.as_mut().expect("the pool gave it back")
+    }
+
     /// Takes what has arrived already, up to a block; whether it is the end.
     async fn read_what_is_there(&mut self) -> Result<bool, Failure> {
-        while !self.all_arrived && !self.intake.is_full() {
+        while !self.all_arrived && !self.intake().is_full() {
             let body = &mut self.body;
             let at_once = poll_fn(|cx| Poll::Ready(Pin::new(&mut *body).poll_frame(cx))).await;
             match at_once {
@@ -219,7 +222,7 @@ impl Drive {
                 Poll::Ready(None) => self.all_arrived = true,
                 Poll::Ready(Some(Err(_))) => return Err(Failure::Broken),
                 Poll::Ready(Some(Ok(frame))) => {
-                    self.intake.push(&frame.into_data().unwrap_or_default());
+                    self.intake().push(&frame.into_data().unwrap_or_default());
                 }
             }
         }
@@ -338,40 +341,6 @@ impl Drive {
 /// The answer to a block, or its panic.
 fn answered(done: Result<Done, JoinError>) -> Done {
     done.unwrap_or_else(|failed| std::panic::resume_unwind(failed.into_panic()))
-}
-
-impl Failure {
-    /// What is said of it, in a problem or in the last row.
-    fn refusal(self, idle: Duration) -> Refusal {
-        let fault = match self {
-            Failure::Refused(refusal) => return refusal,
-            Failure::Idle => Fault::whole(
-                Code::RequestTimeout,
-                format!(
-                    "for {} s no row came, or none of the answer was read; send rows without such \
-                     pauses, and read while you send",
-                    idle.as_secs_f64()
-                ),
-            ),
-            Failure::Ending => Fault::whole(
-                Code::Stopping,
-                "the service was told to stop; send the rows that have no answer again",
-            ),
-            Failure::Panicked => Fault::whole(
-                Code::Internal,
-                "the service failed in a way its authors did not foresee; the rows were not the \
-                 cause. Send those that have no answer again",
-            ),
-            Failure::Broken | Failure::Gone => Fault::whole(
-                Code::Syntax,
-                "the body broke off, its chunks were not well-formed, or it is not compressed as its \
-                 Content-Encoding says",
-            ),
-        };
-        Refusal {
-            faults: vec![fault],
-        }
-    }
 }
 
 impl Drop for Running {

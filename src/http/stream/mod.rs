@@ -5,6 +5,7 @@
 
 mod coding;
 mod drive;
+mod failure;
 mod packing;
 mod unread;
 

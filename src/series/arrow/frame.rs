@@ -1,5 +1,6 @@
 //! Bytes of an Arrow stream, put together to batches. A message is held whole, so its size is
-//! looked at before its bytes are taken.
+//! looked at before its bytes are taken; that of compressed buffers, which say it, before they are
+//! unpacked, and one message at a time.
 
 use std::collections::VecDeque;
 use std::panic::{AssertUnwindSafe, catch_unwind};
@@ -9,6 +10,7 @@ use arrow_buffer::{Buffer, MutableBuffer};
 use arrow_ipc::reader::StreamDecoder;
 use arrow_ipc::{MessageHeader, root_as_message};
 use arrow_schema::SchemaRef;
+use bytes::{Buf, Bytes};
 
 use crate::document::{Code, Fault};
 
@@ -24,6 +26,10 @@ pub(in crate::series) struct Frames {
     head: Vec<u8>,
     /// What has come of its body, and how long that is, once described.
     body: Option<(MutableBuffer, usize)>,
+    /// Where in the body compressed buffers stand, each with its length.
+    packed: Vec<(usize, usize)>,
+    /// What came behind a message that waits to be unpacked.
+    rest: Bytes,
     most: usize,
     ready: VecDeque<RecordBatch>,
     ended: bool,
@@ -36,6 +42,8 @@ impl Frames {
             decoder: StreamDecoder::new(),
             head: Vec::new(),
             body: None,
+            packed: Vec::new(),
+            rest: Bytes::new(),
             most,
             ready: VecDeque::new(),
             ended: false,
@@ -46,8 +54,41 @@ impl Frames {
     ///
     /// # Errors
     /// They are no Arrow stream, or a message is too large.
-    pub(in crate::series) fn push(&mut self, mut bytes: &[u8]) -> Result<(), Fault> {
-        while !bytes.is_empty() {
+    pub(in crate::series) fn push(&mut self, bytes: &[u8]) -> Result<(), Fault> {
+        if self.waits() {
+            self.rest = [&self.rest, bytes].concat().into();
+            return Ok(());
+        }
+        let taken = self.gather(bytes)?;
+        self.rest = Bytes::copy_from_slice(&bytes[taken..]);
+        Ok(())
+    }
+
+    /// Whether a whole message waits to be unpacked.
+    pub(in crate::series) fn waits(&self) -> bool {
+        let mut body = self.body.iter();
+        !self.packed.is_empty() && body.all(|(body, length)| body.len() == *length)
+    }
+
+    /// Unpacks messages until there is a batch, or no whole one waits any more.
+    ///
+    /// # Errors
+    /// As for [`push`](Self::push).
+    pub(in crate::series) fn unpack(&mut self) -> Result<(), Fault> {
+        while self.ready.is_empty() && self.waits() {
+            self.decode()?;
+            let mut rest = std::mem::take(&mut self.rest);
+            let taken = self.gather(&rest)?;
+            rest.advance(taken);
+            self.rest = rest;
+        }
+        Ok(())
+    }
+
+    /// Takes bytes up to a whole message that is packed; how many.
+    fn gather(&mut self, all: &[u8]) -> Result<usize, Fault> {
+        let mut bytes = all;
+        while !bytes.is_empty() && !self.waits() {
             if self.ended {
                 return Err(broken("bytes follow its end"));
             }
@@ -55,7 +96,7 @@ impl Frames {
                 Some((body, length)) => {
                     let taken = bytes.len().min(*length - body.len());
                     body.extend_from_slice(&bytes[..taken]);
-                    if body.len() == *length {
+                    if body.len() == *length && self.packed.is_empty() {
                         self.decode()?;
                     }
                     taken
@@ -71,7 +112,7 @@ impl Frames {
             };
             bytes = &bytes[taken..];
         }
-        Ok(())
+        Ok(all.len() - bytes.len())
     }
 
     /// The next batch that is whole.
@@ -122,7 +163,7 @@ impl Frames {
             ));
         }
         let length = u32::from_le_bytes([a, b, c, d]) as usize;
-        self.bounded(length)?;
+        self.bounded(length, "")?;
         Ok(PREFIX + length - have)
     }
 
@@ -142,24 +183,45 @@ impl Frames {
             }
             _ => message.header_as_record_batch(),
         };
-        if batch.is_some_and(|batch| batch.compression().is_some()) {
-            let detail = "the buffers of a batch are compressed; write the stream without that, \
-                          and compress the body as a whole (Content-Encoding) if it pays";
-            return Err(Fault::whole(Code::UnsupportedMediaType, detail));
-        }
+        let packed = batch.filter(|batch| batch.compression().is_some());
+        let buffers = packed.and_then(|batch| batch.buffers());
+        let place = |buffer: &arrow_ipc::Buffer| {
+            let [from, length] = [buffer.offset(), buffer.length()].map(usize::try_from);
+            Some((from.ok()?, length.ok().filter(|length| *length > 0)?))
+        };
+        self.packed = buffers.iter().flatten().filter_map(place).collect();
         let length = usize::try_from(message.bodyLength())
             .map_err(|_| broken("a message has a negative length"))?;
-        self.bounded(length)?;
+        self.bounded(length, "")?;
         self.body = Some((MutableBuffer::new(length), length));
-        if length == 0 { self.decode() } else { Ok(()) }
+        if length == 0 {
+            // There is nothing to unpack, whatever it says.
+            self.packed.clear();
+            self.decode()
+        } else {
+            Ok(())
+        }
     }
 
-    fn bounded(&self, length: usize) -> Result<(), Fault> {
+    /// How many bytes the compressed buffers of a body will have, as each says before its own.
+    fn unpacked(&self, body: &[u8]) -> usize {
+        let each = self.packed.iter().map(|(from, length)| {
+            let prefix = body.get(*from..).and_then(<[u8]>::first_chunk);
+            match prefix.map(|prefix| i64::from_le_bytes(*prefix)) {
+                // It is not compressed after all; or there is none, which the decoder will find.
+                Some(-1) | None => *length,
+                Some(unpacked) => usize::try_from(unpacked).unwrap_or(0),
+            }
+        });
+        each.fold(0, usize::saturating_add)
+    }
+
+    fn bounded(&self, length: usize, unpacked: &str) -> Result<(), Fault> {
         if length <= self.most {
             return Ok(());
         }
         let detail = format!(
-            "a batch has {length} bytes; this service takes up to {} at once. Write smaller \
+            "a batch has {length} bytes{unpacked}; this service takes up to {} at once. Write smaller \
              batches, such as of 65536 rows",
             self.most
         );
@@ -168,6 +230,10 @@ impl Frames {
 
     /// Decodes a whole message.
     fn decode(&mut self) -> Result<(), Fault> {
+        if let Some((body, _)) = &self.body {
+            self.bounded(self.unpacked(body), " unpacked")?;
+        }
+        self.packed.clear();
         let head = Buffer::from_vec(std::mem::take(&mut self.head));
         // In a buffer of its own, which begins where a processor likes it to, columns need no copy.
         let body = self.body.take().map(|(body, _)| Buffer::from(body));
