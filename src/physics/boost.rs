@@ -10,7 +10,7 @@ use super::constants::SPEED_OF_LIGHT;
 use super::double_double::Dd;
 use super::error::Impossible;
 use super::pure_boost::{Boost, one_less_beta2};
-use super::real::{Real, Vec3, cross, exponent_spread, norm2, round, vector};
+use super::real::{Real, Vec3, exponent_spread, norm2, round, vector};
 use super::scale::Scale;
 
 /// The motion of the next frame as seen in the current one, in the form it was given.
@@ -152,12 +152,10 @@ impl Motion {
                 let (direction, length) = direction(d);
                 let beta = R::new(beta, context);
                 let root = ((one.clone() - beta.clone()) * (one.clone() + beta.clone())).sqrt();
-                let gamma_less_one = beta.square() / (root.clone() * (one.clone() + root.clone()));
                 Boost {
                     direction,
                     stretch: beta / (root.clone() * length),
                     gamma: one / root,
-                    gamma_less_one,
                 }
             }
             Motion::Gamma {
@@ -187,13 +185,10 @@ impl Motion {
                 let (direction, length) = direction(d);
                 let rapidity = R::new(rapidity, context);
                 let half = rapidity.scale2(-1).sinh();
-                let gamma_less_one = half.square().scale2(1);
-                let gamma = gamma_less_one.clone() + one;
                 Boost {
                     direction,
                     stretch: rapidity.sinh() / length,
-                    gamma,
-                    gamma_less_one,
+                    gamma: half.square().scale2(1) + one,
                 }
             }
         }
@@ -315,10 +310,15 @@ impl Motion {
                 angular_velocity,
                 position,
                 ..
-            } => cross(
-                &vector(*angular_velocity, context),
-                &vector(*position, context),
-            ),
+            } => {
+                let omega: Vec3<R> = vector(*angular_velocity, context);
+                let r: Vec3<R> = vector(*position, context);
+                // Not by `cross`: what is left where the two are nearly parallel counts in full.
+                std::array::from_fn(|i| {
+                    let (j, k) = ((i + 1) % 3, (i + 2) % 3);
+                    omega[j].clone() * r[k].clone() - omega[k].clone() * r[j].clone()
+                })
+            }
             _ => vector([0.0; 3], context),
         }
     }

@@ -48,6 +48,12 @@ impl FieldUnits {
     pub fn cb_over_e(self) -> Scale {
         self.b.times(Scale::ratio(SPEED_OF_LIGHT, 1)).over(self.e)
     }
+
+    /// The same as a number, and how many units of cB one unit of E is.
+    pub(super) fn ratios<R: Real>(self, context: R::Context) -> [R; 2] {
+        let ratio = self.cb_over_e();
+        [ratio, Scale::ONE.over(ratio)].map(|ratio| ratio.value(context))
+    }
 }
 
 /// E and cB in one unit, in the arithmetic R.
@@ -127,20 +133,20 @@ pub struct Kernel<R> {
 impl<R: Real> Kernel<R> {
     /// Prepares a net transformation for fields in these units.
     pub fn new(net: &Net<R>, units: FieldUnits, context: R::Context) -> Kernel<R> {
-        let ratio = units.cb_over_e().value::<R>(context);
+        let ratios = units.ratios(context);
         let turn = net.turn.as_ref().filter(|turn| !turn.is_identity());
         Kernel {
-            motion: net.boost.as_ref().map(|boost| Self::motion(boost, &ratio)),
+            motion: net.boost.as_ref().map(|boost| Self::motion(boost, &ratios)),
             matrix: turn.map(Quaternion::matrix),
-            cb_over_e: ratio.to_f64(),
+            cb_over_e: ratios[0].to_f64(),
         }
     }
 
-    /// d, k, p and q of a boost.
+    /// d, k, p and q of a boost; the ratios are those between the units, of cB to E and of E to cB.
     #[inline(always)]
-    pub(super) fn motion(boost: &Boost<R>, cb_over_e: &R) -> (Vec3<R>, R, R, R) {
+    pub(super) fn motion(boost: &Boost<R>, [cb_over_e, e_over_cb]: &[R; 2]) -> (Vec3<R>, R, R, R) {
         let p = boost.stretch.clone() * cb_over_e.clone();
-        let q = boost.stretch.clone() / cb_over_e.clone();
+        let q = boost.stretch.clone() * e_over_cb.clone();
         (boost.direction.clone(), boost.curvature(), p, q)
     }
 

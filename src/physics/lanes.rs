@@ -130,13 +130,10 @@ impl Boosts {
 
     #[inline(always)]
     pub(super) fn get<A: Arithmetic>(&self, i: usize) -> Boost<DoubleDouble<A>> {
-        let gamma = self.gamma.get(i);
         Boost {
             direction: get3(&self.direction, i),
             stretch: self.stretch.get(i),
-            gamma,
-            // Not kept apart: only boosts that are composed with others need all its digits.
-            gamma_less_one: gamma - DoubleDouble::from_f64(1.0),
+            gamma: self.gamma.get(i),
         }
     }
 

@@ -13,7 +13,7 @@ use super::boost::Motion;
 use super::double_double::Dd;
 use super::pure_boost::Boost;
 use super::quaternion::Quaternion;
-use super::real::{Real, norm2};
+use super::real::Real;
 use super::rotation::Turn;
 use super::uncertain::UncertainStep;
 
@@ -334,8 +334,7 @@ impl<R: Real> Spinor<R> {
     /// is the conjugate of Re q, and conj(Re q)·Im q = −norm·n·cosh(η/2) sinh(η/2).
     fn split(&self) -> (Boost<R>, Quaternion<R>) {
         let direction = self.re.conjugate().times(&self.im).v.map(|x| -x);
-        let gamma_less_one =
-            ((self.im.w.square() + norm2(&self.im.v)) / self.norm.clone()).scale2(1);
+        let gamma_less_one = (self.im.norm2() / self.norm.clone()).scale2(1);
         let gamma = gamma_less_one.clone() + gamma_less_one.of(1.0);
         let stretch = gamma.of(2.0) / self.norm.clone();
         // The length of the direction is free: keep it near one.
@@ -347,7 +346,6 @@ impl<R: Real> Spinor<R> {
                 direction,
                 stretch,
                 gamma,
-                gamma_less_one,
             },
             self.re.conjugate(),
         )

@@ -89,9 +89,7 @@ impl Pass {
     fn is_tame(&self) -> bool {
         let all = |numbers: &[Dd]| numbers.iter().all(|x| tame(x.hi));
         match self {
-            Pass::Boost(boost) => {
-                all(&boost.direction) && all(&[boost.stretch, boost.gamma, boost.gamma_less_one])
-            }
+            Pass::Boost(boost) => all(&boost.direction) && all(&[boost.stretch, boost.gamma]),
             Pass::Turn(turn, _) => tame(turn.w.hi) && all(&turn.v),
             Pass::Angle { axis, .. } => all(axis),
             Pass::Velocity { beta, .. } => tame(beta.hi),
@@ -146,7 +144,6 @@ impl Nets {
                     direction: boost.direction.map(Dd::by::<A>),
                     stretch: boost.stretch.by(),
                     gamma: boost.gamma.by(),
-                    gamma_less_one: boost.gamma_less_one.by(),
                 };
                 for i in 0..LANES {
                     self.boosts.set(i, boost.clone());
@@ -229,7 +226,7 @@ impl Nets {
             #[inline(always)]
             |i| {
                 let boost = self.boosts.get::<A>(i);
-                let motion = Kernel::motion(&boost, &units.cb_over_e);
+                let motion = Kernel::motion(&boost, &units.ratios);
                 (motion, factor * boost.gamma.hi)
             },
         );

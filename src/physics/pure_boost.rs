@@ -12,24 +12,18 @@ pub struct Boost<R> {
     pub stretch: R,
     /// γ.
     pub gamma: R,
-    /// γ − 1, to its own full precision.
-    pub gamma_less_one: R,
 }
 
 impl<R: Real> Boost<R> {
     /// By a velocity in units of `beta` times c.
     #[inline(always)]
     pub(super) fn by_velocity(velocity: Vec3<R>, beta: R) -> Boost<R> {
-        let one = beta.of(1.0);
         let root = one_less_beta2(&velocity, beta.clone()).sqrt();
-        let gamma = one.clone() / root.clone();
-        let beta2 = norm2(&velocity) * beta.square();
-        let gamma_less_one = beta2 / (root.clone() * (one + root.clone()));
+        let gamma = beta.of(1.0) / root;
         Boost {
             direction: velocity,
-            stretch: beta / root,
+            stretch: beta * gamma.clone(),
             gamma,
-            gamma_less_one,
         }
     }
 
@@ -39,7 +33,6 @@ impl<R: Real> Boost<R> {
             direction,
             stretch: gamma_beta / length,
             gamma,
-            gamma_less_one,
         }
     }
 
@@ -55,7 +48,12 @@ impl<R: Real> Boost<R> {
     /// k = s²/(γ+1) = (γ−1)/d².
     #[inline(always)]
     pub fn curvature(&self) -> R {
-        self.stretch.square() / (self.gamma.clone() + self.gamma.of(1.0))
+        self.stretch.square() / self.gamma.clone().sum(self.gamma.of(1.0))
+    }
+
+    /// γ − 1, to its own full precision.
+    pub fn gamma_less_one(&self) -> R {
+        self.curvature() * norm2(&self.direction)
     }
 
     /// γβ as a vector.
@@ -77,7 +75,6 @@ impl<R: Real> Boost<R> {
             direction: std::array::from_fn(|i| self.direction[i].to_dd()),
             stretch: self.stretch.to_dd(),
             gamma: self.gamma.to_dd(),
-            gamma_less_one: self.gamma_less_one.to_dd(),
         }
     }
 }

@@ -17,7 +17,7 @@ impl<R: Real> Quaternion<R> {
     /// The Hamilton product: the turn `other`, then this one, both about fixed axes.
     #[inline(always)]
     pub fn times(&self, other: &Quaternion<R>) -> Quaternion<R> {
-        let w = self.w.clone() * other.w.clone() - dot(&self.v, &other.v);
+        let w = (self.w.clone() * other.w.clone()).sum(-dot(&self.v, &other.v));
         let sum = add(&scale(&self.w, &other.v), &scale(&other.w, &self.v));
         Quaternion {
             w,
@@ -37,7 +37,7 @@ impl<R: Real> Quaternion<R> {
     /// |q|².
     #[inline(always)]
     pub fn norm2(&self) -> R {
-        self.w.square() + norm2(&self.v)
+        self.w.square().sum(norm2(&self.v))
     }
 
     /// |q|² R v: the vector carried along by the turn, and stretched.
@@ -45,7 +45,7 @@ impl<R: Real> Quaternion<R> {
     pub fn carry(&self, v: &Vec3<R>) -> Vec3<R> {
         let across = cross(&self.v, v);
         let along = dot(&self.v, v).scale2(1);
-        let own = self.w.square() - norm2(&self.v);
+        let own = self.w.square().sum(-norm2(&self.v));
         let twice = self.w.scale2(1);
         let sum = add(&scale(&own, v), &scale(&along, &self.v));
         add(&sum, &scale(&twice, &across))
@@ -64,24 +64,32 @@ impl<R: Real> Quaternion<R> {
         let [x2, y2, z2] = [x.square(), y.square(), z.square()];
         // w² + a² − b² − c² on the diagonal; beside it 2(outer ± inner), where R⁻¹ has the sign
         // of w turned against R.
-        let own = |a: &R, b: &R, c: &R| w2.clone() + a.clone() - b.clone() - c.clone();
+        let own = |a: &R, b: &R, c: &R| {
+            let (more, less) = (w2.clone().sum(a.clone()), b.clone().sum(c.clone()));
+            more.sum(-less)
+        };
         let (xy, wz) = (x.clone() * y.clone(), self.w.clone() * z.clone());
         let (yz, wx) = (y.clone() * z.clone(), self.w.clone() * x.clone());
         let (zx, wy) = (z.clone() * x.clone(), self.w.clone() * y.clone());
-        let over = |a: R| a / norm2.clone();
+        let per_norm2 = norm2.of(1.0) / norm2;
+        let over = |a: R| a * per_norm2.clone();
         let twice = |a: R| over(a.scale2(1));
         [
             [
                 over(own(&x2, &y2, &z2)),
-                twice(xy.clone() + wz.clone()),
-                twice(zx.clone() - wy.clone()),
+                twice(xy.clone().sum(wz.clone())),
+                twice(zx.clone().sum(-wy.clone())),
             ],
             [
-                twice(xy - wz),
+                twice(xy.sum(-wz)),
                 over(own(&y2, &z2, &x2)),
-                twice(yz.clone() + wx.clone()),
+                twice(yz.clone().sum(wx.clone())),
             ],
-            [twice(zx + wy), twice(yz - wx), over(own(&z2, &x2, &y2))],
+            [
+                twice(zx.sum(wy)),
+                twice(yz.sum(-wx)),
+                over(own(&z2, &x2, &y2)),
+            ],
         ]
     }
 

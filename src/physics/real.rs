@@ -61,6 +61,11 @@ pub trait Real:
             self.clone()
         }
     }
+    /// The sum, its error measured by the terms. `+` is as exact where they cancel, and slower.
+    #[inline(always)]
+    fn sum(self, other: Self) -> Self {
+        self + other
+    }
     /// The square.
     fn square(&self) -> Self {
         self.clone() * self.clone()
@@ -74,7 +79,7 @@ pub trait Real:
 /// A vector of three components on Cartesian axes.
 pub type Vec3<R> = [R; 3];
 
-/// a × b.
+/// a × b, its error measured by the terms, like that of all sums here.
 #[inline(always)]
 pub fn cross<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> Vec3<R> {
     [
@@ -87,13 +92,15 @@ pub fn cross<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> Vec3<R> {
 /// a b − c d.
 #[inline(always)]
 fn minor<R: Real>(a: &R, b: &R, c: &R, d: &R) -> R {
-    a.clone() * b.clone() - c.clone() * d.clone()
+    (a.clone() * b.clone()).sum(-(c.clone() * d.clone()))
 }
 
 /// a · b.
 #[inline(always)]
 pub fn dot<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> R {
-    a[0].clone() * b[0].clone() + a[1].clone() * b[1].clone() + a[2].clone() * b[2].clone()
+    let first = a[0].clone() * b[0].clone();
+    let second = a[1].clone() * b[1].clone();
+    first.sum(second).sum(a[2].clone() * b[2].clone())
 }
 
 /// |a|².
@@ -116,9 +123,9 @@ pub fn scale<R: Real>(s: &R, [x, y, z]: &Vec3<R>) -> Vec3<R> {
 #[inline(always)]
 pub fn add<R: Real>([a, b, c]: &Vec3<R>, [x, y, z]: &Vec3<R>) -> Vec3<R> {
     [
-        a.clone() + x.clone(),
-        b.clone() + y.clone(),
-        c.clone() + z.clone(),
+        a.clone().sum(x.clone()),
+        b.clone().sum(y.clone()),
+        c.clone().sum(z.clone()),
     ]
 }
 
@@ -126,9 +133,9 @@ pub fn add<R: Real>([a, b, c]: &Vec3<R>, [x, y, z]: &Vec3<R>) -> Vec3<R> {
 #[inline(always)]
 pub fn sub<R: Real>([a, b, c]: &Vec3<R>, [x, y, z]: &Vec3<R>) -> Vec3<R> {
     [
-        a.clone() - x.clone(),
-        b.clone() - y.clone(),
-        c.clone() - z.clone(),
+        a.clone().sum(-x.clone()),
+        b.clone().sum(-y.clone()),
+        c.clone().sum(-z.clone()),
     ]
 }
 

@@ -97,8 +97,8 @@ type Parts<A> = (Option<(Motion<A>, f64)>, Option<[Vec3<DoubleDouble<A>>; 3]>);
 /// What the units of a series come to.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Units<A> {
-    /// How many units of E one unit of cB is.
-    pub(super) cb_over_e: DoubleDouble<A>,
+    /// How many units of E one unit of cB is, and the other way round.
+    pub(super) ratios: [DoubleDouble<A>; 2],
     /// What restates E' and B' in the unit of the answer.
     pub(super) factors: [DoubleDouble<A>; 2],
     /// Whether sums go into the fields already.
@@ -113,7 +113,7 @@ impl Units<Portable> {
             calibration,
         } = setting;
         Units {
-            cb_over_e: units.cb_over_e().value(()),
+            ratios: units.ratios(()),
             factors: [units.e.over(to.e).value(()), units.b.over(to.b).value(())],
             calibrated: calibration.iter().any(Option::is_some),
         }
@@ -123,7 +123,7 @@ impl Units<Portable> {
     #[inline(always)]
     pub(super) fn by<A>(self) -> Units<A> {
         Units {
-            cb_over_e: self.cb_over_e.by(),
+            ratios: self.ratios.map(DoubleDouble::by),
             factors: self.factors.map(DoubleDouble::by),
             calibrated: self.calibrated,
         }
@@ -198,7 +198,7 @@ impl Answers {
         let (mut e_answer, mut b_answer) = ([[0.0; LANES]; 3], [[0.0; LANES]; 3]);
         // For the roundings in the sizes themselves.
         const KEPT_SURELY: f64 = KEPT * 1.001;
-        let ratio = units.cb_over_e.hi;
+        let ratio = units.ratios[0].hi;
         for i in 0..LANES {
             let (motion, matrix) = parts(i);
             let (motion, chained) = motion.unzip();

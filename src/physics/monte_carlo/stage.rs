@@ -213,7 +213,7 @@ fn directed(motion: &Motion, sign: f64, value: f64, direction: f64) -> Change {
         exact: Directed {
             axes: [n, across, other].map(|v| round(&v)),
             half: [
-                half(boost.gamma_less_one) * along,
+                half(boost.gamma_less_one()) * along,
                 half(boost.gamma + Dd::from_f64(1.0)),
             ],
             speed,
