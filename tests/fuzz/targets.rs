@@ -14,7 +14,7 @@ use lodeframe::{
     document::{Fault, Node, from_query},
     frames,
     question::{Deployment, Question},
-    series::{Counts, Format, Intake, Limits, Outlet, Series},
+    series::{Counts, Format, Intake, Job, Limits, Outlet, Series},
 };
 
 /// A question as JSON.
@@ -137,17 +137,22 @@ fn restated(
     let mut intake = Intake::new(Arc::new(series), input, output, limits);
     let mut answer = Vec::new();
     let mut all = || {
+        let mut accept = |job: Job| {
+            answer.extend(outlet.accept(job.run()).concat());
+            !outlet.stopped()
+        };
         for piece in rows.chunks(piece.min(rows.len().max(1))) {
             intake.push(piece);
-            if let Some(job) = intake.job(1)? {
-                answer.extend(outlet.accept(job.run()).concat());
-            }
-            if outlet.stopped() {
-                return Ok(());
+            while let Some(job) = intake.job(1)? {
+                if !accept(job) {
+                    return Ok(());
+                }
             }
         }
-        if let Some(job) = intake.last()? {
-            answer.extend(outlet.accept(job.run()).concat());
+        while let Some(job) = intake.last()? {
+            if !accept(job) {
+                return Ok(());
+            }
         }
         Ok(())
     };
