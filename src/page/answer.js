@@ -19,8 +19,8 @@ export function showAnswer(question, answer, full) {
 
 /** The answer in one sentence, for screen readers and as the text of its picture. */
 export function sentence(answer) {
-  const vector = (v) => `(${v.map((x) => rounded(x)).join(", ")})`;
-  return `E′ is ${vector(answer.e)} ${answer.units.e}, B′ is ${vector(answer.b)} ${answer.units.b}.`;
+  const vector = (field) => `(${answer[field].map((x, i) => rounded(x, answer.uncertainty?.[field][i])).join(", ")}) ${answer.units[field]}`;
+  return `E′ is ${vector("e")}, B′ is ${vector("b")}.`;
 }
 
 function table(caption, head, rows) {

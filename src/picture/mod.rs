@@ -10,6 +10,7 @@ mod motion;
 mod number;
 mod plot;
 mod reading;
+mod shown;
 mod space;
 mod style;
 mod sweep;

@@ -1,4 +1,4 @@
-//! Numbers as people read them: in few digits.
+//! Numbers as people read them: few digits, or as many as the uncertainty supports.
 
 /// A number with this many significant digits, without trailing zeros.
 pub(super) fn short(value: f64, digits: usize) -> String {
@@ -14,12 +14,18 @@ pub(super) fn short(value: f64, digits: usize) -> String {
     format!("{rounded:e}")
 }
 
-/// A component that may be missing.
-pub(super) fn component(value: Option<f64>) -> String {
-    value.map_or("missing".into(), |value| short(value, 6))
-}
-
-/// A vector as (x, y, z).
-pub(super) fn vector(v: [Option<f64>; 3]) -> String {
-    format!("({})", v.map(component).join(", "))
+/// A value that may be missing, to six digits or to the second digit of its standard uncertainty.
+pub(super) fn component(value: Option<f64>, uncertainty: Option<f64>) -> String {
+    let Some(value) = value else {
+        return "missing".into();
+    };
+    let size = |x: f64| libm::floor(libm::log10(x.abs()));
+    let digits = match uncertainty {
+        Some(u) if u > 0.0 && value != 0.0 => (size(value) - size(u) + 2.0).min(6.0),
+        _ => 6.0,
+    };
+    match digits >= 1.0 {
+        true => short(value, digits as usize),
+        false => "0".into(),
+    }
 }

@@ -4,112 +4,34 @@ use std::sync::Arc;
 
 use svg::node::element::Group;
 
-use super::draw::{Anchor, Point, line, sheet, text};
+use super::draw::{Anchor, line, sheet, text};
 use super::motion::{motion, moves, turned_axes};
-use super::number::{component, short, vector};
-use super::space::{Pen, View, length};
-use super::ticks::round_up;
-use crate::answer::{Answer, Ellipsoid, NetTransformation};
+use super::number::short;
+use super::shown::{PRIMES, Shown, Side};
+use super::space::View;
+use crate::answer::{Answer, NetTransformation};
 use crate::physics::resolved::Resolved;
 use crate::question::Question;
 use crate::units::Quantity;
 
 const WIDTH: f64 = 400.0;
 const PANEL: f64 = 196.0;
-/// Ellipses longer than this many half axes would leave the panel, and are not drawn.
-const LARGEST_OUTLINE: f64 = 1.5;
-
-/// Components, as far as they are known.
-type Known = [Option<f64>; 3];
-
-/// One of the two fields, before and after, in the unit of the answer.
-struct Shown {
-    name: &'static str,
-    quantity: &'static str,
-    unit: String,
-    before: Known,
-    after: Known,
-    /// Coverage ellipsoids of the two, where they are known.
-    coverage: [Option<Ellipsoid>; 2],
-    /// What the half axes stand for.
-    reach: f64,
-    colour: &'static str,
-    dashes: &'static str,
-}
-
-impl Shown {
-    fn new(
-        question: &Question,
-        quantity: Quantity,
-        [before, after]: [Known; 2],
-        coverage: [Option<Ellipsoid>; 2],
-    ) -> Shown {
-        let electric = quantity == Quantity::E;
-        let largest = [before, after]
-            .into_iter()
-            .filter_map(known)
-            .map(length)
-            .fold(0.0, f64::max);
-        Shown {
-            name: if electric { "E" } else { "B" },
-            quantity: if electric {
-                "electric field E"
-            } else {
-                "magnetic flux density B"
-            },
-            unit: question.answer_units.get(quantity).code.into(),
-            before,
-            after,
-            coverage,
-            reach: if largest > 0.0 {
-                round_up(largest)
-            } else {
-                1.0
-            },
-            colour: if electric { "two" } else { "one" },
-            dashes: if electric { "" } else { "dashed" },
-        }
-    }
-
-    fn arrow(&self, view: &View, which: usize) -> Option<Group> {
-        let (v, prime) = [(self.before, ""), (self.after, "′")][which];
-        let label = format!("{}{prime}", self.name);
-        let pen = Pen {
-            colour: self.colour,
-            dashes: self.dashes,
-            label,
-        };
-        let v = known(v)?.map(|x| x / self.reach);
-        let arrow = view.arrow(v, &pen);
-        let Some(ellipsoid) = &self.coverage[which] else {
-            return Some(arrow);
-        };
-        let half_axes: [[f64; 3]; 3] = std::array::from_fn(|i| {
-            let length = ellipsoid.half_axes[i] / self.reach;
-            ellipsoid.directions[i].map(|x| x * length)
-        });
-        let longest = ellipsoid.half_axes[0] / self.reach;
-        if longest > LARGEST_OUTLINE {
-            return Some(arrow);
-        }
-        let class = format!("region full-{0} {0}", self.colour);
-        Some(arrow.add(view.outline(v, half_axes, &class)))
-    }
-}
 
 /// The picture of an answered question.
 pub fn reading(question: &Question, answer: &Answer) -> String {
     let read = as_read(question);
-    let coverage = |answer: Option<&Answer>| match answer.and_then(|a| a.uncertainty.as_ref()) {
-        Some(found) => [found.coverage.e.clone(), found.coverage.b.clone()],
-        None => [None, None],
-    };
-    let ([e0, b0], [e1, b1]) = (coverage(read.as_ref()), coverage(Some(answer)));
-    let (e, b) = read.map_or(([None; 3], [None; 3]), |read| (read.e, read.b));
-    let shown = [
-        Shown::new(question, Quantity::E, [e, answer.e], [e0, e1]),
-        Shown::new(question, Quantity::B, [b, answer.b], [b0, b1]),
-    ];
+    let shown = [Quantity::E, Quantity::B].map(|quantity| {
+        // What was read is shown as it was read.
+        let before = Side {
+            uncertainties: [None; 4],
+            ..Side::of(read.as_ref(), quantity)
+        };
+        Shown::new(
+            question,
+            quantity,
+            [before, Side::of(Some(answer), quantity)],
+        )
+    });
     let view = |left: f64| View {
         origin: (left + PANEL / 2.0, 136.0),
         unit: 88.0,
@@ -170,7 +92,7 @@ fn scales(
         .map(|field| format!("{} {} {}", field.name, short(field.reach, 3), field.unit));
     let uncertain = shown
         .iter()
-        .any(|field| field.coverage.iter().any(Option::is_some));
+        .any(|field| field.sides.iter().any(|side| side.coverage.is_some()));
     let ellipses = if uncertain {
         "; ellipses: 95 % coverage"
     } else {
@@ -195,24 +117,22 @@ fn table(mut content: Group, shown: &[Shown; 2], top: f64) -> Group {
         content = content.add(text("soft", (x, top), Anchor::End, name));
     }
     content = content.add(line("grid", (10.0, bottom), (WIDTH - 10.0, bottom)));
-    let rows = shown
-        .iter()
-        .flat_map(|field| [(field, "", field.before), (field, "′", field.after)]);
-    for (i, (field, prime, v)) in rows.enumerate() {
+    let rows = shown.iter().flat_map(|field| {
+        field
+            .sides
+            .iter()
+            .zip(PRIMES)
+            .map(move |side| (field, side))
+    });
+    for (i, (field, (side, prime))) in rows.enumerate() {
         let y = top + 22.0 + 18.0 * i as f64;
         let full = format!("bold full-{}", field.colour);
         let name = format!("{}{prime}", field.name);
-        let at: Point = (10.0, y);
-        content = content.add(text(&full, at, Anchor::Start, name)).add(text(
-            "soft",
-            (28.0, y),
-            Anchor::Start,
-            &*field.unit,
-        ));
-        let size = known(v).map(length);
-        let cells = [v[0], v[1], v[2], size];
-        for (value, x) in cells.into_iter().zip(COLUMNS) {
-            content = content.add(text("number", (x, y), Anchor::End, component(value)));
+        content = content
+            .add(text(&full, (10.0, y), Anchor::Start, name))
+            .add(text("soft", (28.0, y), Anchor::Start, &*field.unit));
+        for (words, x) in side.numbers().into_iter().zip(COLUMNS) {
+            content = content.add(text("number", (x, y), Anchor::End, words));
         }
     }
     content
@@ -220,12 +140,13 @@ fn table(mut content: Group, shown: &[Shown; 2], top: f64) -> Group {
 
 fn about(shown: &[Shown; 2], question: &Question, net: &NetTransformation) -> String {
     let field = |field: &Shown| {
+        let [before, after] = field.sides.each_ref().map(|side| {
+            let [x, y, z, _] = side.numbers();
+            format!("({x}, {y}, {z}) {}", field.unit)
+        });
         format!(
-            "The {} is {} {unit} as read and {} {unit} in the target frame.",
-            field.quantity,
-            vector(field.before),
-            vector(field.after),
-            unit = field.unit,
+            "The {} is {before} as read and {after} in the target frame.",
+            field.quantity
         )
     };
     format!(
@@ -234,11 +155,4 @@ fn about(shown: &[Shown; 2], question: &Question, net: &NetTransformation) -> St
         field(&shown[1]),
         moves(question, net)
     )
-}
-
-fn known(v: Known) -> Option<[f64; 3]> {
-    match v {
-        [Some(x), Some(y), Some(z)] => Some([x, y, z]),
-        _ => None,
-    }
 }

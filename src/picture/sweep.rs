@@ -5,7 +5,7 @@ use svg::node::element::Group;
 use super::band::extent;
 use super::draw::{Anchor, sheet, text};
 use super::mark::Mark;
-use super::number::{self, short};
+use super::number::{component, short};
 use super::plot::{Area, Axis, Curve, plot};
 use crate::sweep::{Columns, Division, Swept};
 
@@ -79,7 +79,7 @@ fn curves<'a>(name: &str, of: &'a Columns, uncertain: Option<&'a Columns>) -> [C
         values: column(of),
         uncertainties: uncertain.map(column),
     };
-    let component = |component| format!("{name}′{component}");
+    let named = |axis| format!("{name}′{axis}");
     [
         curve(
             format!("|{name}′|"),
@@ -88,9 +88,9 @@ fn curves<'a>(name: &str, of: &'a Columns, uncertain: Option<&'a Columns>) -> [C
             "thick",
             Mark::None,
         ),
-        curve(component('x'), |c| &c.x, "one", "", Mark::Disc),
-        curve(component('y'), |c| &c.y, "two", "dashed", Mark::Square),
-        curve(component('z'), |c| &c.z, "three", "dotted", Mark::Triangle),
+        curve(named('x'), |c| &c.x, "one", "", Mark::Disc),
+        curve(named('y'), |c| &c.y, "two", "dashed", Mark::Square),
+        curve(named('z'), |c| &c.z, "three", "dotted", Mark::Triangle),
     ]
 }
 
@@ -104,13 +104,13 @@ fn about(swept: &Swept) -> String {
             .named()
             .into_iter()
             .enumerate()
-            .map(|(n, (component, values))| {
+            .map(|(n, (name, values))| {
                 let end = |i: usize| {
-                    let value = number::component(values[i]);
                     let known = uncertain.and_then(|columns| columns[n].1[i]);
+                    let value = component(values[i], known);
                     known.map_or(value.clone(), |u| format!("{value} ± {}", short(u, 2)))
                 };
-                format!("{component} from {} to {}", end(0), end(last))
+                format!("{name} from {} to {}", end(0), end(last))
             });
         format!(
             "{name}′ in {unit}: {}.",

@@ -46,6 +46,23 @@ def test_the_table_of_a_reading_shows_the_answer(service, way):
         assert [six(x) for x in shown] == [six(x) for x in vector], row
 
 
+def test_the_table_has_the_digits_that_the_uncertainties_support(service):
+    """To the second digit of the standard uncertainty (JCGM 100:2008, 7.2.6); what was read stays as it was read."""
+    question = READING | WAYS["motion"] | {"uncertainty": {"e": [0.34, 20, 9], "b": [12, 5000, 30]}}
+    answer, words = service.ask(question), texts(draw(service, question))
+    shown = {}
+    for field, row in (("e", "E′"), ("b", "B′")):
+        start = len(words) - 1 - words[::-1].index(row)
+        values = [*answer[field], math.hypot(*answer[field])]
+        known = [*answer["uncertainty"][field], answer["uncertainty"]["magnitudes"][field]["uncertainty"]]
+        shown[field] = words[start + 2:start + 6]
+        for word, value, u in zip(shown[field], values, known):
+            assert float(word) == round(value, 1 - math.floor(math.log10(u))), (word, value, u)
+    start = len(words) - 1 - words[::-1].index("B")
+    assert words[start + 2:start + 5] == ["1200", "-450", "44700"]
+    assert shown["e"][0] == "12.5" and shown["b"][2] == "44700"
+
+
 @pytest.mark.parametrize("way", WAYS)
 def test_arrows_point_where_the_field_does(service, way):
     """A parallel projection is linear: the same field twice as large is drawn twice as long on one scale.
@@ -185,7 +202,9 @@ def test_bands_are_said_in_words_and_differ_by_their_edges(service):
     assert "bands: ± one standard uncertainty" in texts(picture)
     about = next("".join(child.itertext()) for child in picture if child.tag == f"{SVG}desc")
     value, known = re.search(r"E′ in mV/m:.*? y from \S+ ± \S+ to (\S+) ± ([^\s,]+),", about).groups()
-    assert [six(float(value)), float(known)] == [six(columns["e"]["y"][-1]), float(f"{columns['uncertainty']['e']['y'][-1]:.2g}")]
+    v, u = columns["e"]["y"][-1], columns["uncertainty"]["e"]["y"][-1]
+    last = 1 - math.floor(math.log10(u))
+    assert [float(value), float(known)] == [round(v, last), round(u, last)]
     assert "one standard uncertainty" in about
     edges = [line.get("class").split()[1:] for line in picture.iter(f"{SVG}polyline") if line.get("class").startswith("edge")]
     assert len({tuple(words[1:]) for words in edges[:8]}) == 4
