@@ -141,9 +141,13 @@ impl Outlet {
 }
 
 /// All of it in one piece, if there is any.
-fn pieces(bytes: Vec<u8>) -> Vec<Bytes> {
+fn pieces(mut bytes: Vec<u8>) -> Vec<Bytes> {
     if bytes.is_empty() {
         return Vec::new();
+    }
+    // Where nobody reads, what waits counts by its bytes, not by the room they were written in.
+    if bytes.capacity() > bytes.len() + bytes.len() / 8 {
+        bytes.shrink_to_fit();
     }
     vec![bytes.into()]
 }

@@ -103,7 +103,8 @@ def test_nothing_is_lost_while_replicas_are_killed(tmp_path, asked, long, figure
     assert [loss for thread in threads for loss in thread.lost] == []
     assert [fault for thread in threads for fault in thread.wrong] == []
     assert complaints == []
-    assert total > 10 * seconds and kills >= seconds - 1
+    # Each kill takes its own time beside the second between two.
+    assert total > 10 * seconds and kills >= 0.9 * seconds
 
 
 def answer(replica, question):

@@ -160,6 +160,8 @@ impl Drive {
         let (depth, idle) = (state.pool.threads() + 1, state.config.idle_timeout);
         let mut ended = false;
         loop {
+            // What waits for a client that reads slowly is bounded by few blocks under way.
+            let depth = if self.unread.is_half_full() { 1 } else { depth };
             let mut room = self.working.len() < depth && !self.unread.is_full();
             if room && !ended {
                 ended = self.read_what_is_there().await?;

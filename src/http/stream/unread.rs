@@ -78,6 +78,11 @@ impl Unread {
         self.shared.bytes.load(Ordering::Relaxed) >= self.most
     }
 
+    /// Whether half as much waits, or more.
+    pub(super) fn is_half_full(&self) -> bool {
+        self.shared.bytes.load(Ordering::Relaxed) >= self.most / 2
+    }
+
     /// Waits until some of it was read.
     pub(super) async fn fewer(&self) {
         self.shared.fewer.notified().await;
