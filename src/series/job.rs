@@ -49,10 +49,6 @@ pub(super) enum Rows {
     Batch(RecordBatch),
 }
 
-/// Rows of a batch that are solved together: few enough that their columns stay in the caches.
-/// Not a multiple of 512, so that columns do not fall on each other there.
-const TOGETHER: usize = 2000;
-
 impl Job {
     /// How many bytes of rows it holds.
     pub fn bytes(&self) -> usize {
@@ -107,9 +103,7 @@ impl Plan {
             }
             Input::Arrow(..) => unreachable!("its rows come in batches"),
         }
-        let mut sheet = Sheet::default();
-        self.print(block, &carried, &mut sheet, done);
-        self.finish(sheet, done);
+        self.print(block, &carried, done);
     }
 
     fn batch(&self, batch: &RecordBatch, done: &mut Done) {
@@ -121,29 +115,14 @@ impl Plan {
             .anew
             .as_ref()
             .map_or(0, |(_, columns)| columns.cells.len());
-        let sheets = table.open(batch, cells);
-        let mut sheet = Sheet::with_rows(batch.num_rows());
-        let mut from = 0;
-        while from < batch.num_rows() && !done.stopped {
-            let rows = TOGETHER.min(batch.num_rows() - from);
-            let mut block = sheets.block(series, from, rows);
-            self.solve(&mut block);
-            if self.anew.is_none() {
-                sheet.add(block, &Carried::new(0), series.stop, done);
-            } else {
-                // Rows of a block count from its own first one.
-                let (places, before) = (done.numbers.len(), done.counts.read as usize);
-                self.print(block, &sheets.carried(from, rows), &mut sheet, done);
-                done.numbers[places..]
-                    .iter_mut()
-                    .for_each(|(_, row)| *row += before);
-            }
-            from += rows;
-        }
+        let (sheets, rows) = (table.open(batch, cells), batch.num_rows());
+        let mut block = sheets.block(series, rows);
+        self.solve(&mut block);
         if self.anew.is_none() {
+            let sheet = Sheet::of(block, &Carried::new(0), series.stop, done);
             done.batch = Some(answered_in_place(batch, &table.header, schema, sheet));
         } else {
-            self.finish(sheet, done);
+            self.print(block, &sheets.carried(rows), done);
         }
     }
 
@@ -160,20 +139,16 @@ impl Plan {
     }
 
     /// Prints the rows of a block in another format than theirs.
-    fn print(&self, block: Block, carried: &Carried, sheet: &mut Sheet, done: &mut Done) {
+    fn print(&self, block: Block, carried: &Carried, done: &mut Done) {
         let stop = self.series.stop;
         match &self.anew {
             Some((Format::Ndjson, columns)) => print::ndjson(columns, &block, carried, stop, done),
             Some((Format::Csv, columns)) => print::csv(columns, &block, carried, stop, done),
-            Some((Format::Arrow, _)) => sheet.add(block, carried, stop, done),
+            Some((Format::Arrow, columns)) => {
+                let sheet = Sheet::of(block, carried, stop, done);
+                done.batch = Some(sheet.batch(columns));
+            }
             None => {}
-        }
-    }
-
-    /// Rows that go to batches from another format.
-    fn finish(&self, sheet: Sheet, done: &mut Done) {
-        if let Some((Format::Arrow, columns)) = &self.anew {
-            done.batch = Some(sheet.batch(columns));
         }
     }
 }

@@ -17,6 +17,10 @@ use crate::document::{Code, Fault};
 /// The bytes that begin a message: a mark, and the length of what describes it.
 const PREFIX: usize = 8;
 const MARK: [u8; 4] = [0xff; 4];
+/// Rows of a larger batch that are answered together: few enough that their columns stay in the
+/// caches of a core and are allocated from memory at hand. Not a multiple of 512, so that columns
+/// do not fall on each other there.
+const TOGETHER: usize = 4000;
 
 /// Takes bytes and gives batches.
 #[derive(Debug)]
@@ -115,9 +119,16 @@ impl Frames {
         Ok(all.len() - bytes.len())
     }
 
-    /// The next batch that is whole.
+    /// The next rows of whole batches.
     pub(in crate::series) fn next(&mut self) -> Option<RecordBatch> {
-        self.ready.pop_front()
+        let batch = self.ready.pop_front()?;
+        let rows = batch.num_rows();
+        if rows <= TOGETHER {
+            return Some(batch);
+        }
+        self.ready
+            .push_front(batch.slice(TOGETHER, rows - TOGETHER));
+        Some(batch.slice(0, TOGETHER))
     }
 
     /// Whether a whole batch waits.

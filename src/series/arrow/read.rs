@@ -121,8 +121,8 @@ impl Table {
 }
 
 impl Sheets {
-    /// Some rows as a block.
-    pub(in crate::series) fn block(&self, series: &Series, from: usize, rows: usize) -> Block {
+    /// The rows as a block.
+    pub(in crate::series) fn block(&self, series: &Series, rows: usize) -> Block {
         let takes = Takes::of(series);
         let missing = |wanted: bool| {
             if wanted {
@@ -139,9 +139,12 @@ impl Sheets {
             field: std::array::from_fn(|_| missing(true)),
             ..Block::default()
         };
-        let mut standard: [Vec<f64>; 6] = std::array::from_fn(|_| missing(true));
+        let uncertain = [0, 3].map(|first| {
+            let wanted = Role::Uncertainty(first);
+            self.columns.iter().any(|(role, _)| *role == wanted)
+        });
+        let mut standard: [Vec<f64>; 6] = std::array::from_fn(|_| missing(uncertain != [false; 2]));
         for (role, column) in &self.columns {
-            let column = column.slice(from, rows);
             let place = match role {
                 Role::Field(i) => &mut block.field[*i],
                 Role::Velocity(i) => &mut block.velocity[*i],
@@ -149,20 +152,17 @@ impl Sheets {
                 Role::Angle => &mut block.angle,
                 Role::Uncertainty(i) => &mut standard[*i],
                 Role::Time => {
-                    read_times(&column, series.clock, &mut block);
+                    read_times(column, series.clock, &mut block);
                     continue;
                 }
             };
             let column = column.as_primitive::<Float64Type>();
             place.copy_from_slice(column.values());
-            for row in (0..rows).filter(|row| column.is_null(*row)) {
-                place[row] = f64::NAN;
+            if let Some(nulls) = column.nulls() {
+                let missing = (0..rows).filter(|row| nulls.is_null(*row));
+                missing.for_each(|row| place[row] = f64::NAN);
             }
         }
-        let uncertain = [0, 3].map(|first| {
-            let wanted = Role::Uncertainty(first);
-            self.columns.iter().any(|(role, _)| *role == wanted)
-        });
         for row in (0..rows).filter(|_| uncertain != [false; 2]) {
             let at = |columns: &[Vec<f64>; 6]| columns.each_ref().map(|column| column[row]);
             match uncertainty::of_columns(&at(&block.field), &at(&standard), uncertain) {
@@ -173,8 +173,8 @@ impl Sheets {
         block
     }
 
-    /// What goes along of some rows to another format.
-    pub(in crate::series) fn carried(&self, from: usize, rows: usize) -> Carried {
+    /// What goes along to another format.
+    pub(in crate::series) fn carried(&self, rows: usize) -> Carried {
         let mut carried = Carried::new(self.cells.len());
         let options = FormatOptions::default();
         let formatters: Vec<Option<ArrayFormatter>> = self
@@ -182,7 +182,7 @@ impl Sheets {
             .iter()
             .map(|cell| ArrayFormatter::try_new(cell.as_ref()?, &options).ok())
             .collect();
-        for row in from..from + rows {
+        for row in 0..rows {
             for (cell, formatter) in self.cells.iter().zip(&formatters) {
                 let given = cell.as_ref().is_some_and(|cell| cell.is_valid(row));
                 let text = formatter.as_ref().filter(|_| given);

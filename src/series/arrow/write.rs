@@ -14,61 +14,57 @@ use super::super::outlet::Done;
 use super::super::print::{Columns, each_row, noted};
 use super::super::problem;
 
-/// Answers gathered row by row for one batch.
-#[derive(Debug, Default)]
+/// The answers of a block, as far as a bad row did not end it.
+#[derive(Debug)]
 pub(in crate::series) struct Sheet {
-    /// The field, and its uncertainties.
+    rows: usize,
+    /// The field, and its uncertainties where there are any.
     answers: [Vec<f64>; 12],
-    notices: Vec<Option<String>>,
-    problems: Vec<Option<String>>,
+    /// The rows that have some.
+    notices: Vec<(usize, String)>,
+    problems: Vec<(usize, String)>,
     cells: Vec<Vec<Option<String>>>,
 }
 
 impl Sheet {
-    /// With room for so many rows.
-    pub(in crate::series) fn with_rows(rows: usize) -> Sheet {
-        Sheet {
-            answers: std::array::from_fn(|_| Vec::with_capacity(rows)),
-            problems: Vec::with_capacity(rows),
-            ..Sheet::default()
-        }
-    }
-
-    /// Adds the rows of a block, with what goes along from another format.
-    pub(in crate::series) fn add(
-        &mut self,
+    /// Takes the rows of a block, with what goes along from another format.
+    pub(in crate::series) fn of(
         block: Block,
         carried: &Carried,
         stop: bool,
         done: &mut Done,
-    ) {
-        self.cells.resize_with(carried.columns, Vec::new);
-        let before = done.counts.read;
+    ) -> Sheet {
+        let mut cells = vec![Vec::new(); carried.columns];
+        let (mut rows, mut notices, mut problems) = (0, Vec::new(), Vec::new());
         each_row(&block, stop, done, |row, faults, _| {
-            for (i, cells) in self.cells.iter_mut().enumerate() {
+            for (i, cells) in cells.iter_mut().enumerate() {
                 let cell = carried.cell(row, i);
                 cells.push(cell.map(|text| String::from_utf8_lossy(text).into_owned()));
             }
-            if !block.notices.is_empty() {
-                self.notices.resize(self.problems.len(), None);
-                let codes = noted(&block, row);
-                let given = faults.is_none() && !codes.is_empty();
-                self.notices.push(given.then_some(codes));
+            if let Some(faults) = faults {
+                problems.push((row, problem::as_text(faults)));
+            } else if !block.notices(row).is_empty() {
+                notices.push((row, noted(&block, row)));
             }
-            self.problems.push(faults.map(problem::as_text));
+            rows += 1;
         });
-        let rows = (done.counts.read - before) as usize;
-        if !block.standard.is_empty() || !self.answers[6].is_empty() {
-            // Rows before these had none.
-            let before = before_here(&self.answers);
-            for (i, all) in self.answers[6..].iter_mut().enumerate() {
-                all.resize(before, f64::NAN);
+        let mut answers: [Vec<f64>; 12] = Default::default();
+        if !block.standard.is_empty() {
+            for (i, all) in answers[6..].iter_mut().enumerate() {
                 let standard = |row| block.standard(row).map_or(f64::NAN, |known| known[i]);
                 all.extend((0..rows).map(standard));
             }
         }
-        for (all, column) in self.answers.iter_mut().zip(block.field) {
-            all.extend_from_slice(&column[..rows]);
+        for (all, mut column) in answers.iter_mut().zip(block.field) {
+            column.truncate(rows);
+            *all = column;
+        }
+        Sheet {
+            rows,
+            answers,
+            notices,
+            problems,
+            cells,
         }
     }
 
@@ -80,7 +76,7 @@ impl Sheet {
             (name.clone(), Arc::new(StringArray::from(cells)) as ArrayRef)
         };
         let mut all: Vec<(String, ArrayRef)> = cells.by_ref().take(time.len()).map(text).collect();
-        let rows = self.problems.len();
+        let rows = self.rows;
         for (i, mut column) in self.answers.into_iter().enumerate() {
             if columns.answers[i / 3] {
                 column.resize(rows, f64::NAN);
@@ -92,10 +88,7 @@ impl Sheet {
         if columns.notices {
             all.push(("notices".to_owned(), texts(self.notices, rows)));
         }
-        all.push((
-            "problem".to_owned(),
-            Arc::new(StringArray::from(self.problems)),
-        ));
+        all.push(("problem".to_owned(), texts(self.problems, rows)));
         let fields: Vec<Field> = all
             .iter()
             .map(|(name, column)| Field::new(name, column.data_type().clone(), true))
@@ -113,7 +106,7 @@ pub(in crate::series) fn answered_in_place(
     schema: &SchemaRef,
     sheet: Sheet,
 ) -> RecordBatch {
-    let rows = sheet.problems.len();
+    let rows = sheet.rows;
     let mut columns: Vec<ArrayRef> = batch
         .columns()
         .iter()
@@ -141,31 +134,27 @@ pub(in crate::series) fn answered_in_place(
     if header.added.notices {
         columns.push(texts(sheet.notices, rows));
     }
-    columns.push(Arc::new(StringArray::from(sheet.problems)));
+    columns.push(texts(sheet.problems, rows));
     RecordBatch::try_new(schema.clone(), columns)
         .expect("columns of one length and the types of the schema")
 }
 
-/// Texts of so many rows, of which the last ones may be missing.
-fn texts(mut texts: Vec<Option<String>>, rows: usize) -> ArrayRef {
-    texts.resize(rows, None);
+/// A column of so many rows, of which some have a text.
+fn texts(given: Vec<(usize, String)>, rows: usize) -> ArrayRef {
+    if given.is_empty() {
+        return Arc::new(StringArray::new_null(rows));
+    }
+    let mut texts = vec![None; rows];
+    for (row, text) in given {
+        texts[row] = Some(text);
+    }
     Arc::new(StringArray::from(texts))
-}
-
-/// How many rows a sheet has so far.
-fn before_here(answers: &[Vec<f64>; 12]) -> usize {
-    answers[0].len()
 }
 
 /// Numbers of which NaN is missing.
 fn doubles(values: Vec<f64>) -> ArrayRef {
-    let known = values.iter().any(|x| x.is_nan()).then(|| {
-        let valid: NullBuffer = values
-            .iter()
-            .map(|x| !x.is_nan())
-            .collect::<Vec<bool>>()
-            .into();
-        valid
-    });
+    // One pass without a branch, since most columns have none.
+    let missing = values.iter().filter(|x| x.is_nan()).count() > 0;
+    let known = missing.then(|| values.iter().map(|x| !x.is_nan()).collect::<NullBuffer>());
     Arc::new(Float64Array::new(values.into(), known))
 }
