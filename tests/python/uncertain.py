@@ -69,7 +69,10 @@ def of_question(rng, question):
         stated["b"] = vector(rng, b)
     question = dict(question)
     if "steps" in question:
-        question["steps"] = [of_step(rng, step) for step in question["steps"]]
+        steps = question["steps"]
+        # Each of its numbers takes the reference two whole ways: a second each where they are long.
+        uncertain = range(len(steps)) if len(steps) <= 12 else [rng.randrange(len(steps))]
+        question["steps"] = [of_step(rng, step) if i in uncertain else step for i, step in enumerate(steps)]
     elif "velocity" in question:
         stated["velocity"] = vector(rng, size(question["velocity"]))
     elif "boost" in question and rng.random() < 0.5:
