@@ -25,11 +25,10 @@ pub(super) fn json(value: &impl serde::Serialize) -> Response {
     // Most answers fit without growing.
     let mut text = Vec::with_capacity(1024);
     serde_json::to_writer(&mut text, value).expect("answers have a JSON form");
-    (
-        [(header::CONTENT_TYPE, HeaderValue::from_static(accept::JSON))],
-        text,
-    )
-        .into_response()
+    let mut response = Response::new(text.into());
+    let kind = HeaderValue::from_static(accept::JSON);
+    response.headers_mut().insert(header::CONTENT_TYPE, kind);
+    response
 }
 
 /// Columns as CSV.

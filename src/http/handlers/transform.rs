@@ -81,7 +81,10 @@ pub(crate) async fn transform(
     let refuse = |faults| Problem::from_faults(faults, Source::Body);
     let node = Node::from_json(&body).map_err(|fault| refuse(vec![fault]))?;
     let question = Question::read(&node, &state.deployment).map_err(refuse)?;
-    let answer = answer(&state, &question).await;
+    let answer = match question.monte_carlo {
+        None => answer(&question),
+        Some(_) => Box::pin(answer_with_trials(&state, question)).await,
+    };
     answer.map(|answer| json(&answer)).map_err(refuse)
 }
 
@@ -130,7 +133,11 @@ pub(crate) async fn transform_by_url(
         ENGINE.as_bytes(),
     ]);
     cached(&headers, tag, IMMUTABLE, async {
-        let answer = answer(&state, &question).await.map_err(refuse)?;
+        if question.monte_carlo.is_some() {
+            let answer = answer_with_trials(&state, question).await;
+            return answer.map(|answer| json(&answer)).map_err(refuse);
+        }
+        let answer = answer(&question).map_err(refuse)?;
         Ok(match representation {
             SVG => svg(picture::reading(&question, &answer)),
             _ => json(&answer),
@@ -139,11 +146,14 @@ pub(crate) async fn transform_by_url(
     .await
 }
 
-async fn answer(state: &AppState, question: &Question) -> Result<Answer, Vec<Fault>> {
-    let mut answer = Answer::to(question).map_err(|impossible| vec![unanswerable(&impossible)])?;
-    if question.monte_carlo.is_some() {
-        add_trials(state, question, &mut answer).await;
-    }
+fn answer(question: &Question) -> Result<Answer, Vec<Fault>> {
+    Answer::to(question).map_err(|impossible| vec![unanswerable(&impossible)])
+}
+
+/// Apart, and boxed, because what most questions do not need would make every answer's future larger.
+async fn answer_with_trials(state: &AppState, question: Question) -> Result<Answer, Vec<Fault>> {
+    let mut answer = answer(&question)?;
+    add_trials(state, &question, &mut answer).await;
     Ok(answer)
 }
 
