@@ -8,6 +8,11 @@ use std::panic::{AssertUnwindSafe, catch_unwind, resume_unwind};
 
 use tokio::sync::oneshot;
 
+/// How much lower the priority of these threads is than that of threads that answer requests: where
+/// cores are short, single readings come first.
+#[cfg(target_os = "linux")]
+const NICENESS: i32 = 10;
+
 /// The threads. They end when it is dropped and their work is done.
 pub struct Pool(rayon::ThreadPool);
 
@@ -20,6 +25,7 @@ impl Pool {
         let pool = rayon::ThreadPoolBuilder::new()
             .num_threads(threads)
             .thread_name(|number| format!("compute-{number}"))
+            .start_handler(|_| step_back())
             .build();
         Pool(pool.expect("threads to compute on"))
     }
@@ -56,4 +62,11 @@ impl Pool {
             Err(panic) => resume_unwind(panic),
         }
     }
+}
+
+/// Lowers the priority of this thread. On Linux each has its own; elsewhere that would be the whole
+/// service's. A system that forbids it only makes single readings wait longer.
+fn step_back() {
+    #[cfg(target_os = "linux")]
+    let _ = rustix::process::nice(NICENESS);
 }
