@@ -27,14 +27,10 @@ def chromium(downloads):
 
 
 @pytest.fixture
-def page(chromium, service):
+def page(page):
     """The page with a way entered, and no reading."""
-    chromium.open("about:blank")
-    chromium.open(service.url)
-    chromium.until("return document.querySelectorAll('.step').length === 1")
-    chromium.complaints()
-    chromium.type('[data-path="velocity/0"]', "7600")
-    return chromium
+    page.type('[data-path="velocity/0"]', "7600")
+    return page
 
 
 def drop(page, path):
