@@ -2,8 +2,9 @@
 //!
 //! Algorithms: Dekker 1971 (product), Knuth TAOCP 2 §4.2.2 (sum), the accurate and the quick sum,
 //! product and quotient analysed by Joldes, Muller and Popescu, ACM TOMS 44 (2017) 15, and one step
-//! of Newton's for the root: relative errors of at most a few units of 2⁻¹⁰⁴. Every operation on doubles is correctly
-//! rounded, so that every machine gives the same bits.
+//! of Newton's for the root: relative errors of at most a few units of 2⁻¹⁰⁴, for the quick sum
+//! relative to its terms. Every operation on doubles is correctly rounded, so that every machine
+//! gives the same bits.
 
 use std::fmt::Debug;
 use std::marker::PhantomData;

@@ -13,7 +13,7 @@ import pytest
 
 import series
 from series import ARROW, CSV, FIELD, NDJSON, VELOCITY, curl, memory, problem
-from test_series_stream import BOUND, LINE, ROW, WHERE, chunk, counts, everything, opened, until
+from test_series_stream import BOUND, LINE, ROW, WHERE, chunk, counts, everything, opened, row_by_row, until
 
 CODINGS = ["gzip", "zstd"]
 
@@ -67,18 +67,7 @@ def test_a_packed_answer_is_the_plain_one(service, coding, accept):
 @pytest.mark.parametrize("coding", CODINGS)
 def test_each_row_is_answered_before_the_next_is_sent_also_when_packed(service, coding):
     """Every row is flushed: curl unpacks it from what has come so far."""
-    alone = service.ask(ROW)
-    pipe = subprocess.PIPE
-    options = ("-T", ".", "--compressed", "-H", f"Accept-Encoding: {coding}")
-    with curl(service, WHERE, NDJSON, *options, stdin=pipe, stdout=pipe) as client:
-        for n in range(20):
-            client.stdin.write(series.ndjson([ROW | {"n": n}]))
-            client.stdin.flush()
-            answer = json.loads(client.stdout.readline())
-            assert (answer["e"], answer["b"], answer["n"]) == (alone["e"], alone["b"], n)
-        client.stdin.close()
-        assert counts(client.stdout.read()) == {"read": 20, "answered": 20, "refused": 0}
-    assert client.returncode == 0
+    row_by_row(service, service.ask(ROW), "--compressed", "-H", f"Accept-Encoding: {coding}")
 
 
 @pytest.mark.parametrize("coding", CODINGS)

@@ -33,11 +33,11 @@ def counts(answer):
     return json.loads(answer.splitlines()[-1])["end"]
 
 
-def test_each_row_is_answered_before_the_next_is_sent(service, alone):
-    """An instrument of a row now and then, in a pipe that stays open: `curl -T .`, since with
-    `-T -` curl itself waits for the next row before it shows the answer to the last."""
+def row_by_row(service, alone, *options):
+    """Sends each row only once the last is answered: `curl -T .`, since with `-T -` curl itself
+    waits for the next row before it shows the answer to the last."""
     pipe = subprocess.PIPE
-    with curl(service, WHERE, NDJSON, "-T", ".", stdin=pipe, stdout=pipe) as client:
+    with curl(service, WHERE, NDJSON, "-T", ".", *options, stdin=pipe, stdout=pipe) as client:
         for n in range(20):
             client.stdin.write(series.ndjson([ROW | {"n": n}]))
             client.stdin.flush()
@@ -46,6 +46,11 @@ def test_each_row_is_answered_before_the_next_is_sent(service, alone):
         client.stdin.close()
         assert counts(client.stdout.read()) == {"read": 20, "answered": 20, "refused": 0}
     assert client.returncode == 0
+
+
+def test_each_row_is_answered_before_the_next_is_sent(service, alone):
+    """An instrument of a row now and then, in a pipe that stays open."""
+    row_by_row(service, alone)
 
 
 def test_a_row_of_a_table_too(service):
