@@ -37,3 +37,8 @@ pub mod transform;
 pub mod units;
 
 pub use http::{AppState, app};
+
+/// Blocks of rows come and go in hundreds of kilobytes, which the allocator of the system gives
+/// back each time and gets anew page by page.
+#[global_allocator]
+static ALLOCATOR: mimalloc::MiMalloc = mimalloc::MiMalloc;

@@ -11,7 +11,7 @@ use dashu_float::{FBig, Repr, round::mode::HalfEven};
 use dashu_int::{IBig, ops::BitTest};
 
 use super::double_double::Dd;
-use super::real::Real;
+use super::real::{Factor, Real};
 
 type Float = FBig<HalfEven, 2>;
 
@@ -90,6 +90,13 @@ impl Neg for Big {
             value: -self.value,
             bits: self.bits,
         }
+    }
+}
+
+impl Factor<Big> for Big {
+    type Product = Big;
+    fn product(&self, by: &Big) -> Big {
+        self.clone() * by.clone()
     }
 }
 

@@ -54,6 +54,8 @@ pub struct Block {
     units: Units<Portable>,
     /// The transformation, if two doubles hold it.
     kernel: Option<Kernel<Dd>>,
+    /// Whether its direction is one of doubles.
+    as_given: bool,
     portable: bool,
 }
 
@@ -62,10 +64,13 @@ impl Block {
     pub fn new(way: Arc<Resolved>, setting: Setting) -> Block {
         let kernel = Kernel::new(way.net(), setting.units, ());
         let fits = way.fits_dd() && setting.is_tame() && kernel.numbers().all(|x| tame(x.hi));
+        let mut direction = kernel.motion.iter().flat_map(|(d, ..)| d);
+        let as_given = way.chained() == 0.0 && direction.all(|d| d.lo == 0.0);
         Block {
             way,
             setting,
             units: Units::of(&setting),
+            as_given,
             kernel: fits.then_some(kernel),
             portable: false,
         }
@@ -148,7 +153,8 @@ impl Work for Pass<'_> {
             move |_| matrix
         });
         let units = self.block.units.by::<A>();
-        self.answers.fill(self.fields, units, motion, matrix);
+        self.answers
+            .fill(self.fields, units, self.block.as_given, motion, matrix);
     }
 }
 

@@ -146,7 +146,7 @@ impl Motion {
         };
         match *self {
             Motion::Velocity { .. } | Motion::Turning { .. } => {
-                Boost::by_velocity(self.velocity(context), self.beta().value(context))
+                Boost::by_velocity(self.velocity::<R>(context), self.beta().value(context))
             }
             Motion::Speed { direction: d, beta } => {
                 let (direction, length) = direction(d);

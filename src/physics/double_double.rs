@@ -10,7 +10,7 @@ use std::fmt::Debug;
 use std::marker::PhantomData;
 use std::ops::{Add, Div, Mul, Neg, Sub};
 
-use super::real::Real;
+use super::real::{Factor, Real};
 
 /// hi + lo with |lo| ≤ ½ ulp(hi), computed by instructions of the kind `A`.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -246,9 +246,19 @@ impl<A: Arithmetic> Mul for DoubleDouble<A> {
     type Output = Self;
     #[inline(always)]
     fn mul(self, b: Self) -> Self {
-        let (p, e) = A::two_prod(self.hi, b.hi);
-        let (hi, lo) = fast_two_sum(p, e + (self.hi * b.lo + self.lo * b.hi));
+        let product = self.product(&b);
+        let (hi, lo) = fast_two_sum(product.hi, product.lo);
         Self::of(hi, lo)
+    }
+}
+
+impl<A: Arithmetic> Factor<Self> for DoubleDouble<A> {
+    type Product = Self;
+    /// A product whose `hi` is not yet the nearest double.
+    #[inline(always)]
+    fn product(&self, b: &Self) -> Self {
+        let (p, e) = A::two_prod(self.hi, b.hi);
+        Self::of(p, e + (self.hi * b.lo + self.lo * b.hi))
     }
 }
 
@@ -307,12 +317,19 @@ impl<A: Arithmetic> Real for DoubleDouble<A> {
         let (hi, lo) = fast_two_sum(s, e + (self.lo + b.lo));
         Self::of(hi, lo)
     }
+    #[inline(always)]
+    fn sum3(self, b: Self, c: Self) -> Self {
+        let (s, e) = two_sum(self.hi, b.hi);
+        let (s, f) = two_sum(s, c.hi);
+        let (hi, lo) = fast_two_sum(s, (e + f) + ((self.lo + b.lo) + c.lo));
+        Self::of(hi, lo)
+    }
     fn pi((): ()) -> Self {
         Self::PI
     }
     #[inline(always)]
     fn to_f64(&self) -> f64 {
-        self.hi + self.lo
+        self.hi
     }
     fn to_dd(&self) -> Dd {
         self.by()
@@ -326,14 +343,11 @@ impl<A: Arithmetic> Real for DoubleDouble<A> {
     }
     #[inline(always)]
     fn sqrt(&self) -> Self {
-        if self.hi == 0.0 {
-            return Self::from_f64(0.0);
-        }
         // One Newton step from the root of the leading double; what that leaves of it is exact.
         let s = self.hi.sqrt();
         let (p, e) = A::two_prod(s, s);
-        let rest = ((self.hi - p) - e) + self.lo;
-        let (hi, lo) = fast_two_sum(s, rest / (2.0 * s));
+        let step = (((self.hi - p) - e) + self.lo) / (2.0 * s);
+        let (hi, lo) = fast_two_sum(s, if s == 0.0 { 0.0 } else { step });
         Self::of(hi, lo)
     }
     fn sin_cos(&self) -> (Self, Self) {

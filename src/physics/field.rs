@@ -5,7 +5,7 @@ use super::double_double::Dd;
 use super::lorentz::Net;
 use super::pure_boost::Boost;
 use super::quaternion::Quaternion;
-use super::real::{Real, Vec3, add, cross, dot, scale, vector};
+use super::real::{Factor, Real, Vec3, cross, dot, vector};
 use super::reduction::Reduction;
 use super::scale::Scale;
 
@@ -121,9 +121,9 @@ impl Measured {
 /// E' = M [E + k (d×E)×d + p d×B], B' = M [B + k (d×B)×d − q d×E]; see
 /// [`boost`](super::boost) for k, with p = s·(cB/E) and q = s/(cB/E) between the units.
 #[derive(Clone, Debug)]
-pub struct Kernel<R> {
+pub struct Kernel<R, D = R> {
     /// d, k, p and q; `None` when nothing moves.
-    pub motion: Option<(Vec3<R>, R, R, R)>,
+    pub motion: Option<(Vec3<D>, R, R, R)>,
     /// M; `None` when nothing turns.
     pub matrix: Option<[Vec3<R>; 3]>,
     /// How many units of E one unit of cB is, about.
@@ -158,19 +158,26 @@ impl<R: Real> Kernel<R> {
             .flat_map(|(d, k, p, q)| d.iter().chain([k, p, q]));
         of_motion.chain(self.matrix.iter().flatten().flatten())
     }
+}
 
+impl<R: Real, D: Clone> Kernel<R, D> {
     /// E' and B' in the units of E and B.
     #[inline(always)]
-    pub fn apply(&self, e: &Vec3<R>, b: &Vec3<R>) -> (Vec3<R>, Vec3<R>) {
+    pub fn apply<F>(&self, e: &Vec3<F>, b: &Vec3<F>) -> (Vec3<R>, Vec3<R>)
+    where
+        F: Clone + Into<R>,
+        D: Factor<F, Product = R>,
+        R: Factor<D, Product = R>,
+    {
         let (e, b) = match &self.motion {
             Some((d, k, p, q)) => {
                 let (xe, xb) = (cross(d, e), cross(d, b));
                 (
-                    moved(e, scale(k, &cross(&xe, d)), scale(p, &xb)),
-                    moved(b, scale(k, &cross(&xb, d)), scale(&-q.clone(), &xe)),
+                    moved(e, (k, &cross(&xe, d)), (p, &xb)),
+                    moved(b, (k, &cross(&xb, d)), (&-q.clone(), &xe)),
                 )
             }
-            None => (e.clone(), b.clone()),
+            None => (e.clone().map(F::into), b.clone().map(F::into)),
         };
         match &self.matrix {
             Some([x, y, z]) => (
@@ -182,8 +189,16 @@ impl<R: Real> Kernel<R> {
     }
 }
 
-/// A field with what its own part across the motion and the other field add to it.
+/// A field with so much of its own part across the motion, and so much of the other across it.
 #[inline(always)]
-fn moved<R: Real>(own: &Vec3<R>, across: Vec3<R>, other: Vec3<R>) -> Vec3<R> {
-    add(&add(own, &across), &other)
+fn moved<F, R>(own: &Vec3<F>, (k, across): (&R, &Vec3<R>), (p, other): (&R, &Vec3<R>)) -> Vec3<R>
+where
+    F: Clone + Into<R>,
+    R: Real,
+{
+    let component = |i: usize| {
+        let own: R = own[i].clone().into();
+        own.sum3(k.product(&across[i]), p.product(&other[i]))
+    };
+    [component(0), component(1), component(2)]
 }

@@ -173,10 +173,14 @@ impl Turns {
     }
 }
 
-/// Copies a column from `start` on, and zeros after its end.
+/// The numbers of a column from `start` on; where it ends before the lanes do, in `spare` with
+/// zeros after them.
 #[inline(always)]
-pub(super) fn fill(lanes: &mut Lanes, column: &[f64], start: usize) {
-    let count = LANES.min(column.len() - start);
-    lanes[..count].copy_from_slice(&column[start..start + count]);
-    lanes[count..].fill(0.0);
+pub(super) fn lanes<'l>(column: &'l [f64], start: usize, spare: &'l mut Lanes) -> &'l Lanes {
+    let rest = &column[start..];
+    rest.first_chunk().unwrap_or_else(|| {
+        spare[..rest.len()].copy_from_slice(rest);
+        spare[rest.len()..].fill(0.0);
+        spare
+    })
 }

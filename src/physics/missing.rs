@@ -23,7 +23,7 @@ impl Resolved {
             for i in (0..3).filter(|i| !given[*i]) {
                 let mut unit = [[0.0; 3]; 2];
                 unit[which][i] = 1.0;
-                let (e, b) = kernel.apply(&vector(unit[0], ()), &vector(unit[1], ()));
+                let (e, b) = kernel.apply(&vector::<Dd>(unit[0], ()), &vector(unit[1], ()));
                 for (known, effect) in known.iter_mut().zip([e, b]) {
                     for j in 0..3 {
                         known[j] &= effect[j].hi == 0.0;

@@ -12,6 +12,7 @@ pub mod energy;
 pub mod error;
 pub mod field;
 pub mod generator;
+pub mod given;
 pub mod invariants;
 mod lanes;
 pub mod linearity;

@@ -6,7 +6,8 @@
 use super::boost::SMALL_W;
 use super::double_double::{Arithmetic, COS_DIVISORS, Dd, DoubleDouble, SIN_DIVISORS};
 use super::field::Kernel;
-use super::lanes::{Boosts, LANES, Lanes, Numbers, Turns, fill, tame};
+use super::given::Given;
+use super::lanes::{Boosts, LANES, Lanes, Numbers, Turns, lanes, tame};
 use super::lorentz::{Change, before_turn, normalised};
 use super::pure_boost::{Boost, one_less_beta2};
 use super::quaternion::Quaternion;
@@ -109,6 +110,8 @@ pub(super) struct Nets {
     /// The largest slack of a turn, and whether a turn came before the boost.
     slack: f64,
     composed: bool,
+    /// Whether the directions of the boosts are doubles.
+    as_given: bool,
 }
 
 impl Nets {
@@ -120,6 +123,7 @@ impl Nets {
         turned: false,
         slack: 1.0,
         composed: false,
+        as_given: false,
     };
 
     /// Begins again: nothing moves and nothing turns.
@@ -148,12 +152,17 @@ impl Nets {
                 for i in 0..LANES {
                     self.boosts.set(i, boost.clone());
                 }
-                self.then_boosts::<A>();
+                self.then_boosts::<A>(boost.direction.iter().all(|d| d.lo == 0.0));
             }
             Pass::Velocity { beta, inverse } => {
-                let velocity = motions.velocity.map(|column| lanes(column, start));
+                let [mut x, mut y, mut z] = [[0.0; LANES]; 3];
+                let velocity = [
+                    lanes(motions.velocity[0], start, &mut x),
+                    lanes(motions.velocity[1], start, &mut y),
+                    lanes(motions.velocity[2], start, &mut z),
+                ];
                 by_velocity(velocity, beta.by::<A>(), *inverse, &mut self.boosts, fields);
-                self.then_boosts::<A>();
+                self.then_boosts::<A>(true);
             }
             Pass::Turn(turn, slack) => {
                 let turn = Quaternion {
@@ -167,7 +176,13 @@ impl Nets {
                 self.then_turns::<A>();
             }
             Pass::Quaternion { inverse } => {
-                let quaternion = motions.quaternion.map(|column| lanes(column, start));
+                let [mut w, mut x, mut y, mut z] = [[0.0; LANES]; 4];
+                let quaternion = [
+                    lanes(motions.quaternion[0], start, &mut w),
+                    lanes(motions.quaternion[1], start, &mut x),
+                    lanes(motions.quaternion[2], start, &mut y),
+                    lanes(motions.quaternion[3], start, &mut z),
+                ];
                 by_quaternion::<A>(quaternion, *inverse, &mut self.next, fields);
                 self.then_turns::<A>();
             }
@@ -177,7 +192,8 @@ impl Nets {
                 radians,
                 inverse,
             } => {
-                let angle = lanes(motions.angle, start);
+                let mut spare = [0.0; LANES];
+                let angle = lanes(motions.angle, start, &mut spare);
                 let axis = (axis.map(Dd::by::<A>), length.by());
                 by_angle(angle, axis, *radians, *inverse, &mut self.next, fields);
                 self.then_turns::<A>();
@@ -186,8 +202,9 @@ impl Nets {
     }
 
     #[inline(always)]
-    fn then_boosts<A: Arithmetic>(&mut self) {
+    fn then_boosts<A: Arithmetic>(&mut self, as_given: bool) {
         self.moving = true;
+        self.as_given = as_given && !self.turned;
         if !self.turned {
             return;
         }
@@ -234,31 +251,33 @@ impl Nets {
             #[inline(always)]
             |i| self.turns.get::<A>(i).matrix(),
         );
-        answers.fill(fields, units, motion, matrix);
+        answers.fill(fields, units, self.as_given, motion, matrix);
     }
 }
 
 #[inline(always)]
-fn lanes(column: &[f64], start: usize) -> Lanes {
-    let mut lanes = [0.0; LANES];
-    fill(&mut lanes, column, start);
-    lanes
-}
-
-#[inline(always)]
 fn by_velocity<A: Arithmetic>(
-    [x, y, z]: [Lanes; 3],
+    [x, y, z]: [&Lanes; 3],
     beta: DoubleDouble<A>,
     inverse: bool,
     boosts: &mut Boosts,
     fields: &mut Fields,
 ) {
     let sign = if inverse { -1.0 } else { 1.0 };
+    let velocity = |i: usize| [x[i], y[i], z[i]].map(Given::<A>::new);
+    // In short loops, of which a processor looks several rounds ahead: each result waits for
+    // the one before.
+    let (mut left, mut root) = (Numbers::ZERO, Numbers::ZERO);
     for i in 0..LANES {
-        let velocity = vector::<DoubleDouble<A>>([x[i], y[i], z[i]], ());
-        let slow = one_less_beta2(&velocity, beta).hi > SMALL_W;
+        left.set(i, one_less_beta2(&velocity(i), beta));
+        let slow = left.hi[i] > SMALL_W;
         fields.give_up_unless(i, tame(x[i]) & tame(y[i]) & tame(z[i]) & slow);
-        let boost = Boost::by_velocity(velocity, beta);
+    }
+    for i in 0..LANES {
+        root.set(i, left.get::<A>(i).sqrt());
+    }
+    for i in 0..LANES {
+        let boost = Boost::by_root(velocity(i), root.get(i), beta);
         boosts.set(
             i,
             Boost {
@@ -271,7 +290,7 @@ fn by_velocity<A: Arithmetic>(
 
 #[inline(always)]
 fn by_quaternion<A: Arithmetic>(
-    [w, x, y, z]: [Lanes; 4],
+    [w, x, y, z]: [&Lanes; 4],
     inverse: bool,
     turns: &mut Turns,
     fields: &mut Fields,
@@ -293,7 +312,7 @@ fn by_quaternion<A: Arithmetic>(
 
 #[inline(always)]
 fn by_angle<A: Arithmetic>(
-    angle: Lanes,
+    angle: &Lanes,
     (axis, length): (Vec3<DoubleDouble<A>>, DoubleDouble<A>),
     radians: Scale,
     inverse: bool,

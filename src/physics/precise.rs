@@ -41,7 +41,7 @@ impl Resolved {
     pub fn apply(&self, field: &Measured, to: FieldUnits) -> Result<Applied, Impossible> {
         let fast = (self.fits_dd() && in_range(field)).then(|| {
             let kernel = Kernel::new(self.net(), field.units, ());
-            let [e, b] = field.vectors(());
+            let [e, b] = field.vectors::<Dd>(());
             let (e, b) = kernel.apply(&e, &b);
             (
                 [e, b],
@@ -118,7 +118,7 @@ impl Resolved {
             let context = self.context(bits);
             let net = self.big(context);
             let kernel = Kernel::new(&net, field.units, context);
-            let [e, b] = field.vectors(context);
+            let [e, b] = field.vectors::<Big>(context);
             let (e2, b2) = kernel.apply(&e, &b);
             let result = if which == 0 { e2 } else { b2 };
             // |E| + c|B| times 2γ bounds every term of the sum.

@@ -1,7 +1,7 @@
 //! A boost as it is applied, whatever the form its motion was given in.
 
 use super::double_double::Dd;
-use super::real::{Real, Vec3, norm2, scale};
+use super::real::{Factor, Real, Vec3, norm2, scale};
 
 /// A boost ready to be applied, in the arithmetic R.
 #[derive(Clone, Debug)]
@@ -17,11 +17,20 @@ pub struct Boost<R> {
 impl<R: Real> Boost<R> {
     /// By a velocity in units of `beta` times c.
     #[inline(always)]
-    pub(super) fn by_velocity(velocity: Vec3<R>, beta: R) -> Boost<R> {
+    pub(super) fn by_velocity<D>(velocity: Vec3<D>, beta: R) -> Boost<R>
+    where
+        D: Factor<D, Product = R> + Into<R>,
+    {
         let root = one_less_beta2(&velocity, beta.clone()).sqrt();
+        Boost::by_root(velocity, root, beta)
+    }
+
+    /// The same with √(1−β²) at hand.
+    #[inline(always)]
+    pub(super) fn by_root<D: Into<R>>(velocity: Vec3<D>, root: R, beta: R) -> Boost<R> {
         let gamma = beta.of(1.0) / root;
         Boost {
-            direction: velocity,
+            direction: velocity.map(D::into),
             stretch: beta * gamma.clone(),
             gamma,
         }
@@ -81,6 +90,10 @@ impl<R: Real> Boost<R> {
 
 /// 1 − (unit·|v|)².
 #[inline(always)]
-pub(super) fn one_less_beta2<R: Real>(velocity: &Vec3<R>, unit: R) -> R {
+pub(super) fn one_less_beta2<D, R>(velocity: &Vec3<D>, unit: R) -> R
+where
+    D: Factor<D, Product = R>,
+    R: Real,
+{
     unit.of(1.0) - norm2(velocity) * unit.square()
 }

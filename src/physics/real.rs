@@ -14,6 +14,7 @@ pub trait Real:
     + Mul<Output = Self>
     + Div<Output = Self>
     + Neg<Output = Self>
+    + Factor<Self, Product = Self>
 {
     /// What is needed to make a number from nothing: the precision.
     type Context: Copy;
@@ -66,6 +67,11 @@ pub trait Real:
     fn sum(self, other: Self) -> Self {
         self + other
     }
+    /// The sum of three, its error measured by the terms.
+    #[inline(always)]
+    fn sum3(self, second: Self, third: Self) -> Self {
+        self.sum(second).sum(third)
+    }
     /// The square.
     fn square(&self) -> Self {
         self.clone() * self.clone()
@@ -79,9 +85,17 @@ pub trait Real:
 /// A vector of three components on Cartesian axes.
 pub type Vec3<R> = [R; 3];
 
+/// What is multiplied by a `B`, the product to be summed with others.
+pub trait Factor<B>: Clone {
+    /// What the product is.
+    type Product: Real;
+    /// The product, as good as `*` in a sum; nothing else may be done with it.
+    fn product(&self, by: &B) -> Self::Product;
+}
+
 /// a × b, its error measured by the terms, like that of all sums here.
 #[inline(always)]
-pub fn cross<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> Vec3<R> {
+pub fn cross<A: Factor<B>, B>(a: &Vec3<A>, b: &Vec3<B>) -> Vec3<A::Product> {
     [
         minor(&a[1], &b[2], &a[2], &b[1]),
         minor(&a[2], &b[0], &a[0], &b[2]),
@@ -91,21 +105,20 @@ pub fn cross<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> Vec3<R> {
 
 /// a b − c d.
 #[inline(always)]
-fn minor<R: Real>(a: &R, b: &R, c: &R, d: &R) -> R {
-    (a.clone() * b.clone()).sum(-(c.clone() * d.clone()))
+fn minor<A: Factor<B>, B>(a: &A, b: &B, c: &A, d: &B) -> A::Product {
+    a.product(b).sum(-c.product(d))
 }
 
 /// a · b.
 #[inline(always)]
-pub fn dot<R: Real>(a: &Vec3<R>, b: &Vec3<R>) -> R {
-    let first = a[0].clone() * b[0].clone();
-    let second = a[1].clone() * b[1].clone();
-    first.sum(second).sum(a[2].clone() * b[2].clone())
+pub fn dot<A: Factor<B>, B>(a: &Vec3<A>, b: &Vec3<B>) -> A::Product {
+    let third = a[2].product(&b[2]);
+    a[0].product(&b[0]).sum3(a[1].product(&b[1]), third)
 }
 
 /// |a|².
 #[inline(always)]
-pub fn norm2<R: Real>(a: &Vec3<R>) -> R {
+pub fn norm2<A: Factor<A>>(a: &Vec3<A>) -> A::Product {
     dot(a, a)
 }
 

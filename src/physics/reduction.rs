@@ -30,7 +30,7 @@ impl Calibration {
     pub fn apply<R: Real>(&self, raw: [f64; 3], context: R::Context) -> Vec3<R> {
         let net: Vec3<R> =
             std::array::from_fn(|i| R::new(raw[i], context) - R::new(self.offset[i], context));
-        self.matrix.map(|row| dot(&vector(row, context), &net))
+        self.matrix.map(|row| dot(&vector::<R>(row, context), &net))
     }
 
     /// The size of what is summed for each component.

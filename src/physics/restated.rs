@@ -4,9 +4,10 @@
 use super::block::{Readings, Setting};
 use super::double_double::{Arithmetic, DoubleDouble, Portable};
 use super::field::Kernel;
-use super::lanes::{LANES, Lanes, Numbers, fill, get3, set3, tame};
+use super::given::Given;
+use super::lanes::{LANES, Lanes, Numbers, get3, lanes, set3, tame};
 use super::precise::KEPT;
-use super::real::{Real, Vec3};
+use super::real::{Factor, Real, Vec3};
 
 /// The field of each row, zeros standing for what is missing.
 #[derive(Clone, Debug)]
@@ -27,7 +28,8 @@ impl Fields {
         gaps: [0.0; LANES],
     };
 
-    /// Takes the readings from `start` on, as many as there are.
+    /// Takes the readings from `start` on, as many as there are. What doubles leave out of them
+    /// is nothing, and stays zero, unless they are calibrated.
     #[inline(always)]
     pub(super) fn load<A: Arithmetic>(
         &mut self,
@@ -35,26 +37,27 @@ impl Fields {
         start: usize,
         setting: &Setting,
     ) {
-        self.gaps = [0.0; LANES];
+        let gaps = &mut self.gaps;
+        *gaps = [0.0; LANES];
         let parts = [(readings.e, &mut self.e), (readings.b, &mut self.b)];
         for (which, (columns, numbers)) in parts.into_iter().enumerate() {
+            let [mut x, mut y, mut z] = [[0.0; LANES]; 3];
+            let [x, y, z] = [
+                lanes(columns[0], start, &mut x),
+                lanes(columns[1], start, &mut y),
+                lanes(columns[2], start, &mut z),
+            ];
             let size = &mut self.sizes[which];
-            for (column, numbers) in columns.iter().zip(numbers.iter_mut()) {
-                fill(&mut numbers.hi, column, start);
-                numbers.lo = [0.0; LANES];
-            }
-            let [x, y, z] = numbers;
-            for (i, size) in size.iter_mut().enumerate() {
-                let mut sum = 0.0;
-                let mut all_tame = true;
-                for hi in [&mut x.hi, &mut y.hi, &mut z.hi] {
-                    let value = if hi[i].is_nan() { 0.0 } else { hi[i] };
-                    self.gaps[i] += hi[i];
-                    hi[i] = value;
-                    sum += value.abs();
-                    all_tame &= tame(value);
-                }
-                *size = if all_tame { sum } else { f64::INFINITY };
+            for i in 0..LANES {
+                let known = |x: f64| if x.is_nan() { 0.0 } else { x };
+                gaps[i] += x[i] + y[i] + z[i];
+                let (x, y, z) = (known(x[i]), known(y[i]), known(z[i]));
+                let all_tame = tame(x) & tame(y) & tame(z);
+                let sum = x.abs() + y.abs() + z.abs();
+                size[i] = if all_tame { sum } else { f64::INFINITY };
+                numbers[0].hi[i] = x;
+                numbers[1].hi[i] = y;
+                numbers[2].hi[i] = z;
             }
             if let Some(calibration) = setting.calibration[which] {
                 for (i, size) in size.iter_mut().enumerate() {
@@ -83,16 +86,11 @@ impl Fields {
 }
 
 /// d, k, p and q of a [`Kernel`].
-pub(super) type Motion<A> = (
-    Vec3<DoubleDouble<A>>,
-    DoubleDouble<A>,
-    DoubleDouble<A>,
-    DoubleDouble<A>,
-);
+pub(super) type Motion<A, D = DoubleDouble<A>> =
+    (Vec3<D>, DoubleDouble<A>, DoubleDouble<A>, DoubleDouble<A>);
 
-/// The motion of a row with what [`Resolved::chained`](super::resolved::Resolved::chained) says
-/// of it, and its matrix.
-type Parts<A> = (Option<(Motion<A>, f64)>, Option<[Vec3<DoubleDouble<A>>; 3]>);
+/// M of a [`Kernel`].
+type Matrix<A> = [Vec3<DoubleDouble<A>>; 3];
 
 /// What the units of a series come to.
 #[derive(Clone, Copy, Debug)]
@@ -100,9 +98,11 @@ pub(super) struct Units<A> {
     /// How many units of E one unit of cB is, and the other way round.
     pub(super) ratios: [DoubleDouble<A>; 2],
     /// What restates E' and B' in the unit of the answer.
-    pub(super) factors: [DoubleDouble<A>; 2],
+    factors: [DoubleDouble<A>; 2],
     /// Whether sums go into the fields already.
-    pub(super) calibrated: bool,
+    calibrated: bool,
+    /// Whether there is nothing to calibrate and no other unit to restate the answer in.
+    plain: bool,
 }
 
 impl Units<Portable> {
@@ -112,10 +112,12 @@ impl Units<Portable> {
             to,
             calibration,
         } = setting;
+        let calibrated = calibration.iter().any(Option::is_some);
         Units {
             ratios: units.ratios(()),
             factors: [units.e.over(to.e).value(()), units.b.over(to.b).value(())],
-            calibrated: calibration.iter().any(Option::is_some),
+            calibrated,
+            plain: !calibrated && units == to,
         }
     }
 
@@ -126,6 +128,7 @@ impl Units<Portable> {
             ratios: self.ratios.map(DoubleDouble::by),
             factors: self.factors.map(DoubleDouble::by),
             calibrated: self.calibrated,
+            plain: self.plain,
         }
     }
 }
@@ -145,101 +148,146 @@ impl Answers {
 
     /// Answers every row.
     ///
-    /// `motion` and `matrix` give for each row the parts of its [`Kernel`] that count.
+    /// `motion` and `matrix` give for each row the parts of its [`Kernel`] that count, the motion
+    /// with what [`Resolved::chained`](super::resolved::Resolved::chained) says of it; `as_given`
+    /// is whether the directions of the motions are doubles.
     #[inline(always)]
     pub(super) fn fill<A: Arithmetic>(
         &mut self,
         fields: &Fields,
         units: Units<A>,
+        as_given: bool,
         motion: Option<impl Fn(usize) -> (Motion<A>, f64)>,
-        matrix: Option<impl Fn(usize) -> [Vec3<DoubleDouble<A>>; 3]>,
+        matrix: Option<impl Fn(usize) -> Matrix<A>>,
     ) {
         // One loop for each shape: a choice within a loop would cost its vector instructions.
-        match (motion, matrix) {
-            (None, None) => self.each(
-                fields,
-                units,
+        match motion {
+            Some(motion) if as_given && units.plain => self.turn(
+                (fields, units),
+                None,
                 #[inline(always)]
-                |_| (None, None),
-            ),
-            (Some(motion), None) => self.each(
-                fields,
-                units,
+                |i| [&fields.e, &fields.b].map(|v| v.each_ref().map(|x| Given::<A>::new(x.hi[i]))),
                 #[inline(always)]
-                |i| (Some(motion(i)), None),
+                |i| {
+                    let ((d, k, p, q), _) = motion(i);
+                    Some(((d.map(|d| Given::<A>::new(d.hi)), k, p, q), None))
+                },
+                matrix,
             ),
-            (None, Some(matrix)) => self.each(
-                fields,
-                units,
+            Some(motion) => self.turn(
+                (fields, units),
+                Some(units.factors),
                 #[inline(always)]
-                |i| (None, Some(matrix(i))),
+                |i| [get3(&fields.e, i), get3(&fields.b, i)],
+                #[inline(always)]
+                |i| {
+                    let (motion, chained) = motion(i);
+                    Some((motion, Some(chained)))
+                },
+                matrix,
             ),
-            (Some(motion), Some(matrix)) => {
-                self.each(
-                    fields,
-                    units,
-                    #[inline(always)]
-                    |i| (Some(motion(i)), Some(matrix(i))),
-                );
-            }
+            None => self.turn(
+                (fields, units),
+                Some(units.factors),
+                #[inline(always)]
+                |i| [get3(&fields.e, i), get3(&fields.b, i)],
+                #[inline(always)]
+                |_| None::<(Motion<A>, Option<f64>)>,
+                matrix,
+            ),
+        }
+    }
+
+    #[inline(always)]
+    fn turn<A, F, D>(
+        &mut self,
+        (fields, units): (&Fields, Units<A>),
+        factors: Option<[DoubleDouble<A>; 2]>,
+        field: impl Fn(usize) -> [Vec3<F>; 2],
+        motion: impl Fn(usize) -> Option<(Motion<A, D>, Option<f64>)>,
+        matrix: Option<impl Fn(usize) -> Matrix<A>>,
+    ) where
+        A: Arithmetic,
+        F: Clone + Into<DoubleDouble<A>>,
+        D: Factor<F, Product = DoubleDouble<A>> + Into<DoubleDouble<A>>,
+        DoubleDouble<A>: Factor<D, Product = DoubleDouble<A>>,
+    {
+        match matrix {
+            Some(matrix) => self.each(
+                (fields, units),
+                factors,
+                field,
+                motion,
+                #[inline(always)]
+                |i| Some(matrix(i)),
+            ),
+            None => self.each(
+                (fields, units),
+                factors,
+                field,
+                motion,
+                #[inline(always)]
+                |_| None,
+            ),
         }
     }
 
     /// The size of what is summed is taken from above, by |a×b|₁ ≤ |a|₁|b|₁, and that of the
     /// result from below, so that a row answered here is one for which two doubles suffice alone.
     #[inline(always)]
-    fn each<A: Arithmetic>(
+    fn each<A, F, D>(
         &mut self,
-        fields: &Fields,
-        units: Units<A>,
-        parts: impl Fn(usize) -> Parts<A>,
-    ) {
-        // Local, so that the compiler sees that nothing else is written to.
-        let (mut e_answer, mut b_answer) = ([[0.0; LANES]; 3], [[0.0; LANES]; 3]);
+        (fields, units): (&Fields, Units<A>),
+        factors: Option<[DoubleDouble<A>; 2]>,
+        field: impl Fn(usize) -> [Vec3<F>; 2],
+        motion: impl Fn(usize) -> Option<(Motion<A, D>, Option<f64>)>,
+        matrix: impl Fn(usize) -> Option<Matrix<A>>,
+    ) where
+        A: Arithmetic,
+        F: Clone + Into<DoubleDouble<A>>,
+        D: Factor<F, Product = DoubleDouble<A>> + Into<DoubleDouble<A>>,
+        DoubleDouble<A>: Factor<D, Product = DoubleDouble<A>>,
+    {
+        let Answers {
+            e: e_answer,
+            b: b_answer,
+        } = self;
         // For the roundings in the sizes themselves.
         const KEPT_SURELY: f64 = KEPT * 1.001;
         let ratio = units.ratios[0].hi;
         for i in 0..LANES {
-            let (motion, matrix) = parts(i);
-            let (motion, chained) = motion.unzip();
+            let (motion, chained) = motion(i).unzip();
             let kernel = Kernel {
                 motion,
-                matrix,
+                matrix: matrix(i),
                 cb_over_e: ratio,
             };
-            let (e, b) = kernel.apply(&get3(&fields.e, i), &get3(&fields.b, i));
+            let [e, b] = field(i);
+            let (e, b) = kernel.apply(&e, &b);
             let [e_size, b_size] = [fields.sizes[0][i], fields.sizes[1][i]];
             let summed = match (&kernel.motion, chained) {
                 (Some((d, k, p, q)), Some(chained)) => {
-                    let length = d[0].hi.abs() + d[1].hi.abs() + d[2].hi.abs();
+                    let [x, y, z] = d.each_ref().map(|d| d.clone().into().hi.abs());
+                    let length = x + y + z;
                     let own = 1.0 + k.hi * length * length;
                     let e_sum = own * e_size + p.hi.abs() * length * b_size;
                     let b_sum = own * b_size + q.hi.abs() * length * e_size;
-                    [
-                        larger(e_sum, chained * (e_size + ratio * b_size)),
-                        larger(b_sum, chained * (b_size + e_size / ratio)),
-                    ]
+                    match chained {
+                        None => [e_sum, b_sum],
+                        Some(chained) => [
+                            larger(e_sum, chained * (e_size + ratio * b_size)),
+                            larger(b_sum, chained * (b_size + e_size / ratio)),
+                        ],
+                    }
                 }
                 // Nothing, or not a number where a size is infinite.
                 _ if !units.calibrated => [0.0 * e_size, 0.0 * b_size],
                 _ => [e_size, b_size],
             };
-            put(
-                &mut e_answer,
-                i,
-                e,
-                units.factors[0],
-                KEPT_SURELY * summed[0],
-            );
-            put(
-                &mut b_answer,
-                i,
-                b,
-                units.factors[1],
-                KEPT_SURELY * summed[1],
-            );
+            let [e_factor, b_factor] = factors.map_or([None; 2], |factors| factors.map(Some));
+            put(e_answer, i, e, e_factor, KEPT_SURELY * summed[0]);
+            put(b_answer, i, b, b_factor, KEPT_SURELY * summed[1]);
         }
-        (self.e, self.b) = (e_answer, b_answer);
     }
 
     /// Whether two doubles did not suffice for a row.
@@ -248,28 +296,31 @@ impl Answers {
     }
 }
 
-/// The vector rounded in the unit of the answer, if it is no smaller than `least`.
+/// The vector rounded, in the unit of the answer, if it is no smaller than `least`.
 #[inline(always)]
 fn put<A: Arithmetic>(
     lanes: &mut [Lanes; 3],
     i: usize,
     vector: Vec3<DoubleDouble<A>>,
-    factor: DoubleDouble<A>,
+    factor: Option<DoubleDouble<A>>,
     least: f64,
 ) {
-    let [x, y, z] = &vector;
-    let largest = larger(larger(x.hi.abs(), y.hi.abs()), z.hi.abs());
-    let x = (vector[0] * factor).to_f64() + 0.0;
-    let y = (vector[1] * factor).to_f64() + 0.0;
-    let z = (vector[2] * factor).to_f64() + 0.0;
-    let finite = x.abs() <= f64::MAX && y.abs() <= f64::MAX && z.abs() <= f64::MAX;
-    let kept = largest >= least && finite;
+    let size = largest(vector.map(|x| x.hi));
+    let [x, y, z] = vector.map(|x| factor.map_or(x, |factor| x * factor).to_f64() + 0.0);
+    let finite = factor.map_or(size, |_| largest([x, y, z])) <= f64::MAX;
+    let kept = size >= least && finite;
     lanes[0][i] = if kept { x } else { f64::NAN };
     lanes[1][i] = if kept { y } else { f64::NAN };
     lanes[2][i] = if kept { z } else { f64::NAN };
 }
 
-/// The larger one; unlike `f64::max` one instruction. Not a number if the first is none.
+/// The largest absolute value of numbers of which all or none are numbers.
+#[inline(always)]
+fn largest([x, y, z]: [f64; 3]) -> f64 {
+    larger(larger(x.abs(), y.abs()), z.abs())
+}
+
+/// The larger one; unlike `f64::max` one instruction.
 #[inline(always)]
 fn larger(a: f64, b: f64) -> f64 {
     if a < b { b } else { a }

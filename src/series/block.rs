@@ -12,6 +12,7 @@ use crate::physics::{self, Impossible};
 use crate::transform::{INVARIANT_OUT_OF_RANGE, Reading, transform};
 
 use super::Series;
+use super::column::Column;
 use super::way::{RowMotion, Taken, Way};
 
 /// Rows as columns; NaN stands for a missing number. A column that no row has is empty.
@@ -20,13 +21,13 @@ pub(super) struct Block {
     /// How many rows there are.
     pub(super) rows: usize,
     /// ex ey ez bx by bz: the question, and once solved the answer.
-    pub(super) field: [Vec<f64>; 6],
+    pub(super) field: [Column; 6],
     /// The velocity of each row's own motion.
-    pub(super) velocity: [Vec<f64>; 3],
+    pub(super) velocity: [Column; 3],
     /// The quaternion of each row's own attitude.
-    pub(super) quaternion: [Vec<f64>; 4],
+    pub(super) quaternion: [Column; 4],
     /// The angle of each row's own turn.
-    pub(super) angle: Vec<f64>,
+    pub(super) angle: Column,
     /// When each reading was taken.
     pub(super) time: Vec<Option<Time>>,
     /// Rows that bring a way of another kind, with their answer, in order.
@@ -54,20 +55,20 @@ impl Block {
         time: Option<Time>,
     ) {
         for (column, value) in self.field.iter_mut().zip(field) {
-            column.push(value);
+            column.own().push(value);
         }
         if takes.velocity {
             for (column, value) in self.velocity.iter_mut().zip(motion.velocity) {
-                column.push(value);
+                column.own().push(value);
             }
         }
         if takes.quaternion {
             for (column, value) in self.quaternion.iter_mut().zip(motion.quaternion) {
-                column.push(value);
+                column.own().push(value);
             }
         }
         if takes.angle {
-            self.angle.push(motion.angle);
+            self.angle.own().push(motion.angle);
         }
         if takes.time {
             self.time.push(time);
@@ -82,7 +83,7 @@ impl Block {
         for (row, _) in &self.bad {
             self.field
                 .iter_mut()
-                .for_each(|column| column[*row] = f64::NAN);
+                .for_each(|column| column.own()[*row] = f64::NAN);
         }
         let found = if series.blank.e_dot_b_zero.is_some() {
             self.solve_each(series)
@@ -137,7 +138,7 @@ impl Block {
         };
         found.sort_by_key(|(row, _)| *row);
         let ([ex, ey, ez], [bx, by, bz]) = (answers.e, answers.b);
-        self.field = [ex, ey, ez, bx, by, bz];
+        self.field = [ex, ey, ez, bx, by, bz].map(Column::from);
         found
     }
 
@@ -286,7 +287,7 @@ impl Block {
 
     fn set(&mut self, row: usize, answer: &[f64; 6]) {
         for (column, value) in self.field.iter_mut().zip(answer) {
-            column[row] = *value;
+            column.own()[row] = *value;
         }
     }
 

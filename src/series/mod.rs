@@ -9,6 +9,7 @@ mod arrow;
 mod ask;
 mod block;
 mod carry;
+mod column;
 mod csv;
 mod cut;
 mod header;

@@ -68,29 +68,31 @@ impl Columns {
     }
 }
 
-/// Goes through the rows of a block, and stops after the first bad one where that ends the series.
-pub(super) fn each_row(
+/// Counts the rows of a block that are answered, with a field or a problem: all, or those up to
+/// the first bad one where that ends the series.
+pub(super) fn count(block: &Block, stop: bool, done: &mut Done) -> usize {
+    let (rows, refused) = match block.bad.first() {
+        Some((bad, _)) if stop => (bad + 1, 1),
+        _ => (block.rows, block.bad.len()),
+    };
+    done.stopped = stop && refused > 0;
+    done.counts.read += rows as u64;
+    done.counts.refused += refused as u64;
+    done.counts.answered += (rows - refused) as u64;
+    rows
+}
+
+/// Goes through the rows of a block, as far as they [`count`].
+fn each_row(
     block: &Block,
     stop: bool,
     done: &mut Done,
     mut write: impl FnMut(usize, Option<&[crate::document::Fault]>, &mut Done),
 ) {
     let mut bad = block.bad.iter().peekable();
-    for row in 0..block.rows {
-        let faults = bad
-            .next_if(|(own, _)| *own == row)
-            .map(|(_, faults)| &faults[..]);
-        write(row, faults, done);
-        done.counts.read += 1;
-        if faults.is_none() {
-            done.counts.answered += 1;
-            continue;
-        }
-        done.counts.refused += 1;
-        if stop {
-            done.stopped = true;
-            return;
-        }
+    for row in 0..count(block, stop, done) {
+        let faults = bad.next_if(|(own, _)| *own == row);
+        write(row, faults.map(|(_, faults)| &faults[..]), done);
     }
 }
 
@@ -140,7 +142,7 @@ fn push_notices(out: &mut Vec<u8>, block: &Block, row: usize) {
 }
 
 /// The notices on an answer as text: their codes with spaces between them.
-pub(super) fn noted(block: &Block, row: usize) -> String {
+fn noted(block: &Block, row: usize) -> String {
     block.notices(row).join(" ")
 }
 

@@ -111,7 +111,7 @@ fn matrix(net: &Net<Dd>) -> [[f64; 6]; 6] {
         let mut unit = [0.0; 6];
         unit[column] = 1.0;
         let [e0, e1, e2, b0, b1, b2] = unit;
-        let (e, b) = kernel.apply(&vector([e0, e1, e2], ()), &vector([b0, b1, b2], ()));
+        let (e, b) = kernel.apply(&vector::<Dd>([e0, e1, e2], ()), &vector([b0, b1, b2], ()));
         for (row, x) in round(&e).into_iter().chain(round(&b)).enumerate() {
             matrix[row][column] = x;
         }
@@ -186,7 +186,7 @@ fn directed(motion: &Motion, sign: f64, value: f64, direction: f64) -> Change {
     let least = (0..3).min_by(|&i, &j| n[i].hi.abs().total_cmp(&n[j].hi.abs()));
     let mut axis = [0.0; 3];
     axis[least.unwrap_or(0)] = 1.0;
-    let other = cross(&n, &vector(axis, ()));
+    let other = cross(&n, &vector::<Dd>(axis, ()));
     let other = scale(&(Dd::from_f64(1.0) / norm2(&other).sqrt()), &other);
     let across = cross(&other, &n);
     // Of the speed along the direction; that of its error is the step's alone.

@@ -14,6 +14,7 @@ use crate::frames::{Clock, Time};
 use super::super::Series;
 use super::super::block::{Block, Takes};
 use super::super::carry::Carried;
+use super::super::column::Column;
 use super::super::csv;
 use super::super::header::Header;
 use super::super::names::Role;
@@ -123,27 +124,15 @@ impl Table {
 impl Sheets {
     /// The rows as a block.
     pub(in crate::series) fn block(&self, series: &Series, rows: usize) -> Block {
-        let takes = Takes::of(series);
-        let missing = |wanted: bool| {
-            if wanted {
-                vec![f64::NAN; rows]
-            } else {
-                Vec::new()
-            }
-        };
         let mut block = Block {
             rows,
-            velocity: std::array::from_fn(|_| missing(takes.velocity)),
-            quaternion: std::array::from_fn(|_| missing(takes.quaternion)),
-            angle: missing(takes.angle),
-            field: std::array::from_fn(|_| missing(true)),
             ..Block::default()
         };
         let uncertain = [0, 3].map(|first| {
             let wanted = Role::Uncertainty(first);
             self.columns.iter().any(|(role, _)| *role == wanted)
         });
-        let mut standard: [Vec<f64>; 6] = std::array::from_fn(|_| missing(uncertain != [false; 2]));
+        let mut standard: [Column; 6] = Default::default();
         for (role, column) in &self.columns {
             let place = match role {
                 Role::Field(i) => &mut block.field[*i],
@@ -157,14 +146,26 @@ impl Sheets {
                 }
             };
             let column = column.as_primitive::<Float64Type>();
-            place.copy_from_slice(column.values());
+            *place = Column::Shared(column.values().clone());
             if let Some(nulls) = column.nulls() {
                 let missing = (0..rows).filter(|row| nulls.is_null(*row));
-                missing.for_each(|row| place[row] = f64::NAN);
+                missing.for_each(|row| place.own()[row] = f64::NAN);
             }
         }
+        let takes = Takes::of(series);
+        let wanted = [
+            (true, &mut block.field[..]),
+            (takes.velocity, &mut block.velocity),
+            (takes.quaternion, &mut block.quaternion),
+            (takes.angle, std::slice::from_mut(&mut block.angle)),
+            (uncertain != [false; 2], &mut standard),
+        ];
+        for (_, columns) in wanted.into_iter().filter(|(wanted, _)| *wanted) {
+            let absent = columns.iter_mut().filter(|column| column.is_empty());
+            absent.for_each(|column| *column = Column::missing(rows));
+        }
         for row in (0..rows).filter(|_| uncertain != [false; 2]) {
-            let at = |columns: &[Vec<f64>; 6]| columns.each_ref().map(|column| column[row]);
+            let at = |columns: &[Column; 6]| columns.each_ref().map(|column| column[row]);
             match uncertainty::of_columns(&at(&block.field), &at(&standard), uncertain) {
                 Ok(found) => block.uncertain.extend(found.map(|found| (row, found))),
                 Err(faults) => block.refuse(row, faults),

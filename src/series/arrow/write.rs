@@ -8,10 +8,11 @@ use arrow_schema::{Field, Schema, SchemaRef};
 
 use super::super::block::Block;
 use super::super::carry::Carried;
+use super::super::column::Column;
 use super::super::header::Header;
 use super::super::names::COLUMNS;
 use super::super::outlet::Done;
-use super::super::print::{Columns, each_row, noted};
+use super::super::print::{Columns, count};
 use super::super::problem;
 
 /// The answers of a block, as far as a bad row did not end it.
@@ -19,7 +20,7 @@ use super::super::problem;
 pub(in crate::series) struct Sheet {
     rows: usize,
     /// The field, and its uncertainties where there are any.
-    answers: [Vec<f64>; 12],
+    answers: [Column; 12],
     /// The rows that have some.
     notices: Vec<(usize, String)>,
     problems: Vec<(usize, String)>,
@@ -34,29 +35,28 @@ impl Sheet {
         stop: bool,
         done: &mut Done,
     ) -> Sheet {
-        let mut cells = vec![Vec::new(); carried.columns];
-        let (mut rows, mut notices, mut problems) = (0, Vec::new(), Vec::new());
-        each_row(&block, stop, done, |row, faults, _| {
-            for (i, cells) in cells.iter_mut().enumerate() {
-                let cell = carried.cell(row, i);
-                cells.push(cell.map(|text| String::from_utf8_lossy(text).into_owned()));
-            }
-            if let Some(faults) = faults {
-                problems.push((row, problem::as_text(faults)));
-            } else if !block.notices(row).is_empty() {
-                notices.push((row, noted(&block, row)));
-            }
-            rows += 1;
-        });
-        let mut answers: [Vec<f64>; 12] = Default::default();
+        let rows = count(&block, stop, done);
+        let cell = |row, i| {
+            let text = carried.cell(row, i)?;
+            Some(String::from_utf8_lossy(text).into_owned())
+        };
+        let cells = (0..carried.columns).map(|i| (0..rows).map(|row| cell(row, i)).collect());
+        let bad = block.bad.iter().take_while(|(row, _)| *row < rows);
+        let problems = bad.map(|(row, faults)| (*row, problem::as_text(faults)));
+        let is_bad = |row: &usize| block.bad.binary_search_by_key(row, |(own, _)| *own).is_ok();
+        let notices = block.notices.iter().take_while(|(row, _)| *row < rows);
+        let notices = notices.filter(|(row, _)| !is_bad(row));
+        let notices = notices.map(|(row, codes)| (*row, codes.join(" ")));
+        let (cells, problems) = (cells.collect(), problems.collect());
+        let notices = notices.collect();
+        let mut answers: [Column; 12] = Default::default();
         if !block.standard.is_empty() {
             for (i, all) in answers[6..].iter_mut().enumerate() {
                 let standard = |row| block.standard(row).map_or(f64::NAN, |known| known[i]);
-                all.extend((0..rows).map(standard));
+                *all = (0..rows).map(standard).collect::<Vec<_>>().into();
             }
         }
-        for (all, mut column) in answers.iter_mut().zip(block.field) {
-            column.truncate(rows);
+        for (all, column) in answers.iter_mut().zip(block.field) {
             *all = column;
         }
         Sheet {
@@ -77,11 +77,10 @@ impl Sheet {
         };
         let mut all: Vec<(String, ArrayRef)> = cells.by_ref().take(time.len()).map(text).collect();
         let rows = self.rows;
-        for (i, mut column) in self.answers.into_iter().enumerate() {
+        for (i, column) in self.answers.into_iter().enumerate() {
             if columns.answers[i / 3] {
-                column.resize(rows, f64::NAN);
                 let (name, _) = COLUMNS[1 + i];
-                all.push((name.to_owned(), doubles(column)));
+                all.push((name.to_owned(), doubles(column, rows)));
             }
         }
         all.extend(cells.map(text));
@@ -119,15 +118,14 @@ pub(in crate::series) fn answered_in_place(
         })
         .collect();
     let mut added = Vec::new();
-    for (i, mut column) in sheet.answers.into_iter().enumerate() {
+    for (i, column) in sheet.answers.into_iter().enumerate() {
         let place = header.place_of(i);
         if place.is_none() && header.added.numbers().all(|added| added != i) {
             continue;
         }
-        column.resize(rows, f64::NAN);
         match place {
-            Some(place) => columns[place] = doubles(column),
-            None => added.push(doubles(column)),
+            Some(place) => columns[place] = doubles(column, rows),
+            None => added.push(doubles(column, rows)),
         }
     }
     columns.extend(added);
@@ -151,8 +149,11 @@ fn texts(given: Vec<(usize, String)>, rows: usize) -> ArrayRef {
     Arc::new(StringArray::from(texts))
 }
 
-/// Numbers of which NaN is missing.
-fn doubles(values: Vec<f64>) -> ArrayRef {
+/// So many numbers, of which NaN is missing, as are those that a column does not have.
+fn doubles(mut values: Column, rows: usize) -> ArrayRef {
+    if values.len() != rows {
+        values.own().resize(rows, f64::NAN);
+    }
     // One pass without a branch, since most columns have none.
     let missing = values.iter().filter(|x| x.is_nan()).count() > 0;
     let known = missing.then(|| values.iter().map(|x| !x.is_nan()).collect::<NullBuffer>());
