@@ -77,7 +77,12 @@ impl<'a> Node<'a> {
     /// # Errors
     /// The first fault of syntax, with its line and column.
     pub fn from_json(text: &'a [u8]) -> Result<Node<'a>, Fault> {
-        serde_json::from_slice(text).map_err(|error| {
+        // All at once, since to look at every text for itself would cost as much as to read it.
+        let read = match std::str::from_utf8(text) {
+            Ok(text) => serde_json::from_str(text),
+            Err(_) => serde_json::from_slice(text),
+        };
+        read.map_err(|error| {
             let message = error.to_string();
             if message.starts_with("number out of range") {
                 let detail = format!(

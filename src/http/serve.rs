@@ -38,8 +38,7 @@ pub async fn serve(
 ) {
     let config = &state.config;
     let mut http = http1::Builder::new();
-    http.timer(LazyTimer)
-        .max_buf_size(READ_BUFFER)
+    http.max_buf_size(READ_BUFFER)
         // To copy an answer behind its head costs less than to write from two places.
         .writev(false)
         .header_read_timeout(config.idle_timeout);
@@ -72,7 +71,8 @@ pub async fn serve(
             continue;
         };
         let place = Place::new(permit, state.clone());
-        let (http, app, watcher) = (http.clone(), app.clone(), connections.watcher());
+        let (mut http, app, watcher) = (http.clone(), app.clone(), connections.watcher());
+        http.timer(LazyTimer::default());
         match tls.clone() {
             None => {
                 tokio::spawn(converse(stream, http, app, watcher, place));

@@ -1,7 +1,7 @@
 //! The field of one event, and how a net transformation acts on it.
 
 use super::constants::SPEED_OF_LIGHT;
-use super::double_double::Dd;
+use super::double_double::{Dd, DoubleDouble};
 use super::lorentz::Net;
 use super::pure_boost::Boost;
 use super::quaternion::Quaternion;
@@ -157,6 +157,19 @@ impl<R: Real> Kernel<R> {
             .iter()
             .flat_map(|(d, k, p, q)| d.iter().chain([k, p, q]));
         of_motion.chain(self.matrix.iter().flatten().flatten())
+    }
+}
+
+impl Kernel<Dd> {
+    /// The same, to be worked with by other instructions.
+    #[inline(always)]
+    pub(super) fn by<A>(&self) -> Kernel<DoubleDouble<A>> {
+        let motion = self.motion.as_ref();
+        Kernel {
+            motion: motion.map(|(d, k, p, q)| (d.map(Dd::by), k.by(), p.by(), q.by())),
+            matrix: self.matrix.map(|rows| rows.map(|row| row.map(Dd::by))),
+            cb_over_e: self.cb_over_e,
+        }
     }
 }
 

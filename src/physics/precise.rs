@@ -5,9 +5,10 @@
 //! and the reading are computed again with as many bits as it takes.
 
 use super::big::Big;
-use super::double_double::Dd;
+use super::double_double::{Arithmetic, Dd, DoubleDouble};
 use super::error::Impossible;
 use super::field::{FieldUnits, Kernel, Measured};
+use super::lanes::{Work, dispatch};
 use super::real::{Real, Vec3, exponent_spread, round};
 use super::resolved::Resolved;
 use super::scale::Scale;
@@ -41,10 +42,14 @@ impl Resolved {
     pub fn apply(&self, field: &Measured, to: FieldUnits) -> Result<Applied, Impossible> {
         let fast = (self.fits_dd() && in_range(field)).then(|| {
             let kernel = Kernel::new(self.net(), field.units, ());
-            let [e, b] = field.vectors::<Dd>(());
-            let (e, b) = kernel.apply(&e, &b);
+            let mut restated = field.vectors::<Dd>(());
+            let work = Restate {
+                kernel: &kernel,
+                field: &mut restated,
+            };
+            dispatch(work, false);
             (
-                [e, b],
+                restated,
                 sizes(&kernel, field),
                 self.chain_sizes(&kernel, field),
             )
@@ -180,6 +185,22 @@ impl Resolved {
             .into_iter()
             .find(|bits| *bits as i64 >= needed)
             .unwrap_or(LEVELS[3])
+    }
+}
+
+/// The field in place of that of the reading, by the best instructions there are.
+struct Restate<'a> {
+    kernel: &'a Kernel<Dd>,
+    field: &'a mut [Vec3<Dd>; 2],
+}
+
+impl Work for Restate<'_> {
+    #[inline(always)]
+    fn run<A: Arithmetic>(self) {
+        let kernel = self.kernel.by::<A>();
+        let [e, b] = self.field.map(|vector| vector.map(Dd::by));
+        let (e, b) = kernel.apply(&e, &b);
+        *self.field = [e, b].map(|vector| vector.map(DoubleDouble::by));
     }
 }
 

@@ -82,7 +82,7 @@ impl Scale {
     pub fn to_f64(self) -> f64 {
         const EXACT: u128 = 1 << 53;
         if self.pi == 0 && self.num <= EXACT && self.den <= EXACT {
-            return self.num as f64 / self.den as f64;
+            return self.num as u64 as f64 / self.den as u64 as f64;
         }
         self.value::<super::Dd>(()).to_f64()
     }

@@ -79,13 +79,23 @@ pub(crate) async fn transform(
     negotiate(request.headers(), &[JSON])?;
     let body = json_body(request, state.config.max_body).await?;
     let refuse = |faults| Problem::from_faults(faults, Source::Body);
-    let node = Node::from_json(&body).map_err(|fault| refuse(vec![fault]))?;
-    let question = Question::read(&node, &state.deployment).map_err(refuse)?;
-    let answer = match question.monte_carlo {
-        None => answer(&question),
-        Some(_) => Box::pin(answer_with_trials(&state, question)).await,
+    let question = match at_once(&state, &body).map_err(refuse)? {
+        Ok(response) => return Ok(response),
+        Err(question) => question,
     };
+    let answer = Box::pin(answer_with_trials(&state, *question)).await;
     answer.map(|answer| json(&answer)).map_err(refuse)
+}
+
+/// The answer, or a question that asks for trials. Apart, because what lives in a future is moved
+/// with it from layer to layer.
+fn at_once(state: &AppState, body: &[u8]) -> Result<Result<Response, Box<Question>>, Vec<Fault>> {
+    let node = Node::from_json(body).map_err(|fault| vec![fault])?;
+    let question = Question::read(&node, &state.deployment)?;
+    if question.monte_carlo.is_some() {
+        return Ok(Err(Box::new(question)));
+    }
+    answer(&question).map(|answer| Ok(json(&answer)))
 }
 
 /// Restate one reading in another frame, by URL.
