@@ -249,9 +249,24 @@ impl Nets {
         );
         let matrix = self.turned.then_some(
             #[inline(always)]
-            |i| self.turns.get::<A>(i).matrix(),
+            |i| exact_where_still(self.turns.get::<A>(i)).matrix(),
         );
         answers.fill(fields, units, self.as_given, motion, matrix);
+    }
+}
+
+/// A turn that turns nothing multiplies by one, as it does in [`Kernel::new`]: the ratio of its
+/// length to itself would not.
+#[inline(always)]
+fn exact_where_still<A: Arithmetic>(
+    turn: Quaternion<DoubleDouble<A>>,
+) -> Quaternion<DoubleDouble<A>> {
+    let [x, y, z] = &turn.v;
+    let still = (x.hi == 0.0) & (y.hi == 0.0) & (z.hi == 0.0);
+    let (hi, lo) = (turn.w.hi, turn.w.lo);
+    Quaternion {
+        w: DoubleDouble::of(if still { 1.0 } else { hi }, if still { 0.0 } else { lo }),
+        ..turn
     }
 }
 
