@@ -334,7 +334,12 @@ fn a_whole_turn_changes_nothing() {
     let rows: Vec<Row> = (0..2000)
         .map(|i| {
             let field = [[number(i), number(i + 7), number(i + 13)], [1e-6; 3]];
-            (field, [0.0; 3], [-0.9, 0.0, 0.0, 0.0], -360.0)
+            (
+                field,
+                [0.0; 3],
+                [-0.9, 0.0, 0.0, 0.0],
+                -360.0 * (i % 9) as f64,
+            )
         })
         .collect();
     let setting = Setting {
@@ -342,17 +347,12 @@ fn a_whole_turn_changes_nothing() {
         to: MILLI_NANO,
         calibration: [None; 2],
     };
-    let axis = [0.3, -1.7, 2.9];
-    let whole = RowChange::Angle {
-        axis,
+    let about = |i: u32| RowChange::Angle {
+        axis: [0.3, -1.7, f64::from(i).sqrt()],
         radians: DEGREES,
     };
-    let fixed = Change::Rotate(Turn::AxisAngle {
-        axis,
-        angle: 720.0,
-        radians: DEGREES,
-    });
-    for change in [whole, RowChange::Quaternion, RowChange::Fixed(fixed)] {
+    // How the length of the axis rounds differs from one to the next.
+    for change in (1..20).map(about).chain([RowChange::Quaternion]) {
         let step = RowStep {
             change,
             inverse: false,
