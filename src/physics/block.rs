@@ -7,12 +7,13 @@ use std::sync::Arc;
 use super::double_double::{Arithmetic, Dd, Portable};
 use super::error::Impossible;
 use super::field::{FieldUnits, Kernel, Measured};
+use super::fields::Fields;
 use super::lanes::{LANES, Work, dispatch, tame};
 use super::missing::{ALL_KNOWN, Known};
 use super::real::Vec3;
 use super::reduction::{Calibration, Reduction};
 use super::resolved::Resolved;
-use super::restated::{self, Answers, Fields, Units};
+use super::restated::{self, Answers, Units};
 
 /// E and B of many readings, component by component, all of one length; a NaN is missing.
 #[derive(Clone, Copy, Debug, Default)]

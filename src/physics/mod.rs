@@ -11,6 +11,7 @@ pub mod eigen;
 pub mod energy;
 pub mod error;
 pub mod field;
+mod fields;
 pub mod generator;
 pub mod given;
 pub mod invariants;

@@ -6,13 +6,14 @@
 use super::boost::SMALL_W;
 use super::double_double::{Arithmetic, COS_DIVISORS, Dd, DoubleDouble, SIN_DIVISORS};
 use super::field::Kernel;
+use super::fields::Fields;
 use super::given::Given;
 use super::lanes::{Boosts, LANES, Lanes, Numbers, Turns, lanes, tame};
 use super::lorentz::{Change, before_turn, normalised};
 use super::pure_boost::{Boost, one_less_beta2};
 use super::quaternion::Quaternion;
 use super::real::{Real, Vec3, vector};
-use super::restated::{Answers, Fields, Units};
+use super::restated::{Answers, Units};
 use super::rotation::{ROUNDING_LIMIT, Turn, advance_half, split_quarters, unit_axis};
 use super::rows::{Motions, RowChange, RowStep};
 use super::scale::Scale;
