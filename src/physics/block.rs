@@ -10,10 +10,9 @@ use super::field::{FieldUnits, Kernel, Measured};
 use super::fields::Fields;
 use super::lanes::{LANES, Work, dispatch, tame};
 use super::missing::{ALL_KNOWN, Known};
-use super::real::Vec3;
 use super::reduction::{Calibration, Reduction};
 use super::resolved::Resolved;
-use super::restated::{self, Answers, Units};
+use super::restated::{Answers, Units};
 
 /// E and B of many readings, component by component, all of one length; a NaN is missing.
 #[derive(Clone, Copy, Debug, Default)]
@@ -97,12 +96,10 @@ impl Block {
         let mut last = (ALL_KNOWN, ALL_KNOWN);
         for start in (0..readings.len()).step_by(LANES) {
             if let Some(kernel) = &self.kernel {
-                let chained = self.way.chained();
                 dispatch(
                     Pass {
                         block: self,
-                        motion: kernel.motion.as_ref().map(|motion| (motion, chained)),
-                        matrix: kernel.matrix.as_ref(),
+                        kernel,
                         readings: &readings,
                         start,
                         fields: &mut fields,
@@ -132,8 +129,7 @@ impl Block {
 /// The work on some rows of a block.
 struct Pass<'p> {
     block: &'p Block,
-    motion: Option<(&'p restated::Motion<Portable>, f64)>,
-    matrix: Option<&'p [Vec3<Dd>; 3]>,
+    kernel: &'p Kernel<Dd>,
     readings: &'p Readings<'p>,
     start: usize,
     fields: &'p mut Fields,
@@ -145,14 +141,10 @@ impl Work for Pass<'_> {
     fn run<A: Arithmetic>(self) {
         let setting = &self.block.setting;
         self.fields.load::<A>(self.readings, self.start, setting);
-        let motion = self.motion.map(|((d, k, p, q), chained)| {
-            let motion = (d.map(Dd::by), k.by(), p.by(), q.by());
-            move |_| (motion, chained)
-        });
-        let matrix = self.matrix.map(|rows| {
-            let matrix = rows.map(|row| row.map(Dd::by));
-            move |_| matrix
-        });
+        let Kernel { motion, matrix, .. } = self.kernel.by::<A>();
+        let chained = self.block.way.chained();
+        let motion = motion.map(|motion| move |_| (motion, chained));
+        let matrix = matrix.map(|matrix| move |_| matrix);
         let units = self.block.units.by::<A>();
         self.answers
             .fill(self.fields, units, self.block.as_given, motion, matrix);

@@ -238,7 +238,8 @@ fn put<A: Arithmetic>(
     lanes[2][i] = if kept { z } else { f64::NAN };
 }
 
-/// The largest absolute value of numbers of which all or none are numbers.
+/// The largest absolute value. It may pass over what is not a number: rows that can lead to such
+/// have an infinite size, of which no answer keeps enough.
 #[inline(always)]
 fn largest([x, y, z]: [f64; 3]) -> f64 {
     larger(larger(x.abs(), y.abs()), z.abs())

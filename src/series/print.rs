@@ -142,7 +142,7 @@ fn push_notices(out: &mut Vec<u8>, block: &Block, row: usize) {
 }
 
 /// The notices on an answer as text: their codes with spaces between them.
-fn noted(block: &Block, row: usize) -> String {
+pub(super) fn noted(block: &Block, row: usize) -> String {
     block.notices(row).join(" ")
 }
 

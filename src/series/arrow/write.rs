@@ -12,7 +12,7 @@ use super::super::column::Column;
 use super::super::header::Header;
 use super::super::names::COLUMNS;
 use super::super::outlet::Done;
-use super::super::print::{Columns, count};
+use super::super::print::{Columns, count, noted};
 use super::super::problem;
 
 /// The answers of a block, as far as a bad row did not end it.
@@ -41,14 +41,19 @@ impl Sheet {
             Some(String::from_utf8_lossy(text).into_owned())
         };
         let cells = (0..carried.columns).map(|i| (0..rows).map(|row| cell(row, i)).collect());
+        let cells = cells.collect();
         let bad = block.bad.iter().take_while(|(row, _)| *row < rows);
         let problems = bad.map(|(row, faults)| (*row, problem::as_text(faults)));
-        let is_bad = |row: &usize| block.bad.binary_search_by_key(row, |(own, _)| *own).is_ok();
-        let notices = block.notices.iter().take_while(|(row, _)| *row < rows);
-        let notices = notices.filter(|(row, _)| !is_bad(row));
-        let notices = notices.map(|(row, codes)| (*row, codes.join(" ")));
-        let (cells, problems) = (cells.collect(), problems.collect());
-        let notices = notices.collect();
+        let problems = problems.collect();
+        let is_good = |row: &usize| {
+            block
+                .bad
+                .binary_search_by_key(row, |(own, _)| *own)
+                .is_err()
+        };
+        let notices = block.notices.iter().map(|(row, _)| *row);
+        let notices = notices.take_while(|row| *row < rows).filter(is_good);
+        let notices = notices.map(|row| (row, noted(&block, row))).collect();
         let mut answers: [Column; 12] = Default::default();
         if !block.standard.is_empty() {
             for (i, all) in answers[6..].iter_mut().enumerate() {
