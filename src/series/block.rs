@@ -46,6 +46,23 @@ pub(super) struct Block {
 pub(super) const MISSING: [f64; 6] = [f64::NAN; 6];
 
 impl Block {
+    /// No rows yet, and room for so many.
+    pub(super) fn with_capacity(takes: Takes, rows: usize) -> Block {
+        let mut block = Block::default();
+        let wanted = [
+            (true, &mut block.field[..]),
+            (takes.velocity, &mut block.velocity),
+            (takes.quaternion, &mut block.quaternion),
+            (takes.angle, std::slice::from_mut(&mut block.angle)),
+        ];
+        for (_, columns) in wanted.into_iter().filter(|(wanted, _)| *wanted) {
+            columns
+                .iter_mut()
+                .for_each(|column| column.own().reserve(rows));
+        }
+        block
+    }
+
     /// Adds a row: what it says of the field and, as far as the series takes it, of its motion.
     pub(super) fn push(
         &mut self,

@@ -12,6 +12,7 @@ use super::Series;
 use super::block::{Block, MISSING, Takes};
 use super::carry::Carried;
 use super::header::{Column, Header};
+use super::job::ROW;
 use super::names::Role;
 use super::number;
 use super::scan::Span;
@@ -85,7 +86,7 @@ impl<'s> Reader<'s> {
 
     /// Reads all rows of a text. Lines without anything are none.
     pub(super) fn read(&self, text: &[u8], block: &mut Block, carried: &mut Carried) -> Vec<Line> {
-        let mut lines = Vec::with_capacity(text.len() / 96);
+        let mut lines = Vec::with_capacity(text.len() / ROW);
         let mut cells: Vec<Option<Cow<[u8]>>> = vec![None; self.cells];
         let uncertain = self.header.uncertain();
         let mut from = 0;

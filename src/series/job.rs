@@ -7,12 +7,15 @@ use arrow_schema::SchemaRef;
 use bytes::Bytes;
 
 use super::arrow::{Sheet, Table, answered_in_place};
-use super::block::Block;
+use super::block::{Block, Takes};
 use super::carry::Carried;
 use super::header::Header;
 use super::outlet::Done;
 use super::print::{self, Columns};
 use super::{Format, Series, csv, ndjson};
+
+/// Bytes of a short row of text, which says how many a block may have.
+pub(super) const ROW: usize = 96;
 
 /// What is the same for all jobs of a series.
 #[derive(Debug)]
@@ -80,7 +83,7 @@ impl Plan {
             anew,
         } = self;
         done.bytes.reserve(text.len() + text.len() / 8);
-        let mut block = Block::default();
+        let mut block = Block::with_capacity(Takes::of(series), text.len() / ROW);
         let cells = anew.as_ref().map(|(_, columns)| &columns.cells[..]);
         let mut carried = Carried::new(cells.map_or(0, <[String]>::len));
         let stop = series.stop;

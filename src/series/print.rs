@@ -1,11 +1,11 @@
 //! Answers as text: in the text of their own rows, or printed anew in another format.
 
-use super::block::Block;
+use super::block::{Block, MISSING};
 use super::carry::Carried;
 use super::csv::push_field;
 use super::header::{Added, Header};
 use super::names::COLUMNS;
-use super::number;
+use super::number::{self, Texts};
 use super::outlet::Done;
 use super::scan::Span;
 use super::{csv, ndjson, problem};
@@ -96,38 +96,40 @@ fn each_row(
     }
 }
 
-/// The number of the answer to a row: of the field (0 to 5) or an uncertainty (6 to 11).
-fn answer(block: &Block, row: usize, i: usize) -> f64 {
-    match i.checked_sub(6) {
+/// The numbers of the answer to a row as text, nothing where there is none: those of the field
+/// (0 to 5) and their uncertainties (6 to 11).
+#[inline]
+fn answers<'t>(texts: &'t mut Texts<12>, block: &Block, row: usize) -> [&'t [u8]; 12] {
+    let standard = block.standard(row).unwrap_or(&MISSING);
+    texts.of(std::array::from_fn(|i| match i.checked_sub(6) {
         None => block.field[i][row],
-        Some(i) => block.standard(row).map_or(f64::NAN, |known| known[i]),
-    }
+        Some(i) => standard[i],
+    }))
 }
 
-/// A vector of the answer as JSON.
-fn push_vector(out: &mut Vec<u8>, block: &Block, row: usize, first: usize) {
-    for i in 0..3 {
+/// A vector of an answer as JSON.
+fn push_vector(out: &mut Vec<u8>, vector: &[&[u8]]) {
+    for (i, text) in vector.iter().enumerate() {
         out.push(if i == 0 { b'[' } else { b',' });
-        let value = answer(block, row, first + i);
-        if value.is_nan() {
+        if text.is_empty() {
             out.extend_from_slice(b"null");
         } else {
-            number::print(out, value);
+            number::push(out, text);
         }
     }
     out.push(b']');
 }
 
 /// The uncertainties of an answer as JSON.
-fn push_uncertainty(out: &mut Vec<u8>, block: &Block, row: usize) {
+fn push_uncertainty(out: &mut Vec<u8>, block: &Block, row: usize, answers: &[&[u8]; 12]) {
     if block.standard(row).is_none() {
         out.extend_from_slice(b"null");
         return;
     }
     out.extend_from_slice(b"{\"e\":");
-    push_vector(out, block, row, 6);
+    push_vector(out, &answers[6..9]);
     out.extend_from_slice(b",\"b\":");
-    push_vector(out, block, row, 9);
+    push_vector(out, &answers[9..]);
     out.push(b'}');
 }
 
@@ -176,14 +178,16 @@ pub(super) fn ndjson_in_place(
         }
         let mut parts = [(line.e, 0), (line.b, 3), (line.uncertainty, 6)];
         parts.sort_unstable_by_key(|(span, _)| span.from);
+        let mut texts = Texts::new();
+        let answers = answers(&mut texts, block, row);
         let mut copied = 0;
         for (span, first) in parts.into_iter().filter(|(span, _)| !span.is_none()) {
             done.bytes
                 .extend_from_slice(&text[copied..span.from as usize]);
             match first {
                 _ if faults.is_some() => done.bytes.extend_from_slice(b"null"),
-                6 => push_uncertainty(&mut done.bytes, block, row),
-                _ => push_vector(&mut done.bytes, block, row, first),
+                6 => push_uncertainty(&mut done.bytes, block, row, &answers),
+                _ => push_vector(&mut done.bytes, &answers[first..first + 3]),
             }
             copied = span.to as usize;
         }
@@ -192,7 +196,7 @@ pub(super) fn ndjson_in_place(
             None => {
                 if line.uncertainty.is_none() && block.standard(row).is_some() {
                     done.bytes.extend_from_slice(b",\"uncertainty\":");
-                    push_uncertainty(&mut done.bytes, block, row);
+                    push_uncertainty(&mut done.bytes, block, row, &answers);
                 }
                 push_notices(&mut done.bytes, block, row);
                 done.bytes.extend_from_slice(b"}\n");
@@ -220,6 +224,8 @@ pub(super) fn csv_in_place(
     each_row(block, stop, done, |row, faults, done| {
         let line = &lines[row];
         let out = &mut done.bytes;
+        let mut texts = Texts::new();
+        let answers = answers(&mut texts, block, row);
         if line.whole {
             let text = &text[line.from..line.from + line.length];
             let mut copied = 0;
@@ -230,10 +236,7 @@ pub(super) fn csv_in_place(
                     [comma] => out.push(*comma),
                     between => out.extend_from_slice(between),
                 }
-                let value = answer(block, row, *i);
-                if !value.is_nan() {
-                    number::print(out, value);
-                }
+                number::push(out, answers[*i]);
                 copied = span.to as usize;
             }
             out.extend_from_slice(&text[copied..]);
@@ -242,10 +245,7 @@ pub(super) fn csv_in_place(
         }
         out.push(b',');
         for i in header.added.numbers() {
-            let value = answer(block, row, i);
-            if !value.is_nan() {
-                number::print(out, value);
-            }
+            number::push(out, answers[i]);
             out.push(b',');
         }
         if header.added.notices {
@@ -273,6 +273,8 @@ pub(super) fn ndjson(
     let kept: Vec<Vec<u8>> = kept.iter().map(|name| json_text(name.as_bytes())).collect();
     each_row(block, stop, done, |row, faults, done| {
         let out = &mut done.bytes;
+        let mut texts = Texts::new();
+        let answers = answers(&mut texts, block, row);
         out.push(b'{');
         let name = |out: &mut Vec<u8>, name: &[u8]| {
             if out.last() != Some(&b'{') {
@@ -294,7 +296,7 @@ pub(super) fn ndjson(
             if columns.answers[which] {
                 name(out, letter);
                 match faults {
-                    None => push_vector(out, block, row, 3 * which),
+                    None => push_vector(out, &answers[3 * which..][..3]),
                     Some(_) => out.extend_from_slice(b"null"),
                 }
             }
@@ -302,7 +304,7 @@ pub(super) fn ndjson(
         if columns.answers[2] || columns.answers[3] {
             name(out, b"\"uncertainty\"");
             match faults {
-                None => push_uncertainty(out, block, row),
+                None => push_uncertainty(out, block, row, &answers),
                 Some(_) => out.extend_from_slice(b"null"),
             }
         }
@@ -340,14 +342,13 @@ pub(super) fn csv(
             push_field(out, carried.cell(row, column).unwrap_or_default());
             out.push(b',');
         };
+        let mut texts = Texts::new();
+        let answers = answers(&mut texts, block, row);
         for column in 0..time.len() {
             cell(out, column);
         }
         for i in (0..12).filter(|i| columns.answers[i / 3]) {
-            let value = answer(block, row, i);
-            if !value.is_nan() {
-                number::print(out, value);
-            }
+            number::push(out, answers[i]);
             out.push(b',');
         }
         for column in 0..kept.len() {

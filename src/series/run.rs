@@ -1,9 +1,11 @@
 //! A whole series in process: from a reader to a writer, on as many threads as asked for.
 
+use std::collections::VecDeque;
 use std::io::{self, Read, Write};
 use std::sync::Arc;
+use std::sync::mpsc::{self, Receiver, TryRecvError};
 
-use rayon::iter::{IntoParallelIterator, ParallelIterator};
+use rayon::Yield;
 
 use super::{Counts, Done, Format, Intake, Job, Limits, Outlet, Refusal, Series};
 
@@ -23,7 +25,7 @@ pub enum Failure {
 }
 
 /// Answers everything that `read` gives, in order, to `write`; on so many threads, of which one
-/// reads and one writes while others answer.
+/// also reads and writes.
 ///
 /// # Errors
 /// The rows cannot be understood, or reading or writing fails.
@@ -39,74 +41,73 @@ pub fn run(
     let pool = pool.map_err(io::Error::other)?;
     let mut outlet = Outlet::new(&series, output);
     let mut intake = Intake::new(Arc::new(series), input, output, limits);
-    // A few jobs a thread, so that none waits long for the slowest; one, where it waits for none.
-    let most = if threads == 1 { 1 } else { 4 * threads };
-    pool.install(|| {
-        let mut bytes = vec![0; BLOCK];
-        let (mut jobs, mut done) = (Vec::<Job>::new(), Vec::<Done>::new());
-        let mut ended = None;
-        while ended.is_none() || !jobs.is_empty() || !done.is_empty() {
-            let gather = || match &ended {
-                None => gather(&mut intake, &mut read, &mut bytes, most),
-                Some(_) => (Vec::new(), None),
-            };
-            let answer = || jobs.into_par_iter().map(Job::run).collect();
-            let send = || send(&mut outlet, done, &mut write);
-            let ((gathered, end), (answered, sent)) =
-                rayon::join(gather, || rayon::join(answer, send));
-            sent?;
-            if outlet.stopped() {
-                break;
+    // Enough that no thread waits while one reads or writes; a single one waits for none.
+    let most = if threads == 1 { 1 } else { 8 * threads };
+    let answer = || {
+        rayon::scope_fifo(|scope| {
+            let mut bytes = vec![0; BLOCK];
+            let (mut whole, mut ended) = (false, None);
+            let mut asked = VecDeque::<Receiver<Done>>::new();
+            loop {
+                if ended.is_none() && asked.len() < most {
+                    match gather(&mut intake, &mut read, &mut bytes, &mut whole) {
+                        Ok(Some(job)) => {
+                            let (answer, answered) = mpsc::sync_channel(1);
+                            scope.spawn_fifo(move |_| drop(answer.send(job.run())));
+                            asked.push_back(answered);
+                        }
+                        Ok(None) => ended = Some(Ok(())),
+                        Err(failure) => ended = Some(Err(failure)),
+                    }
+                    continue;
+                }
+                // Nothing comes of a job that panicked; the scope hands its panic on.
+                let Some(done) = asked.pop_front().and_then(await_helping) else {
+                    break;
+                };
+                for piece in outlet.accept(done) {
+                    write.write_all(&piece)?;
+                }
+                if outlet.stopped() {
+                    return Ok(());
+                }
             }
-            (jobs, done) = (gathered, answered);
-            ended = ended.or(end);
-        }
-        if let Some(Err(failure)) = ended {
-            return Err(failure);
-        }
-        for piece in outlet.end() {
-            write.write_all(&piece)?;
-        }
-        write.flush()?;
-        Ok(outlet.counts())
-    })
+            ended.unwrap_or(Ok(()))
+        })
+    };
+    pool.install(answer)?;
+    for piece in outlet.end() {
+        write.write_all(&piece)?;
+    }
+    write.flush()?;
+    Ok(outlet.counts())
 }
 
-/// The next jobs, and once there are no more, why.
+/// The next job, unless there are no more.
 fn gather(
     intake: &mut Intake,
     read: &mut impl Read,
     bytes: &mut [u8],
-    most: usize,
-) -> (Vec<Job>, Option<Result<(), Failure>>) {
-    let mut jobs = Vec::new();
-    while jobs.len() < most {
-        let length = match read.read(bytes) {
-            Ok(length) => length,
-            Err(failure) => return (jobs, Some(Err(failure.into()))),
-        };
+    whole: &mut bool,
+) -> Result<Option<Job>, Failure> {
+    while !*whole {
+        if let Some(job) = intake.job(BLOCK).map_err(Failure::Refused)? {
+            return Ok(Some(job));
+        }
+        let length = read.read(bytes)?;
         intake.push(&bytes[..length]);
-        loop {
-            let job = match length {
-                0 => intake.last(),
-                _ => intake.job(BLOCK),
-            };
-            match job {
-                Ok(Some(job)) => jobs.push(job),
-                Ok(None) => break,
-                Err(refusal) => return (jobs, Some(Err(Failure::Refused(refusal)))),
-            }
-        }
-        if length == 0 {
-            return (jobs, Some(Ok(())));
-        }
+        *whole = length == 0;
     }
-    (jobs, None)
+    intake.last().map_err(Failure::Refused)
 }
 
-fn send(outlet: &mut Outlet, done: Vec<Done>, write: &mut impl Write) -> io::Result<()> {
-    for piece in done.into_iter().flat_map(|done| outlet.accept(done)) {
-        write.write_all(&piece)?;
+/// An answer, once it is there; answers other jobs meanwhile.
+fn await_helping(answered: Receiver<Done>) -> Option<Done> {
+    loop {
+        match answered.try_recv() {
+            Err(TryRecvError::Empty) if rayon::yield_now() == Some(Yield::Executed) => {}
+            Ok(done) => return Some(done),
+            Err(_) => return answered.recv().ok(),
+        }
     }
-    Ok(())
 }
