@@ -5,6 +5,9 @@
 //! everyone else, since blocks start in the order in which they were handed over.
 
 use std::panic::{AssertUnwindSafe, catch_unwind, resume_unwind};
+use std::pin::Pin;
+use std::task::{Context, Poll, ready};
+use std::thread;
 
 use tokio::sync::oneshot;
 
@@ -40,12 +43,8 @@ impl Pool {
         self.0.current_num_threads()
     }
 
-    /// Runs one block of work and gives its result. Dropped before that, a block that has not
-    /// begun never does, and the result of one that has is thrown away.
-    ///
-    /// # Panics
-    /// As the work does.
-    pub async fn run<T: Send + 'static>(&self, work: impl FnOnce() -> T + Send + 'static) -> T {
+    /// Hands over one block of work, whose result is to be awaited.
+    pub fn run<T: Send + 'static>(&self, work: impl FnOnce() -> T + Send + 'static) -> Work<T> {
         let (sender, receiver) = oneshot::channel();
         self.0.spawn(move || {
             if !sender.is_closed() {
@@ -54,11 +53,22 @@ impl Pool {
                 let _ = sender.send(catch_unwind(AssertUnwindSafe(work)));
             }
         });
-        match receiver
-            .await
-            .expect("every block is run while its result is awaited")
-        {
-            Ok(result) => result,
+        Work(receiver)
+    }
+}
+
+/// A block of work under way, and once awaited its result, or its panic. Dropped before that, a
+/// block that has not begun never does, and the result of one that has is thrown away.
+#[must_use = "a block that is dropped may never begin"]
+pub struct Work<T>(oneshot::Receiver<thread::Result<T>>);
+
+impl<T> Future for Work<T> {
+    type Output = T;
+
+    fn poll(mut self: Pin<&mut Self>, context: &mut Context<'_>) -> Poll<T> {
+        let result = ready!(Pin::new(&mut self.0).poll(context));
+        match result.expect("every block is run while its result is awaited") {
+            Ok(result) => Poll::Ready(result),
             Err(panic) => resume_unwind(panic),
         }
     }

@@ -14,7 +14,6 @@ use futures_util::FutureExt;
 use http_body_util::BodyExt;
 use tokio::{
     sync::{oneshot, watch},
-    task::{JoinError, JoinHandle},
     time::timeout,
 };
 
@@ -24,6 +23,7 @@ use crate::{
         AppState,
         problem::{Problem, Source},
     },
+    pool::Work,
     series::{BLOCK, Done, Intake, Job, Outlet, Refusal},
 };
 
@@ -47,7 +47,7 @@ pub(super) struct Drive {
     /// Told once, how the answer begins.
     head: Option<oneshot::Sender<Result<(), Problem>>>,
     /// Blocks being answered, in order.
-    working: VecDeque<JoinHandle<Done>>,
+    working: VecDeque<Work<Done>>,
     /// Whether the service must come to its end.
     ending: watch::Receiver<bool>,
     packing: Packing,
@@ -245,14 +245,12 @@ impl Drive {
                 Ok(!self.outlet.stopped())
             }
             Ok(Some(job)) => {
-                let state = state.clone();
-                let work = async move { state.pool.run(|| job.run()).await };
-                self.working.push_back(tokio::spawn(work));
+                self.working.push_back(state.pool.run(|| job.run()));
                 Ok(true)
             }
             Err(refusal) => {
                 while let Some(work) = self.working.pop_front() {
-                    self.accept(answered(work.await)).await?;
+                    self.accept(work.await).await?;
                 }
                 if self.outlet.stopped() {
                     return Ok(false);
@@ -283,7 +281,7 @@ impl Drive {
             _ = ending.wait_for(|ending| *ending) => Event::Ending,
             done = first => {
                 working.pop_front();
-                Event::Answered(answered(done))
+                Event::Answered(done)
             }
             () = unread.gone() => Event::Gone,
             frame = body.frame(), if reads => Event::Arrived(frame.map(|frame| {
@@ -338,11 +336,6 @@ impl Drive {
             let _ = head.send(how);
         }
     }
-}
-
-/// The answer to a block, or its panic.
-fn answered(done: Result<Done, JoinError>) -> Done {
-    done.unwrap_or_else(|failed| std::panic::resume_unwind(failed.into_panic()))
 }
 
 impl Drop for Running {
