@@ -23,6 +23,7 @@ mod problems;
 mod schema;
 mod series;
 mod series_notices;
+mod series_numbers;
 mod series_uncertainty;
 mod start;
 mod stream;
