@@ -70,7 +70,8 @@ fn start(settings: &Settings, matches: &ArgMatches) -> ExitCode {
             return ExitCode::from(CANNOT_START);
         }
     };
-    let runtime = tokio::runtime::Builder::new_multi_thread()
+    // For what comes in; what answers has threads of its own.
+    let runtime = tokio::runtime::Builder::new_current_thread()
         .enable_all()
         .build();
     match runtime.and_then(|runtime| runtime.block_on(run(listener, config, frames))) {
@@ -162,8 +163,7 @@ async fn run(
         stop.await;
         tell_manager(NotifyState::Stopping);
     })
-    .await;
-    Ok(())
+    .await
 }
 
 /// Tells systemd, when it started the service, what the service is about to do.

@@ -32,3 +32,4 @@ mod support;
 mod sweep;
 mod times;
 mod uncertainty;
+mod workers;

@@ -1,13 +1,20 @@
 //! Heavy work on threads of its own.
 
 use std::sync::{
-    Arc, Barrier,
+    Arc, Barrier, Mutex,
     atomic::{AtomicUsize, Ordering},
     mpsc,
 };
 
+use axum::{
+    body::Body,
+    http::{Request, StatusCode},
+};
 use lodeframe::pool::Pool;
+use percent_encoding::{NON_ALPHANUMERIC, utf8_percent_encode};
 use tokio::task::{JoinSet, yield_now};
+
+use crate::support::{send, service};
 
 #[tokio::test]
 async fn blocks_run_beside_each_other() {
@@ -62,4 +69,35 @@ async fn a_panic_reaches_whoever_awaits_the_block() {
     });
     let panic = failed.await.expect_err("it panics").into_panic();
     assert_eq!(panic.downcast_ref(), Some(&"in a block"));
+}
+
+/// With one thread for both, a short question overtakes a long one only when that is answered
+/// elsewhere.
+#[tokio::test]
+async fn a_long_question_lets_short_ones_pass() {
+    let steps = |n: usize| vec![r#"{"boost":{"velocity":[1e8,0,0]}}"#; n].join(",");
+    let question = |n: usize| format!(r#"{{"e":[1,2,3],"b":[0,0,1e-8],"steps":[{}]}}"#, steps(n));
+    let post = |body: String| {
+        let request = Request::post("/v1/transform").header("content-type", "application/json");
+        request.body(Body::from(body)).expect("a request")
+    };
+    let by_url = |n: usize| {
+        let steps = format!("[{}]", steps(n));
+        let steps = utf8_percent_encode(&steps, NON_ALPHANUMERIC);
+        let path = format!("/v1/transform?e=1,2,3&b=0,0,1e-8&steps={steps}");
+        Request::get(path).body(Body::empty()).expect("a request")
+    };
+    for (long, short) in [
+        (post(question(100)), post(question(1))),
+        (by_url(100), by_url(1)),
+    ] {
+        let (app, order) = (service(), Mutex::new(Vec::new()));
+        let ask = async |name, request| {
+            let answer = send(app.clone(), request).await;
+            assert_eq!(answer.status, StatusCode::OK, "{}", answer.text());
+            order.lock().expect("no panic").push(name);
+        };
+        tokio::join!(ask("long", long), ask("short", short));
+        assert_eq!(*order.lock().expect("no panic"), ["short", "long"]);
+    }
 }

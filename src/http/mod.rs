@@ -12,7 +12,7 @@
 //!    `cargo run -- openapi > openapi/openapi.json`.
 //!
 //! Request ids, logs, metrics, limits and the text of problems come from [`middleware`]; a handler
-//! does nothing for them.
+//! does nothing for them. What may take longer than a millisecond goes to the [pool](crate::pool).
 
 pub mod accept;
 pub mod body;
@@ -35,6 +35,7 @@ pub mod schema;
 pub mod serve;
 mod state;
 mod stream;
+pub mod workers;
 
 pub use router::app;
 pub use state::AppState;

@@ -5,18 +5,12 @@ use std::sync::Arc;
 use futures_util::{StreamExt, future::join_all, stream};
 
 use super::AppState;
-use crate::{
-    answer::{Answer, Plan},
-    question::Question,
-};
+use crate::answer::{Answer, Plan};
 
-/// Adds what the trials say that a question asks for. Dropped, it begins no further block.
-pub(super) async fn add_trials(state: &AppState, question: &Question, answer: &mut Answer) {
+/// Adds what the trials of a plan say to the answer. Dropped, it begins no further block.
+pub(super) async fn add_trials(state: &AppState, plan: Plan, answer: &mut Answer) {
     // Each holds its values in memory until its intervals are known.
     let _turn = state.trial_runs.acquire().await.expect("never closed");
-    let Some(plan) = Plan::new(question, answer) else {
-        return;
-    };
     let (plan, pool) = (Arc::new(plan), &state.pool);
     let blocks = (0..plan.blocks()).map(|number| {
         let (plan, made) = (plan.clone(), state.metrics.trials.clone());

@@ -11,14 +11,14 @@ use hyper_util::{
 };
 use tokio::{
     io::{AsyncRead, AsyncWrite},
-    net::TcpListener,
+    net::{TcpListener, TcpStream},
     sync::{OwnedSemaphorePermit, Semaphore},
     time::timeout,
 };
 use tokio_io_timeout::TimeoutStream;
 use tokio_rustls::TlsAcceptor;
 
-use super::{AppState, doorstep::Doorstep, lazy_timer::LazyTimer, log};
+use super::{AppState, doorstep::Doorstep, lazy_timer::LazyTimer, log, workers::Workers};
 
 /// Most of a request that a connection holds unread, bytes: room for the largest head that is
 /// answered with a problem, and no more, since every connection may fill it.
@@ -30,12 +30,16 @@ const LAST_WORD: Duration = Duration::from_secs(1);
 /// Serves `app` on `listener` until `stop` is done, then lets running requests finish.
 ///
 /// A series that still runs after `--grace` ends with a last word; what is busy even then is cut.
+///
+/// # Errors
+/// The system gives no threads to answer on.
 pub async fn serve(
     listener: TcpListener,
     app: Router,
     state: &AppState,
     stop: impl Future<Output = ()>,
-) {
+) -> io::Result<()> {
+    let workers = Workers::start()?;
     let config = &state.config;
     let mut http = http1::Builder::new();
     http.max_buf_size(READ_BUFFER)
@@ -73,26 +77,28 @@ pub async fn serve(
         let place = Place::new(permit, state.clone());
         let (mut http, app, watcher) = (http.clone(), app.clone(), connections.watcher());
         http.timer(LazyTimer::default());
-        match tls.clone() {
-            None => {
-                tokio::spawn(converse(stream, http, app, watcher, place));
+        let (tls, patience) = (tls.clone(), config.idle_timeout);
+        let stream = stream.into_std();
+        workers.spawn(async move {
+            // Here, since a socket wakes the runtime in which it was made one of tokio's.
+            let stream = match stream.and_then(TcpStream::from_std) {
+                Ok(stream) => stream,
+                Err(error) => return log::event("warn", "cannot use a connection", &error),
+            };
+            let Some(tls) = tls else {
+                return converse(stream, http, app, watcher, place).await;
+            };
+            match timeout(patience, tls.accept(stream)).await {
+                Ok(Ok(stream)) => converse(stream, http, app, watcher, place).await,
+                Ok(Err(error)) => log::event("debug", "no TLS", &error),
+                Err(_) => log::event("debug", "no TLS", &"the client did not go on"),
             }
-            Some(tls) => {
-                let handshake = timeout(config.idle_timeout, tls.accept(stream));
-                tokio::spawn(async move {
-                    match handshake.await {
-                        Ok(Ok(stream)) => converse(stream, http, app, watcher, place).await,
-                        Ok(Err(error)) => log::event("debug", "no TLS", &error),
-                        Err(_) => log::event("debug", "no TLS", &"the client did not go on"),
-                    }
-                });
-            }
-        }
+        });
     }
     drop(listener);
     let mut done = pin!(connections.shutdown());
     if timeout(config.grace, &mut done).await.is_ok() {
-        return;
+        return Ok(());
     }
     // What still runs may be a series without an end: it says so to its client.
     state.ending.send_replace(true);
@@ -103,6 +109,7 @@ pub async fn serve(
             &"requests still running at the end of the grace were cut",
         );
     }
+    Ok(())
 }
 
 /// The place of one connection, given back when it ends.

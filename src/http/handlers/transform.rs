@@ -8,7 +8,7 @@ use axum::{
 
 use super::{json, svg};
 use crate::{
-    answer::{Answer, ENGINE},
+    answer::{Answer, ENGINE, Plan},
     chain,
     document::{Code, Fault, Node, Path, Segment, from_query},
     http::{
@@ -24,6 +24,10 @@ use crate::{
     picture,
     question::Question,
 };
+
+/// Questions that are longer, bytes, are left to the pool: a chain of a thousand steps takes up to
+/// two tenths of a second, for which other requests shall not wait.
+const LONG: usize = 2 * 1024;
 
 /// Restate one reading in another frame.
 ///
@@ -79,7 +83,13 @@ pub(crate) async fn transform(
     negotiate(request.headers(), &[JSON])?;
     let body = json_body(request, state.config.max_body).await?;
     let refuse = |faults| Problem::from_faults(faults, Source::Body);
-    let question = match at_once(&state, &body).map_err(refuse)? {
+    let answered = if body.len() > LONG {
+        let shared = state.clone();
+        state.pool.run(move || at_once(&shared, &body)).await
+    } else {
+        at_once(&state, &body)
+    };
+    let question = match answered.map_err(refuse)? {
         Ok(response) => return Ok(response),
         Err(question) => question,
     };
@@ -129,7 +139,8 @@ pub(crate) async fn transform_by_url(
 ) -> Result<Response, Problem> {
     let representation = negotiate(&headers, &[JSON, SVG])?;
     let refuse = |faults| Problem::from_faults(faults, Source::Query);
-    let node = from_query(&query.unwrap_or_default()).map_err(refuse)?;
+    let query = query.unwrap_or_default();
+    let node = from_query(&query).map_err(refuse)?;
     let mut question = Question::read(&node, &state.deployment).map_err(refuse)?;
     if representation == SVG {
         // A picture does not show them.
@@ -147,11 +158,19 @@ pub(crate) async fn transform_by_url(
             let answer = answer_with_trials(&state, question).await;
             return answer.map(|answer| json(&answer)).map_err(refuse);
         }
-        let answer = answer(&question).map_err(refuse)?;
-        Ok(match representation {
-            SVG => svg(picture::reading(&question, &answer)),
-            _ => json(&answer),
-        })
+        let work = move || -> Result<_, Vec<Fault>> {
+            let answer = answer(&question)?;
+            Ok(match representation {
+                SVG => svg(picture::reading(&question, &answer)),
+                _ => json(&answer),
+            })
+        };
+        let answered = if query.len() > LONG {
+            state.pool.run(work).await
+        } else {
+            work()
+        };
+        answered.map_err(refuse)
     })
     .await
 }
@@ -162,8 +181,14 @@ fn answer(question: &Question) -> Result<Answer, Vec<Fault>> {
 
 /// Apart, and boxed, because what most questions do not need would make every answer's future larger.
 async fn answer_with_trials(state: &AppState, question: Question) -> Result<Answer, Vec<Fault>> {
-    let mut answer = answer(&question)?;
-    add_trials(state, &question, &mut answer).await;
+    let planning = state.pool.run(move || -> Result<_, Vec<Fault>> {
+        let mut answer = answer(&question)?;
+        Ok((Plan::new(&question, &mut answer), answer))
+    });
+    let (plan, mut answer) = planning.await?;
+    if let Some(plan) = plan {
+        add_trials(state, plan, &mut answer).await;
+    }
     Ok(answer)
 }
 
