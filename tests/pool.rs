@@ -10,11 +10,11 @@ use axum::{
     body::Body,
     http::{Request, StatusCode},
 };
-use lodeframe::pool::Pool;
+use lodeframe::{AppState, app, config::Config, pool::Pool};
 use percent_encoding::{NON_ALPHANUMERIC, utf8_percent_encode};
 use tokio::task::{JoinSet, yield_now};
 
-use crate::support::{send, service};
+use crate::support::send;
 
 #[tokio::test]
 async fn blocks_run_beside_each_other() {
@@ -71,8 +71,7 @@ async fn a_panic_reaches_whoever_awaits_the_block() {
     assert_eq!(panic.downcast_ref(), Some(&"in a block"));
 }
 
-/// With one thread for both, a short question overtakes a long one only when that is answered
-/// elsewhere.
+/// While the pool is busy a long question waits for it, and a short one does not.
 #[tokio::test]
 async fn a_long_question_lets_short_ones_pass() {
     let steps = |n: usize| vec![r#"{"boost":{"velocity":[1e8,0,0]}}"#; n].join(",");
@@ -91,13 +90,25 @@ async fn a_long_question_lets_short_ones_pass() {
         (post(question(100)), post(question(1))),
         (by_url(100), by_url(1)),
     ] {
-        let (app, order) = (service(), Mutex::new(Vec::new()));
+        let state = AppState::new(Config::default(), None);
+        let threads = state.pool.threads();
+        let free = Arc::new(Barrier::new(threads + 1));
+        let occupy = |_| {
+            let free = free.clone();
+            state.pool.run(move || free.wait())
+        };
+        let _occupied: Vec<_> = (0..threads).map(occupy).collect();
+        let (app, order) = (app(state.clone()), Mutex::new(Vec::new()));
         let ask = async |name, request| {
             let answer = send(app.clone(), request).await;
             assert_eq!(answer.status, StatusCode::OK, "{}", answer.text());
             order.lock().expect("no panic").push(name);
         };
-        tokio::join!(ask("long", long), ask("short", short));
+        let short_first = async {
+            ask("short", short).await;
+            free.wait();
+        };
+        tokio::join!(ask("long", long), short_first);
         assert_eq!(*order.lock().expect("no panic"), ["short", "long"]);
     }
 }

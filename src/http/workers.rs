@@ -43,6 +43,8 @@ impl Workers {
         let least = self.0.iter().min_by_key(|worker| worker.tasks());
         let worker = least.expect("there is at least one thread");
         let counted = worker.tasks.clone();
+        // Boxed, since a future that awaits another has room for it twice.
+        let task = Box::pin(task);
         worker.runtime.spawn(async move {
             task.await;
             drop(counted);
