@@ -1,7 +1,7 @@
 //! Threads that answer requests, one a core, each with a runtime of its own.
 //!
 //! A connection stays with the thread it was given to. Threads that take tasks from each other wake
-//! each other again and again for work of a few microseconds, which costs a sixth of the
+//! each other again and again for work of a few microseconds, which costs a seventh of the
 //! throughput of single readings. In return nothing long may run here: see [`crate::pool`].
 
 use std::{
