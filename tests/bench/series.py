@@ -23,16 +23,19 @@ MEDIA = {
     "csv": "text/csv",
     "arrow": "application/vnd.apache.arrow.stream",
 }
-REPEATS = 3
+TURNS = 5
 
 
-def best(run):
-    """The shortest of some runs."""
-    return min(run() for _ in range(REPEATS))
+def best(runs):
+    """The shortest seconds of each run, taken in turns: a slow moment of the machine meets all."""
+    turns = [{name: run() for name, run in runs.items()} for _ in range(TURNS)]
+    return {name: min(turn[name] for turn in turns) for name in runs}
 
 
 def in_process(binary, kind, to, threads, source, answer=None):
-    """Seconds of the library alone."""
+    """Seconds of the library alone; an answer of before is gone before the clock starts."""
+    if answer:
+        answer.unlink(missing_ok=True)
     command = [binary, kind, to, str(threads), QUERY, source, *filter(None, [answer])]
     out = subprocess.run(command, check=True, capture_output=True, text=True).stdout
     return float(out.split()[1])
@@ -47,6 +50,7 @@ def kernel(binary, count):
 
 def peer(name, source, answer):
     """Seconds of a script in Python."""
+    answer.unlink(missing_ok=True)
     command = [sys.executable, HERE / "peers.py", name, source, answer]
     return float(subprocess.run(command, check=True, capture_output=True, text=True).stdout)
 
@@ -126,41 +130,58 @@ def million(count, seconds):
     return f"{count / seconds / 1e6:.2f} M rows/s"
 
 
+def compare(options, kind, path, service, answer):
+    """The lines of a format: in process, file to file, beside the peers and over HTTP."""
+    count = options.rows
+
+    def ours(threads, *to):
+        return lambda: in_process(options.bench, kind, kind, threads, path, *to)
+
+    def scripted(name):
+        return lambda: peer(name, path, answer)
+
+    peers = {name: scripted(name) for name in PEERS if name.startswith(kind)}
+    seconds = best(
+        {
+            "kernel": lambda: kernel(options.bench, count),
+            "one": ours(1),
+            "two": ours(2),
+            "file": ours(2, answer),
+            "http": lambda: service.upload(kind, path),
+            **peers,
+        }
+    )
+    one, two, file, http = (seconds[name] for name in ("one", "two", "file", "http"))
+    size = f"{path.stat().st_size / count:.0f} bytes a row"
+    line(f"{kind}: the transformation alone, exact, one thread", million(count, seconds["kernel"]))
+    share = f"{1 - seconds['kernel'] / one:.2f} of reading and writing alone"
+    line(f"{kind}, {size}, in process, one thread", million(count, one), share)
+    line(f"{kind}, two threads", million(count, two), f"{one / two:.2f} of one thread")
+    ratio = f"{two / http:.2f} of in process, {file / http:.2f} of file to file"
+    line(f"{kind} over HTTP, `curl -T file`", million(count, http), ratio)
+    line(f"{kind}, file to file, two threads", million(count, file))
+    for name in peers:
+        what = PEERS[name].__doc__.strip(".")
+        line(what, million(count, seconds[name]), f"{seconds[name] / file:.1f} times slower")
+
+
+def flood(options, kind, path, service, idle):
+    """The line of a long stream: its rate and the memory it takes."""
+    size = int(options.gigabytes * 1e9)
+    seconds = stream(service, kind, path, size)
+    peak = service.memory("VmHWM")
+    what = f"{kind}, {options.gigabytes:g} GB through a pipe, {size / seconds / 1e6:.0f} MB/s"
+    line(what, f"{peak:.0f} MiB at most", f"{peak - idle:.0f} MiB above idle")
+
+
 def measure(options, folder):
     paths = rows.write(options.rows, folder)
-    count, answer = options.rows, folder / "answer"
-    print(f"| {count} rows, each with its velocity | figure | ratio |\n|---|---|---|")
-    two, files = {}, {}
-    alone = best(lambda: kernel(options.bench, count))
-    line("the transformation alone, exact, one thread", million(count, alone))
-    for kind in options.formats:
-        path = paths[kind]
-        size = f"{path.stat().st_size / count:.0f} bytes a row"
-        one = best(lambda: in_process(options.bench, kind, kind, 1, path))
-        two[kind] = best(lambda: in_process(options.bench, kind, kind, 2, path))
-        share = f"{1 - alone / one:.2f} of reading and writing alone"
-        line(f"{kind}, {size}, in process, one thread", million(count, one), share)
-        line(f"{kind}, two threads", million(count, two[kind]), f"{one / two[kind]:.2f} of one thread")
-    for kind in options.formats:
-        ours = best(lambda: in_process(options.bench, kind, kind, 2, paths[kind], answer))
-        files[kind] = ours
-        line(f"{kind}, file to file, two threads", million(count, ours))
-        for name in filter(lambda name: name.startswith(kind), PEERS):
-            seconds = best(lambda: peer(name, paths[kind], answer))
-            what = PEERS[name].__doc__.strip(".")
-            line(what, million(count, seconds), f"{seconds / ours:.1f} times slower")
+    print(f"| {options.rows} rows, each with its velocity | figure | ratio |\n|---|---|---|")
     for kind in options.formats:
         with Service(options.service, folder / "log") as service:
             idle = service.memory("VmRSS")
-            seconds = best(lambda: service.upload(kind, paths[kind]))
-            what = f"{kind} over HTTP, `curl -T file`"
-            ratio = f"{two[kind] / seconds:.2f} of in process, {files[kind] / seconds:.2f} of file to file"
-            line(what, million(count, seconds), ratio)
-            size = int(options.gigabytes * 1e9)
-            seconds = stream(service, kind, paths[kind], size)
-            peak = service.memory("VmHWM")
-            what = f"{kind}, {options.gigabytes:g} GB through a pipe, {size / seconds / 1e6:.0f} MB/s"
-            line(what, f"{peak:.0f} MiB at most", f"{peak - idle:.0f} MiB above idle")
+            compare(options, kind, paths[kind], service, folder / "answer")
+            flood(options, kind, paths[kind], service, idle)
 
 
 def main():
