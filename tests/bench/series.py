@@ -11,6 +11,7 @@ import subprocess
 import sys
 import tempfile
 import time
+from functools import partial
 from pathlib import Path
 
 import rows
@@ -32,11 +33,11 @@ def best(runs):
     return {name: min(turn[name] for turn in turns) for name in runs}
 
 
-def in_process(binary, kind, to, threads, source, answer=None):
+def in_process(binary, kind, threads, source, answer=None):
     """Seconds of the library alone; an answer of before is gone before the clock starts."""
     if answer:
         answer.unlink(missing_ok=True)
-    command = [binary, kind, to, str(threads), QUERY, source, *filter(None, [answer])]
+    command = [binary, kind, kind, str(threads), QUERY, source, *filter(None, [answer])]
     out = subprocess.run(command, check=True, capture_output=True, text=True).stdout
     return float(out.split()[1])
 
@@ -133,21 +134,15 @@ def million(count, seconds):
 def compare(options, kind, path, service, answer):
     """The lines of a format: in process, file to file, beside the peers and over HTTP."""
     count = options.rows
-
-    def ours(threads, *to):
-        return lambda: in_process(options.bench, kind, kind, threads, path, *to)
-
-    def scripted(name):
-        return lambda: peer(name, path, answer)
-
-    peers = {name: scripted(name) for name in PEERS if name.startswith(kind)}
+    ours = partial(in_process, options.bench, kind)
+    peers = {name: partial(peer, name, path, answer) for name in PEERS if name.startswith(kind)}
     seconds = best(
         {
-            "kernel": lambda: kernel(options.bench, count),
-            "one": ours(1),
-            "two": ours(2),
-            "file": ours(2, answer),
-            "http": lambda: service.upload(kind, path),
+            "kernel": partial(kernel, options.bench, count),
+            "one": partial(ours, 1, path),
+            "two": partial(ours, 2, path),
+            "file": partial(ours, 2, path, answer),
+            "http": partial(service.upload, kind, path),
             **peers,
         }
     )
@@ -157,7 +152,7 @@ def compare(options, kind, path, service, answer):
     share = f"{1 - seconds['kernel'] / one:.2f} of reading and writing alone"
     line(f"{kind}, {size}, in process, one thread", million(count, one), share)
     line(f"{kind}, two threads", million(count, two), f"{one / two:.2f} of one thread")
-    ratio = f"{two / http:.2f} of in process, {file / http:.2f} of file to file"
+    ratio = f"{two / http:.2f} of two threads in process, {file / http:.2f} of file to file"
     line(f"{kind} over HTTP, `curl -T file`", million(count, http), ratio)
     line(f"{kind}, file to file, two threads", million(count, file))
     for name in peers:
